@@ -1,0 +1,1 @@
+"""How Weirbook is put together and run: sees every app, is seen by none."""

@@ -1,0 +1,1 @@
+"""Settings: base is shared; development, testing and production each say only what differs."""

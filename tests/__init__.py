@@ -1,0 +1,1 @@
+"""The tests, mirroring the source, with journeys through several apps and guards that walk the project."""
