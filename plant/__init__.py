@@ -1,0 +1,1 @@
+"""The works: its ledger, and everything that is computed from it."""

@@ -1,0 +1,6 @@
+from django.apps import AppConfig
+
+
+class DosingConfig(AppConfig):
+    name = "plant.dosing"
+    label = "dosing"

@@ -1,0 +1,1 @@
+"""What was observed: readings of water, meters, vessels and feeders. Facts only."""

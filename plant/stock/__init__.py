@@ -1,0 +1,1 @@
+"""What came in and what was moved: deliveries and transfers. Facts only."""

@@ -1,0 +1,32 @@
+"""Reads of deliveries and transfers."""
+
+from __future__ import annotations
+
+import datetime as dt
+from collections.abc import Iterable
+
+from django.db.models import Q
+
+from plant.ledger.models import Book
+from plant.stock import models
+
+
+def deliveries(
+    book: Book, *, start: dt.datetime, end: dt.datetime, vessels: Iterable[str] | None = None, known: int | None = None,
+) -> list[models.Delivery]:
+    """Deliveries with start <= taken_at < end, by time, as known at a seq (None: now)."""
+    rows = models.Delivery.objects.filter(book=book, taken_at__gte=start, taken_at__lt=end)
+    if vessels is not None:
+        rows = rows.filter(vessel__in=list(vessels))
+    return list(rows.as_known(known).order_by("taken_at", "seq", "line"))
+
+
+def transfers(
+    book: Book, *, start: dt.datetime, end: dt.datetime, vessels: Iterable[str] | None = None, known: int | None = None,
+) -> list[models.Transfer]:
+    """Transfers out of or into the vessels, start <= taken_at < end, by time."""
+    rows = models.Transfer.objects.filter(book=book, taken_at__gte=start, taken_at__lt=end)
+    if vessels is not None:
+        named = list(vessels)
+        rows = rows.filter(Q(from_vessel__in=named) | Q(to_vessel__in=named))
+    return list(rows.as_known(known).order_by("taken_at", "seq", "line"))

@@ -1,0 +1,1 @@
+"""What the works is and is meant to do, by date; and who may do what there."""

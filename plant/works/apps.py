@@ -1,0 +1,6 @@
+from django.apps import AppConfig
+
+
+class WorksConfig(AppConfig):
+    name = "plant.works"
+    label = "works"
