@@ -1,8 +1,8 @@
 """Molar masses and the few physical constants the package shares.
 
-Source: CIAAW, Standard Atomic Weights 2021, abridged table; for elements that have an interval the single conventional
-value is used (H, C, N, O, Mg, Si, S, Cl, Br, Li, B: conventional values from memory, equal to those of the
-`periodictable` package, which the tests compare).
+Source: CIAAW, Standard Atomic Weights 2021, abridged table; for elements that have an interval the single
+conventional value is used (H, C, N, O, Mg, Si, S, Cl, Br, Li, B: conventional values from memory, equal to
+those of the `periodictable` package, which the tests compare).
 """
 
 import re
@@ -11,12 +11,13 @@ from functools import lru_cache
 from chemistry import errors
 
 ATOMIC_WEIGHTS_G_MOL: dict[str, float] = {
-    "H": 1.008, "Li": 6.94, "Be": 9.0121831, "B": 10.81, "C": 12.011, "N": 14.007, "O": 15.999, "F": 18.998403162,
-    "Na": 22.98976928, "Mg": 24.305, "Al": 26.9815384, "Si": 28.085, "P": 30.973761998, "S": 32.06, "Cl": 35.45,
-    "K": 39.0983, "Ca": 40.078, "Ti": 47.867, "V": 50.9415, "Cr": 51.9961, "Mn": 54.938043, "Fe": 55.845,
-    "Co": 58.933194, "Ni": 58.6934, "Cu": 63.546, "Zn": 65.38, "As": 74.921595, "Se": 78.971, "Br": 79.904,
-    "Sr": 87.62, "Zr": 91.224, "Mo": 95.95, "Ag": 107.8682, "Cd": 112.414, "Sn": 118.710, "Sb": 121.760,
-    "I": 126.90447, "Ba": 137.327, "La": 138.90547, "Ce": 140.116, "Hg": 200.592, "Pb": 207.2,
+    "H": 1.008, "Li": 6.94, "Be": 9.0121831, "B": 10.81, "C": 12.011, "N": 14.007, "O": 15.999,
+    "F": 18.998403162, "Na": 22.98976928, "Mg": 24.305, "Al": 26.9815384, "Si": 28.085,
+    "P": 30.973761998, "S": 32.06, "Cl": 35.45, "K": 39.0983, "Ca": 40.078, "Ti": 47.867, "V": 50.9415,
+    "Cr": 51.9961, "Mn": 54.938043, "Fe": 55.845, "Co": 58.933194, "Ni": 58.6934, "Cu": 63.546,
+    "Zn": 65.38, "As": 74.921595, "Se": 78.971, "Br": 79.904, "Sr": 87.62, "Zr": 91.224, "Mo": 95.95,
+    "Ag": 107.8682, "Cd": 112.414, "Sn": 118.710, "Sb": 121.760, "I": 126.90447, "Ba": 137.327,
+    "La": 138.90547, "Ce": 140.116, "Hg": 200.592, "Pb": 207.2,
 }  # fmt: skip
 
 GAS_CONSTANT_J_MOL_K = 8.314462618  # CODATA 2018, exact from the 2019 SI
@@ -30,8 +31,9 @@ _LONGEST_FORMULA = 80
 def composition(formula: str) -> dict[str, float]:
     """Atoms per formula unit, e.g. ``Al2(SO4)3.14H2O`` -> {"Al": 2, "S": 3, "O": 26, "H": 28}.
 
-    Understands parentheses and hydrates written with ``.``, ``·`` or ``*``. Charges are not part of a formula here.
-    Raises ChemistryError for anything else (unknown element, unbalanced parenthesis, empty text).
+    Understands parentheses and hydrates written with ``.``, ``·`` or ``*``. Charges are not part of a
+    formula here. Raises ChemistryError for anything else (unknown element, unbalanced parenthesis, empty
+    text).
     """
     return dict(_composition(formula))
 
@@ -48,7 +50,8 @@ def is_formula(text: str) -> bool:
 def molar_mass(formula: str) -> float:
     """Molar mass in g/mol of a formula as read by :func:`composition`.
 
-    Source: CIAAW 2021 (see the module). Valid for the elements of ATOMIC_WEIGHTS_G_MOL; others raise ChemistryError.
+    Source: CIAAW 2021 (see the module). Valid for the elements of ATOMIC_WEIGHTS_G_MOL; others raise
+    ChemistryError.
     """
     return sum(ATOMIC_WEIGHTS_G_MOL[element] * count for element, count in _composition(formula))
 

@@ -1,7 +1,8 @@
-"""Where every formula comes from: key -> citation. Functions and steps name the key, screens print the citation.
+"""Where every formula comes from: key -> citation. Functions and steps name the key, screens print the
+citation.
 
-A citation ends with how far it was seen: "opened" (page, abstract or data file read), "second-hand" (read where another
-page quotes it), "from memory" (nobody opened it), or "definition".
+A citation ends with how far it was seen: "opened" (page, abstract or data file read), "second-hand" (read
+where another page quotes it), "from memory" (nobody opened it), or "definition".
 """
 
 SOURCES: dict[str, str] = {
@@ -14,9 +15,12 @@ SOURCES: dict[str, str] = {
     "DAVIS-2010": "Davis, Water and Wastewater Engineering (2010), chapters 5 to 7; opened in part",
     "WTPD-11": "ASCE/AWWA, Water Treatment Plant Design, ch. 11, eq. 11.10, 11.18, 11.20; opened",
     "ADAM-GORDON-1999": (
-        "Adam & Gordon 1999, Inorganic Chemistry 38:1299, rate law of hypochlorite decomposition; abstract opened"
+        "Adam & Gordon 1999, Inorganic Chemistry 38:1299, rate law of hypochlorite "
+        "decomposition; abstract opened"
     ),
-    "LISTER-1956": "Lister 1956, Canadian Journal of Chemistry 34:465, hypochlorite decomposition; abstract opened",
+    "LISTER-1956": (
+        "Lister 1956, Canadian Journal of Chemistry 34:465, hypochlorite decomposition; abstract opened"
+    ),
     "H2O2-MAKERS": (
         "Makers' storage pages for hydrogen peroxide: under 1 % a year if clean; opened. "
         "Doubling per 10 °C: from memory"
@@ -26,23 +30,29 @@ SOURCES: dict[str, str] = {
         "density of solutions; abstract opened, values computed"
     ),
     "JONES-TANKS": (
-        "D. Jones, Calculating Tank Volume, and Compute Fluid Volumes in Vertical Tanks, Chemical Processing, "
+        "D. Jones, Calculating Tank Volume, and Compute Fluid Volumes in Vertical Tanks, "
+        "Chemical Processing, "
         "18 Dec 2003; second-hand"
     ),
     "UG-32": (
-        "ASME BPVC Section VIII-1, UG-32: torispherical head, crown radius equal to the diameter, knuckle radius 6 % "
+        "ASME BPVC Section VIII-1, UG-32: torispherical head, crown radius equal to the "
+        "diameter, knuckle radius 6 % "
         "of it; from memory. DIN 28011: knuckle 10 %; from memory"
     ),
     "AWWA-DECHLORINATION": (
         "AWWA pipeline disinfection guide, table 7-2, dechlorinating chemicals, field figures; opened"
     ),
-    "EPA-815-R-99-014": "US EPA 815-R-99-014, Alternative Disinfectants and Oxidants; chapter 6 opened, ratios from memory",
+    "EPA-815-R-99-014": (
+        "US EPA 815-R-99-014, Alternative Disinfectants and Oxidants; chapter 6 opened, ratios from memory"
+    ),
     "LIU-2003": (
         "Liu et al. 2003, Water Research 37:3697: hydrogen peroxide makes DPD read high, "
         "quenching by hypochlorite is hard to hit; abstract opened"
     ),
     "CFR-141.74": "40 CFR 141.74(b), CT tables 1.1 to 3.1; rule text opened, table cells mostly from memory",
-    "CFR-141.720": "40 CFR 141.720, Cryptosporidium CT tables and equations; rule text opened, cells mostly from memory",
+    "CFR-141.720": (
+        "40 CFR 141.720, Cryptosporidium CT tables and equations; rule text opened, cells mostly from memory"
+    ),
     "CFR-141.172": "40 CFR 141.172(b), disinfection profiling; opened",
     "EPA-816-R-03-004": (
         "US EPA 816-R-03-004, LT1ESWTR Disinfection Profiling and Benchmarking manual; from memory"
@@ -55,7 +65,8 @@ SOURCES: dict[str, str] = {
     "MADPH-2015": "Massachusetts DPH, daily fluoride report calculation sheet, June 2015; opened",
     "CADPH": "California DPH, Daily Calculation of Chemical Dosages, liquid chemicals; opened",
     "HYPO-TERMS": (
-        "Strength terms of hypochlorite: trade % = g/L / 10, weight % = trade % / density (distributor product "
+        "Strength terms of hypochlorite: trade % = g/L / 10, weight % = trade % / "
+        "density (distributor product "
         "profile; White's Handbook as quoted on an industry page); opened"
     ),
     "ABC-TABLES": "Association of Boards of Certification, formula and conversion tables, 2017; opened",

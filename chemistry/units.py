@@ -1,10 +1,10 @@
 """The one place where units are converted: spellings people type, and each parameter's own canonical unit.
 
-Factors are exact fractions where law or definition makes them exact (1 lb = 0.453 592 37 kg, 1 US gal = 3.785 411 784 L,
-1 imperial gal = 4.546 09 L, 1 in = 25.4 mm, 1 grain = 64.798 91 mg; NIST SP 811, from memory, compared with `pint` in
-the tests). Hardness degrees: 1 °dH = 10 mg/L CaO, 1 °fH = 10 mg/L CaCO3, 1 °e = 1 grain CaCO3 per imperial gallon,
-1 gr/gal = 1 grain CaCO3 per US gallon (definitions). Conversions through molar masses use CIAAW 2021 and are marked
-inexact.
+Factors are exact fractions where law or definition makes them exact (1 lb = 0.453 592 37 kg, 1 US gal =
+3.785 411 784 L, 1 imperial gal = 4.546 09 L, 1 in = 25.4 mm, 1 grain = 64.798 91 mg; NIST SP 811, from
+memory, compared with `pint` in the tests). Hardness degrees: 1 °dH = 10 mg/L CaO, 1 °fH = 10 mg/L CaCO3, 1
+°e = 1 grain CaCO3 per imperial gallon, 1 gr/gal = 1 grain CaCO3 per US gallon (definitions). Conversions
+through molar masses use CIAAW 2021 and are marked inexact.
 """
 
 from dataclasses import dataclass
@@ -57,9 +57,10 @@ class _Step:
 def convert(value, from_unit: str, to_unit: str):
     """``value`` (float or array) in another unit of the same kind.
 
-    Kinds: mass per volume, hardness as CaCO3 (mg/L as CaCO3, °dH, °fH, °e, gr/gal, meq/L), amount per volume, temperature,
-    turbidity, conductance, length, volume, mass, flow, mass flow, time, counts, density, chlorine strength (trade %).
-    Raises UnknownUnit for a spelling not in the table or for units of two kinds.
+    Kinds: mass per volume, hardness as CaCO3 (mg/L as CaCO3, °dH, °fH, °e, gr/gal, meq/L), amount per
+    volume, temperature, turbidity, conductance, length, volume, mass, flow, mass flow, time, counts,
+    density, chlorine strength (trade %). Raises UnknownUnit for a spelling not in the table or for units of
+    two kinds.
     """
     source, target = _unit(from_unit), _unit(to_unit)
     bridge = _bridge(source, target)
@@ -76,11 +77,11 @@ def convert(value, from_unit: str, to_unit: str):
 def canonical(value, unit: str, parameter: str, canonical_unit: str | None = None):
     """(value, canonical unit) of a reading; float or array.
 
-    Canonical: pH '' · mg/L · mg/L as CaCO3 for hardness and alkalinity · °C · NTU · uS/cm · m (but % of height stays %) ·
-    L · kg · h · m3/h · CFU/100mL. mmol/L of hardness counts CaCO3 (x 100.09), mmol/L and meq/L of alkalinity count H+
-    (x 50.04). Ammonia and nitrite are as N, sulfide as S, phosphate as PO4, permanganate as KMnO4, chlorine as Cl2.
-    ``canonical_unit`` names the unit of a parameter the works defines itself.
-    Raises UnknownUnit (with the accepted list) or UnknownParameter.
+    Canonical: pH '' · mg/L · mg/L as CaCO3 for hardness and alkalinity · °C · NTU · uS/cm · m (but % of
+    height stays %) · L · kg · h · m3/h · CFU/100mL. mmol/L of hardness counts CaCO3 (x 100.09), mmol/L and
+    meq/L of alkalinity count H+ (x 50.04). Ammonia and nitrite are as N, sulfide as S, phosphate as PO4,
+    permanganate as KMnO4, chlorine as Cl2. ``canonical_unit`` names the unit of a parameter the works
+    defines itself. Raises UnknownUnit (with the accepted list) or UnknownParameter.
     """
     step = _step(unit, parameter, canonical_unit)
     if step.factor == 1 and not step.offset:
@@ -89,10 +90,11 @@ def canonical(value, unit: str, parameter: str, canonical_unit: str | None = Non
 
 
 def canonical_text(text: str, unit: str, parameter: str, canonical_unit: str | None = None) -> str:
-    """The decimal text of a reading in its canonical unit, e.g. ``("62.50", "µg/L", "iron")`` -> ``"0.06250"``.
+    """The decimal text of a reading in its canonical unit, e.g. ``("62.50", "µg/L", "iron")`` ->
+    ``"0.06250"``.
 
-    Exact to the last digit, trailing zeros kept, when the factor is exact and ends; otherwise rounded half to even at 12
-    significant digits. Raises ChemistryError for text that isn't one plain decimal number.
+    Exact to the last digit, trailing zeros kept, when the factor is exact and ends; otherwise rounded half
+    to even at 12 significant digits. Raises ChemistryError for text that isn't one plain decimal number.
     """
     try:
         number = Decimal(text.strip())
@@ -114,14 +116,18 @@ def canonical_text(text: str, unit: str, parameter: str, canonical_unit: str | N
 
 
 def basis_remark(unit: str, parameter: str, canonical_unit: str | None = None) -> str:
-    """What a person should be told about the unit taken, '' when nothing (a missing basis, FNU as NTU, MPN as CFU)."""
+    """What a person should be told about the unit taken, '' when nothing (a missing basis, FNU as NTU, MPN
+    as CFU).
+    """
     return _step(unit, parameter, canonical_unit).remark
 
 
 def canonical_unit_of(parameter: str) -> str:
     """The canonical unit of a built-in parameter. Raises UnknownParameter."""
     if parameter not in PARAMETERS:
-        raise UnknownParameter(f"parameter {parameter!r} has no canonical unit; known: {', '.join(sorted(PARAMETERS))}")
+        raise UnknownParameter(
+            f"parameter {parameter!r} has no canonical unit; known: {', '.join(sorted(PARAMETERS))}"
+        )
     return PARAMETERS[parameter].unit
 
 
@@ -211,8 +217,12 @@ def accepted_for(parameter: str) -> tuple[str, ...]:
     """The accepted spellings that make sense for a built-in parameter."""
     info = PARAMETERS[parameter]
     other = UNITS[info.or_unit].kind if info.or_unit else None
-    fitting = tuple(n for n in ACCEPTED_UNITS if _factor(UNITS[n], info)[0] is not None or UNITS[n].kind == other)
-    return tuple(dict.fromkeys(KEPT_UNITS.get(parameter, ()) + SAME_AS_CANONICAL.get(parameter, ()) + fitting))
+    fitting = tuple(
+        n for n in ACCEPTED_UNITS if _factor(UNITS[n], info)[0] is not None or UNITS[n].kind == other
+    )
+    return tuple(
+        dict.fromkeys(KEPT_UNITS.get(parameter, ()) + SAME_AS_CANONICAL.get(parameter, ()) + fitting)
+    )
 
 
 def _factor(unit: Unit, info: Parameter) -> tuple[Fraction | None, bool]:
