@@ -1,7 +1,7 @@
 """Who may do what at a works, and the gate every page of a works passes.
 
-Roles are stated per works (statement kind ``membership``: role, may_prepare, may_certify, licence). A stranger to a
-works is told that there is no such page, never that there is one he may not see.
+Roles are stated per works (statement kind ``membership``: role, may_prepare, may_certify, licence). A
+stranger to a works is told that there is no such page, never that there is one he may not see.
 """
 
 from __future__ import annotations
@@ -21,15 +21,47 @@ from plant.works import models, queries
 from plant.works.stated import Stated
 
 ROLES: dict[str, frozenset[str]] = {
-    "operator": frozenset({"see", "round.enter", "record.correct_own", "deviation.acknowledge", "deviation.act", "delivery.enter"}),
-    "supervisor": frozenset({
-        "see", "round.enter", "record.correct_own", "record.correct", "record.settle", "deviation.acknowledge", "deviation.act",
-        "deviation.close", "delivery.enter", "settings.change", "import", "report.prepare", "jobs.see",
-    }),
-    "manager": frozenset({
-        "see", "record.settle", "deviation.acknowledge", "deviation.act", "deviation.close", "settings.change", "import",
-        "report.prepare", "report.issue", "jobs.see",
-    }),
+    "operator": frozenset(
+        {
+            "see",
+            "round.enter",
+            "record.correct_own",
+            "deviation.acknowledge",
+            "deviation.act",
+            "delivery.enter",
+        }
+    ),
+    "supervisor": frozenset(
+        {
+            "see",
+            "round.enter",
+            "record.correct_own",
+            "record.correct",
+            "record.settle",
+            "deviation.acknowledge",
+            "deviation.act",
+            "deviation.close",
+            "delivery.enter",
+            "settings.change",
+            "import",
+            "report.prepare",
+            "jobs.see",
+        }
+    ),
+    "manager": frozenset(
+        {
+            "see",
+            "record.settle",
+            "deviation.acknowledge",
+            "deviation.act",
+            "deviation.close",
+            "settings.change",
+            "import",
+            "report.prepare",
+            "report.issue",
+            "jobs.see",
+        }
+    ),
     "inspector": frozenset({"see"}),
     "administrator": frozenset({"see", "settings.change", "people.change", "import", "jobs.see"}),
 }
@@ -72,7 +104,12 @@ def member_from(username: str, value: dict[str, Any] | None) -> Member | None:
     permissions = set(ROLES.get(value["role"], frozenset()))
     permissions |= {permission for key, permission in SIGNING.items() if value.get(key)}
     return Member(
-        username, value["role"], frozenset(permissions), str(value.get("licence_number", "")), str(value.get("licence_class", "")))
+        username,
+        value["role"],
+        frozenset(permissions),
+        str(value.get("licence_number", "")),
+        str(value.get("licence_class", "")),
+    )
 
 
 def member(stated: Stated, username: str, now: dt.datetime) -> Member | None:
@@ -91,7 +128,9 @@ View = Callable[..., HttpResponse]
 
 
 def needs(permission: str) -> Callable[[View], View]:
-    """The gate of a works' page: the view receives ``at`` (book, statements, member, now) instead of the code in its URL."""
+    """The gate of a works' page: the view receives ``at`` (book, statements, member, now) instead of the code
+    in its URL.
+    """
     if permission not in PERMISSIONS:
         raise ValueError(f"unknown permission {permission!r}")
 
@@ -107,7 +146,9 @@ def needs(permission: str) -> Callable[[View], View]:
             if who is None:
                 raise Http404("There is no such works.")
             if not who.may(permission):
-                raise PermissionDenied(f"This needs the right “{permission}”, which your role ({who.role}) does not have here.")
+                raise PermissionDenied(
+                    f"This needs the right “{permission}”, which your role ({who.role}) does not have here."
+                )
             at = At(book, stated, who, now)
             request.at = at  # type: ignore[attr-defined]  # templates show the works and the role from it
             return view(request, at, *args, **kwargs)

@@ -63,7 +63,16 @@ class Product:
 
 
 SHAPE_KEYS = (
-    "shape", "diameter_m", "height_m", "length_m", "heads", "cone_height_m", "table", "capacity_kg", "tare_kg", "weight_sd_kg",
+    "shape",
+    "diameter_m",
+    "height_m",
+    "length_m",
+    "heads",
+    "cone_height_m",
+    "table",
+    "capacity_kg",
+    "tare_kg",
+    "weight_sd_kg",
 )
 
 
@@ -90,7 +99,9 @@ class Vessel:
 
 @dataclass(frozen=True)
 class DosingPoint:
-    """Where a product enters the water. ``vessels`` are the last measured ones: their outflow is the consumption."""
+    """Where a product enters the water. ``vessels`` are the last measured ones: their outflow is the
+    consumption.
+    """
 
     code: str
     name: str
@@ -155,9 +166,13 @@ Part = TypeVar("Part")
 
 
 def build(kind: type[Part], code: str, value: dict[str, Any]) -> Part:
-    """The dataclass from a stated value; lists become tuples; keys it does not know stay out (or in ``extra``)."""
+    """The dataclass from a stated value; lists become tuples; keys it does not know stay out (or in
+    ``extra``).
+    """
     names = {item.name for item in dataclasses.fields(kind)}  # type: ignore[arg-type]
-    known = {key: tuple(item) if isinstance(item, list) else item for key, item in value.items() if key in names}
+    known = {
+        key: tuple(item) if isinstance(item, list) else item for key, item in value.items() if key in names
+    }
     known["code"] = code
     if "extra" in names:
         known["extra"] = {key: item for key, item in value.items() if key not in names}
@@ -175,7 +190,18 @@ LIMIT_HEAD = ("code", "kind", "level", "parameter", "unit", "source", "tell", "s
 
 def limit(code: str, value: dict[str, Any]) -> Limit:
     """A limit, what it stands on named by kind and code; the keys of its kind gathered into ``keys``."""
-    subject_kind = next((key for key in ("sample_point", "dosing_point", "vessel", "contact_segment", "meter") if key in value), "works")
+    subject_kind = next(
+        (
+            key
+            for key in ("sample_point", "dosing_point", "vessel", "contact_segment", "meter")
+            if key in value
+        ),
+        "works",
+    )
     keys = {key: item for key, item in value.items() if key not in LIMIT_HEAD and key != subject_kind}
     head = {key: item for key, item in value.items() if key in LIMIT_HEAD}
-    return build(Limit, code, head | {"keys": keys, "subject_kind": subject_kind, "subject": value.get(subject_kind, "")})
+    return build(
+        Limit,
+        code,
+        head | {"keys": keys, "subject_kind": subject_kind, "subject": value.get(subject_kind, "")},
+    )

@@ -1,4 +1,6 @@
-"""One table of dated statements. What each kind may say is in blocks.py; what it says at a moment, in stated.py."""
+"""One table of dated statements. What each kind may say is in blocks.py; what it says at a moment, in
+stated.py.
+"""
 
 from django.db import models
 
@@ -6,7 +8,9 @@ from plant.ledger.models import Statement as LedgerStatement
 
 
 class Statement(LedgerStatement):
-    """"Setting, in force from": a kind (vessel, limit, design_dose …), its subject, and what is stated of it."""
+    """ "Setting, in force from": a kind (vessel, limit, design_dose …), its subject, and what is stated of
+    it.
+    """
 
     kind = models.CharField(max_length=24)
     subject = models.CharField(max_length=80)

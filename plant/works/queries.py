@@ -17,7 +17,8 @@ _KEEP = 64
 def stated(book: Book, *, known: int | None = None) -> Stated:
     """All that is stated of a works, as known at a seq (None: now).
 
-    Kept in memory by the seq of the last statement; statements are never changed, so what is kept never goes stale.
+    Kept in memory by the seq of the last statement; statements are never changed, so what is kept never goes
+    stale.
     """
     rows = models.Statement.objects.filter(book=book)
     if known is not None:
@@ -27,10 +28,21 @@ def stated(book: Book, *, known: int | None = None) -> Stated:
     if key in _kept:
         _kept.move_to_end(key)
         return _kept[key]
-    found = Stated([
-        Saying(row.kind, row.subject, row.effective_from, row.value, row.withdrawn, row.seq, row.line, row.reason)
-        for row in rows.iterator(chunk_size=1000)
-    ])
+    found = Stated(
+        [
+            Saying(
+                row.kind,
+                row.subject,
+                row.effective_from,
+                row.value,
+                row.withdrawn,
+                row.seq,
+                row.line,
+                row.reason,
+            )
+            for row in rows.iterator(chunk_size=1000)
+        ]
+    )
     _kept[key] = found
     while len(_kept) > _KEEP:
         _kept.popitem(last=False)

@@ -1,4 +1,6 @@
-"""What is stated of a works at any moment, as known at a seq of its book. Read once, asked often, never changed."""
+"""What is stated of a works at any moment, as known at a seq of its book. Read once, asked often, never
+changed.
+"""
 
 from __future__ import annotations
 
@@ -36,7 +38,9 @@ class Saying:
 
 
 class Stated:
-    """All statements of one works. The latest before the moment holds; of two for the same moment, the later stated."""
+    """All statements of one works. The latest before the moment holds; of two for the same moment, the later
+    stated.
+    """
 
     def __init__(self, sayings: list[Saying]) -> None:
         self._by: dict[str, dict[str, list[Saying]]] = {}
@@ -74,7 +78,10 @@ class Stated:
     def changes(self, start: dt.datetime, end: dt.datetime) -> list[Saying]:
         """Statements that come into force in [start, end), in order."""
         found = [
-            saying for chains in self._by.values() for chain in chains.values() for saying in chain
+            saying
+            for chains in self._by.values()
+            for chain in chains.values()
+            for saying in chain
             if start <= saying.effective_from < end
         ]
         return sorted(found, key=lambda item: (item.effective_from, item.seq, item.line))
@@ -92,43 +99,63 @@ class Stated:
         works = self.works(at)
         key = (works.timezone, works.operating_day_starts)
         if key not in self._calendar:
-            self._calendar[key] = clock.Calendar(ZoneInfo(works.timezone), dt.time.fromisoformat(works.operating_day_starts))
+            self._calendar[key] = clock.Calendar(
+                ZoneInfo(works.timezone), dt.time.fromisoformat(works.operating_day_starts)
+            )
         return self._calendar[key]
 
     def shifts(self, at: dt.datetime) -> tuple[clock.Shift, ...]:
         """The shift pattern, by starting time."""
-        found = [clock.Shift(name, dt.time.fromisoformat(value["starts"])) for name, value in self.in_force("shift", at)]
+        found = [
+            clock.Shift(name, dt.time.fromisoformat(value["starts"]))
+            for name, value in self.in_force("shift", at)
+        ]
         return tuple(sorted(found, key=lambda shift: shift.starts))
 
     def sample_points(self, at: dt.datetime) -> tuple[described.SamplePoint, ...]:
         """In the order of the water."""
         stages = ("raw", "process", "entry", "network")
-        found = [described.build(described.SamplePoint, code, value) for code, value in self.in_force("sample_point", at)]
+        found = [
+            described.build(described.SamplePoint, code, value)
+            for code, value in self.in_force("sample_point", at)
+        ]
         return tuple(sorted(found, key=lambda point: stages.index(point.stage)))
 
     def meters(self, at: dt.datetime) -> tuple[described.Meter, ...]:
-        return tuple(described.build(described.Meter, code, value) for code, value in self.in_force("meter", at))
+        return tuple(
+            described.build(described.Meter, code, value) for code, value in self.in_force("meter", at)
+        )
 
     def products(self, at: dt.datetime) -> tuple[described.Product, ...]:
-        return tuple(described.build(described.Product, code, value) for code, value in self.in_force("product", at))
+        return tuple(
+            described.build(described.Product, code, value) for code, value in self.in_force("product", at)
+        )
 
     def vessels(self, at: dt.datetime) -> tuple[described.Vessel, ...]:
         return tuple(described.vessel(code, value) for code, value in self.in_force("vessel", at))
 
     def dosing_points(self, at: dt.datetime) -> tuple[described.DosingPoint, ...]:
-        return tuple(described.build(described.DosingPoint, code, value) for code, value in self.in_force("dosing_point", at))
+        return tuple(
+            described.build(described.DosingPoint, code, value)
+            for code, value in self.in_force("dosing_point", at)
+        )
 
     def limits(self, at: dt.datetime) -> tuple[described.Limit, ...]:
         return tuple(described.limit(code, value) for code, value in self.in_force("limit", at))
 
     def round_lines(self, at: dt.datetime) -> tuple[described.RoundLine, ...]:
         """In walking order."""
-        found = [described.build(described.RoundLine, code, value) for code, value in self.in_force("round_line", at)]
+        found = [
+            described.build(described.RoundLine, code, value)
+            for code, value in self.in_force("round_line", at)
+        ]
         return tuple(sorted(found, key=lambda line: line.order))
 
     def contact_segments(self, at: dt.datetime) -> tuple[described.ContactSegment, ...]:
         return tuple(
-            described.build(described.ContactSegment, code, value) for code, value in self.in_force("contact_segment", at))
+            described.build(described.ContactSegment, code, value)
+            for code, value in self.in_force("contact_segment", at)
+        )
 
     def meter(self, code: str, at: dt.datetime) -> described.Meter:
         """Raises NotStated."""
