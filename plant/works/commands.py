@@ -183,6 +183,7 @@ def _calendar(stated: Stated, at: dt.datetime, book: Book) -> clock.Calendar:
     try:
         return stated.calendar(at)
     except NotStated:
+        when = f"{at:%Y-%m-%d %H:%M} UTC"
         raise CommandError(
-            f"nothing was stated of works {book.code} by {at:%Y-%m-%d %H:%M} UTC: load a works file first"
+            f"nothing was stated of works {book.code} by {when}: load a works file first"
         ) from None

@@ -78,7 +78,9 @@ SHAPE_KEYS = (
 
 @dataclass(frozen=True)
 class Vessel:
-    """A tank, drum, cylinder or silo. ``form`` holds its shape and measures as chemistry.vessels takes them."""
+    """A tank, drum, cylinder or silo. ``form`` holds its shape and measures as chemistry.vessels wants
+    them; ``fed_from`` the vessel it is filled from.
+    """
 
     code: str
     name: str
@@ -89,6 +91,7 @@ class Vessel:
     heel_kg: float = 0.0
     max_fill_pct: float = 95.0
     containment: str | None = None
+    fed_from: str | None = None
     form: dict[str, Any] = field(default_factory=dict)
 
     @property
