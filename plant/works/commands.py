@@ -174,9 +174,9 @@ class WorksCommand(BaseCommand):
 
     def write_csv(self, header: Sequence[str], rows: Iterable[Sequence[Any]]) -> None:
         """A CSV table to standard output; None is an empty cell."""
-        writer = csv.writer(self.stdout, lineterminator="\n")  # type: ignore[arg-type]  # has write, which is
-        all csv asks writer.writerow(header) writer.writerows(["" if cell is None else cell for cell in row]
-        for row in rows)
+        writer = csv.writer(self.stdout, lineterminator="\n")  # type: ignore[arg-type]  # csv asks for write only
+        writer.writerow(header)
+        writer.writerows(["" if cell is None else cell for cell in row] for row in rows)
 
 
 def _calendar(stated: Stated, at: dt.datetime, book: Book) -> clock.Calendar:
