@@ -29,6 +29,9 @@ SOURCES: dict[str, str] = {
         "Laliberté 2009, J. Chem. Eng. Data 54:1725 (and Laliberté & Cooper 2004, 49:1141), "
         "density of solutions; abstract opened, values computed"
     ),
+    "SOLVAY-FECL3": "Solvay, ferric chloride solutions, density table 0 to 100 °C, as republished; opened",
+    "CRC-DENSITY": "CRC-type table of solution densities at 20 °C, as republished; opened",
+    "PERRY-DENSITY": "Perry's handbook, densities of sulfuric and phosphoric acid and caustic; from memory",
     "JONES-TANKS": (
         "D. Jones, Calculating Tank Volume, and Compute Fluid Volumes in Vertical Tanks, "
         "Chemical Processing, "
