@@ -1,0 +1,120 @@
+"""Every species of a water, and its saturation with calcium carbonate."""
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+
+from chemistry import activity as activities
+from chemistry.carbonate import constants_of_equilibrium, equilibrium, waters
+
+
+@dataclass(frozen=True, slots=True)
+class Speciation:
+    """A water at equilibrium. Concentrations in mmol/L (meq/L for alkalinity), activity coefficients without unit.
+
+    si_* are saturation indices log10(ion activity product / solubility product); log_pco2 is log10 of the pressure of
+    CO2 in atm with which the water would be in balance.
+    """
+
+    temperature_c: object
+    ph: object
+    ionic_strength_mol_l: object
+    alkalinity_meq_l: object
+    dic_mmol_l: object
+    co2_mmol_l: object
+    hco3_mmol_l: object
+    co3_mmol_l: object
+    hydroxide_mmol_l: object
+    free_calcium_mmol_l: object
+    cahco3_mmol_l: object
+    caco3_aq_mmol_l: object
+    caso4_mmol_l: object
+    free_magnesium_mmol_l: object
+    mghco3_mmol_l: object
+    mgco3_mmol_l: object
+    mgso4_mmol_l: object
+    nahco3_mmol_l: object
+    naco3_mmol_l: object
+    free_sulfate_mmol_l: object
+    hypochlorite_mmol_l: object
+    gamma_h: object
+    gamma_calcium: object
+    gamma_hco3: object
+    gamma_co3: object
+    gamma_co2: object
+    si_calcite: object
+    si_aragonite: object
+    si_brucite: object
+    log_pco2: object
+    solved: object  # equilibrium.Solved, in mol/L
+
+    @property
+    def alkalinity_mg_l_caco3(self):
+        """Total alkalinity, mg/L as CaCO3."""
+        return self.alkalinity_meq_l * waters.CACO3_MG_MEQ
+
+
+def speciate(water, *, activity=activities.DAVIES):
+    """The :class:`Speciation` of a :class:`waters.Water`.
+
+    activity: "davies" or "phreeqc". Ranges and errors as for Water; an alkalinity too low for its pH raises
+    ChemistryError, an ionic strength above 0.5 mol/L or a pH outside 3 to 13 raises OutOfRange.
+    Source: see constants_of_equilibrium (keys PLUMMER-BUSENBERG-1982, PHREEQC-DAT) and equilibrium.
+    """
+    totals = waters.totals(water)
+    return of_solved(totals.temperature_c, equilibrium.solve(totals, activity))
+
+
+def of_solved(temperature_c, found):
+    """Dress an equilibrium.Solved as a :class:`Speciation`."""
+    scalar = type(found.h) is float and type(found.co3) is float and type(temperature_c) is float
+    log10 = math.log10 if scalar else np.log10
+    kelvin = temperature_c + 273.15
+    si_calcite = _log(found.ion_product_calcite, log10, scalar)
+    si_brucite = _log(found.ion_product_brucite, log10, scalar)
+    gamma_h, gamma_ca, gamma_hco3, gamma_co3, gamma_co2 = found.gammas
+    log_kh = constants_of_equilibrium.log_k("henry_co2", temperature_c)
+    # log Ksp of calcite less that of aragonite: the two fits differ in their first and third coefficients only
+    over_aragonite = -171.9065 + 171.9773 + (2839.319 - 2903.293) / kelvin
+    return Speciation(
+        temperature_c=temperature_c,
+        ph=-log10(found.h),
+        ionic_strength_mol_l=found.ionic_strength,
+        alkalinity_meq_l=found.alkalinity * 1e3,
+        dic_mmol_l=found.carbon * 1e3,
+        co2_mmol_l=found.co2 * 1e3,
+        hco3_mmol_l=found.hco3 * 1e3,
+        co3_mmol_l=found.co3 * 1e3,
+        hydroxide_mmol_l=found.hydroxide * 1e3,
+        free_calcium_mmol_l=found.ca * 1e3,
+        cahco3_mmol_l=found.cahco3 * 1e3,
+        caco3_aq_mmol_l=found.caco3 * 1e3,
+        caso4_mmol_l=found.caso4 * 1e3,
+        free_magnesium_mmol_l=found.mg * 1e3,
+        mghco3_mmol_l=found.mghco3 * 1e3,
+        mgco3_mmol_l=found.mgco3 * 1e3,
+        mgso4_mmol_l=found.mgso4 * 1e3,
+        nahco3_mmol_l=found.nahco3 * 1e3,
+        naco3_mmol_l=found.naco3 * 1e3,
+        free_sulfate_mmol_l=found.so4 * 1e3,
+        hypochlorite_mmol_l=found.hypochlorite * 1e3,
+        gamma_h=gamma_h,
+        gamma_calcium=gamma_ca,
+        gamma_hco3=gamma_hco3,
+        gamma_co3=gamma_co3,
+        gamma_co2=gamma_co2,
+        si_calcite=si_calcite,
+        si_aragonite=si_calcite + over_aragonite,
+        si_brucite=si_brucite,
+        log_pco2=log10(found.co2 * gamma_co2) - log_kh,
+        solved=found,
+    )
+
+
+def _log(value, log10, scalar):
+    """Log10, with minus infinity where the metal is absent."""
+    if scalar:
+        return log10(value) if value > 0.0 else -math.inf
+    with np.errstate(divide="ignore"):
+        return log10(value)
