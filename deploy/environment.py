@@ -91,15 +91,40 @@ def make(venv: Path, requirements: Path, *, needed_mb: int, also: tuple[Path, ..
         raise CannotMake(
             "This Python has no venv module. On Debian and Ubuntu: apt install python3-venv"
         ) from None
+    if python.exists() and stamp_file.exists() and stamp_file.read_text().split()[-1] == stamp.split()[-1]:
+        _upgrade(python, requirements, stamp_file)
+    else:
+        _build(venv, python, requirements)
+    stamp_file.write_text(stamp)
+    return python
+
+
+def _upgrade(python: Path, requirements: Path, stamp_file: Path) -> None:
+    """In place: pip fetches everything before it replaces anything, so a failed fetch changes nothing."""
+    before = stamp_file.read_text()
+    stamp_file.unlink()  # killed from here on, it is built anew next time
     try:
-        shutil.rmtree(venv, ignore_errors=True)
+        _run_pip(python, requirements)
+    except CannotMake:
+        stamp_file.write_text(before)
+        raise
+
+
+def _build(venv: Path, python: Path, requirements: Path) -> None:
+    """From nothing. One that is there and was not finished here stands aside, and comes back on failure."""
+    aside = venv.with_name(venv.name + ".aside")
+    if venv.exists():
+        shutil.rmtree(aside, ignore_errors=True)
+        venv.rename(aside)
+    try:
         _run_venv(venv)
         _run_pip(python, requirements)
-        stamp_file.write_text(stamp)
     except BaseException:
         shutil.rmtree(venv, ignore_errors=True)
+        if aside.exists():
+            aside.rename(venv)
         raise
-    return python
+    shutil.rmtree(aside, ignore_errors=True)
 
 
 def _run_venv(venv: Path) -> None:

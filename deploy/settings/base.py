@@ -3,6 +3,7 @@
 import importlib.util
 from datetime import timedelta
 from pathlib import Path
+from typing import Any
 
 import environ
 
@@ -100,7 +101,7 @@ TEMPLATES = [
 # A deferred transaction that reads and then writes fails at once when another writer is ahead, whatever the
 # timeout: hence IMMEDIATE. FULL, because write-ahead logging with NORMAL may lose the last commits at a power
 # cut.
-SQLITE_OPTIONS = {
+SQLITE_OPTIONS: dict[str, Any] = {
     "transaction_mode": "IMMEDIATE",
     "timeout": 20,
     "init_command": (
@@ -226,7 +227,7 @@ CELERY_TASK_PUBLISH_RETRY_POLICY = {
     "interval_max": 0.2,
 }
 
-LOGGING = {
+LOGGING: dict[str, Any] = {
     "version": 1,
     "disable_existing_loggers": False,
     "formatters": {"line": {"format": "{asctime} {levelname} {name}: {message}", "style": "{"}},
