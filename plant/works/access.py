@@ -18,7 +18,7 @@ from django.http import Http404, HttpRequest, HttpResponse
 from plant import clock
 from plant.ledger.models import Book
 from plant.works import models, queries
-from plant.works.stated import Stated
+from plant.works.stated import NotStated, Stated
 
 ROLES: dict[str, frozenset[str]] = {
     "operator": frozenset(
@@ -95,6 +95,14 @@ class At:
     @property
     def code(self) -> str:
         return self.book.code
+
+    @property
+    def works_name(self) -> str:
+        """Its name as stated; the code before anything is stated."""
+        try:
+            return self.stated.works(self.now).name
+        except NotStated:
+            return self.book.code
 
 
 def member_from(username: str, value: dict[str, Any] | None) -> Member | None:

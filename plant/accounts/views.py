@@ -1,0 +1,65 @@
+"""Signing in and out, a new password, and day or night colours. None of it belongs to a works."""
+
+from __future__ import annotations
+
+from django.contrib import messages
+from django.contrib.auth import views as auth_views
+from django.contrib.auth.decorators import login_not_required
+from django.http import HttpRequest, HttpResponse
+from django.shortcuts import redirect
+from django.urls import reverse_lazy
+from django.utils.http import url_has_allowed_host_and_scheme
+from django.views.decorators.http import require_POST
+
+from plant.accounts import forms
+
+THEMES = ("day", "night")
+A_YEAR_S = 365 * 24 * 3600
+
+
+class SignIn(auth_views.LoginView):
+    """A page that also says why somebody was sent here."""
+
+    template_name = "accounts/sign_in.html"
+    authentication_form = forms.SignInForm
+    redirect_authenticated_user = True
+
+
+class Password(auth_views.PasswordChangeView):
+    """The person stays signed in here; sessions elsewhere end."""
+
+    template_name = "accounts/password.html"
+    form_class = forms.PasswordForm
+    success_url = reverse_lazy("accounts:password")
+
+    def form_valid(self, form: forms.PasswordForm) -> HttpResponse:
+        messages.success(self.request, "Your password is changed. Wherever else you were signed in, you no longer are.")
+        return super().form_valid(form)
+
+
+sign_in = SignIn.as_view()
+sign_out = auth_views.LogoutView.as_view()
+password = Password.as_view()
+
+
+@login_not_required
+@require_POST
+def theme(request: HttpRequest) -> HttpResponse:
+    """Keeps day, night or the device's own choice in a cookie, and goes back to the page."""
+    back = request.POST.get("next", "/")
+    if not url_has_allowed_host_and_scheme(back, allowed_hosts={request.get_host()}, require_https=request.is_secure()):
+        back = "/"
+    answer = redirect(back)
+    chosen = request.POST.get("theme", "")
+    if chosen in THEMES:
+        answer.set_cookie("theme", chosen, max_age=A_YEAR_S, samesite="Lax", secure=request.is_secure(), httponly=True)
+    else:
+        answer.delete_cookie("theme", samesite="Lax")
+    return answer
+
+
+# Read by the walk over all addresses. "public" needs no sign-in, "anyone" needs one and nothing more.
+sign_in.permission = "public"
+theme.permission = "public"
+sign_out.permission = "anyone"
+password.permission = "anyone"
