@@ -296,7 +296,7 @@ def pytest_unconfigure() -> None:
 def pytest_runtest_makereport(item: pytest.Item) -> Iterator[None]:
     report = yield
     must_run = item.get_closest_marker("service") or item.get_closest_marker("browser")
-    if CI and must_run and report.skipped and not hasattr(report, "wasxfail"):
+    if CI and must_run and report.skipped:
         report.outcome = "failed"
         report.longrepr = f"{item.nodeid} was skipped where every service must be tried: {report.longrepr}"
     return report
