@@ -74,6 +74,7 @@ SOURCES: dict[str, str] = {
     ),
     "ABC-TABLES": "Association of Boards of Certification, formula and conversion tables, 2017; opened",
     "WIS-NR-811.56": "Wisconsin Adm. Code NR 811.56, sequestration; opened",
+    "MD0160": "US Army subcourse MD0160, Military Water Supply, lesson 2: dose = demand + residual; opened",
     "GUM": "JCGM 100:2008, Guide to the expression of uncertainty in measurement, eq. 10 and 13; from memory",
     "EPA-WSG-21": "US EPA Water Supply Guidance 21 (April 1981), rounding; second-hand",
 }
