@@ -1,0 +1,308 @@
+"""Tables: measured, set in parts when too wide, carried over pages with their heads, and tagged cell by cell.
+
+A painter of its own rather than reportlab's Table: every cell is either a number on one line or words that wrap, and
+that little is quicker to measure, easier to tag, and can be set in parts.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Any
+
+from reportlab.lib.utils import simpleSplit
+from reportlab.platypus import Flowable
+
+from plant.reports.pdf import faces, ink
+from plant.reports.pdf.document import Cell, Column, Table
+from plant.reports.pdf.tagged import Element
+
+PAD_X = 3.5
+PAD_Y = 2.1
+MARK_WIDTH = 5.0
+LINE_CELL = 9.4
+LINE_HEAD = 8.8
+WIDEST_LABEL = 0.30  # of the page, before a label wraps
+NARROWEST_WORDS = 74.0
+
+
+@dataclass(frozen=True)
+class Row:
+    """A row ready to be painted: the lines of each cell, its height, and whether it is set bold."""
+
+    cells: tuple[Cell, ...]
+    lines: tuple[tuple[str, ...], ...]
+    height: float
+    bold: bool
+
+
+def grids(parent: Element, table: Table, page_width: float) -> list[Grid]:
+    """The table as one flowable, or in several parts one below the other, each with the label columns."""
+    natural = [_natural(table, index, page_width) for index in range(len(table.columns))]
+    parts = _parts(table, natural, page_width)
+    return [
+        Grid(Element("Table", parent), table, part, natural, page_width, number, len(parts))
+        for number, part in enumerate(parts, start=1)
+    ]
+
+
+def _natural(table: Table, index: int, page_width: float) -> float:
+    column = table.columns[index]
+    body = max((faces.width(row[index].text, _face(table, number), ink.CELL) for number, row in enumerate(table.rows)), default=0.0)
+    if column.wraps:
+        body = max(NARROWEST_WORDS, min(body, page_width * 0.8))
+    elif index < table.labels:
+        body = min(body, page_width * WIDEST_LABEL)
+    words = (column.head + " " + column.unit).split()
+    head = max((faces.width(word, faces.SEMIBOLD, ink.HEAD) for word in words), default=0.0)
+    marks = MARK_WIDTH if any(row[index].mark for row in table.rows) else 0.0
+    return max(body + marks, head) + 2 * PAD_X
+
+
+def _face(table: Table, row: int) -> str:
+    return faces.SEMIBOLD if row >= len(table.rows) - table.totals else faces.REGULAR
+
+
+def _parts(table: Table, natural: list[float], page_width: float) -> list[list[int]]:
+    """Column numbers of each part. Neighbours of one group stay together unless the group alone is too wide."""
+    labels = list(range(table.labels))
+    least = [NARROWEST_WORDS + 2 * PAD_X if column.wraps else width for column, width in zip(table.columns, natural, strict=True)]
+    room = page_width - sum(least[index] for index in labels)
+    blocks: list[list[int]] = []
+    for index in range(table.labels, len(table.columns)):
+        group = table.columns[index].group
+        if blocks and group and table.columns[blocks[-1][-1]].group == group and sum(least[i] for i in blocks[-1]) + least[index] <= room:
+            blocks[-1].append(index)
+        else:
+            blocks.append([index])
+    parts: list[list[int]] = []
+    used = 0.0
+    for block in blocks:
+        need = sum(least[index] for index in block)
+        if parts and used + need <= room:
+            parts[-1].extend(block)
+            used += need
+        else:
+            parts.append(list(block))
+            used = need
+    return [labels + part for part in parts] or [labels]
+
+
+class Grid(Flowable):  # type: ignore[misc]
+    """One part of a table, or what is left of it after a page break."""
+
+    def __init__(
+        self, element: Element, table: Table, indexes: list[int], natural: list[float], page_width: float, number: int, of: int,
+    ) -> None:
+        super().__init__()
+        self.element, self.table, self.indexes, self.number, self.of = element, table, indexes, number, of
+        self.columns = [table.columns[index] for index in indexes]
+        self.widths = _spread(self.columns, [natural[index] for index in indexes], page_width)
+        self.heads = [self._head_lines(column, width) for column, width in zip(self.columns, self.widths, strict=True)]
+        self.head_height = max(len(lines) for lines in self.heads) * LINE_HEAD + 2 * PAD_Y
+        self.grouped = any(column.group for column in self.columns)
+        self.group_height = LINE_HEAD + PAD_Y if self.grouped else 0.0
+        self.rows = [self._row(row, position) for position, row in enumerate(table.rows)]
+        self.first = 0
+        self.hAlign = "LEFT"
+        self.spaceAfter = 7
+
+    @property
+    def caption(self) -> str:
+        """The caption, with the part where there are several."""
+        return self.table.caption + (f" ({self.number} of {self.of})" if self.of > 1 else "")
+
+    def _head_lines(self, column: Column, width: float) -> list[tuple[str, str]]:
+        room = width - 2 * PAD_X + 0.01
+        lines = [(line, faces.SEMIBOLD) for line in simpleSplit(column.head, faces.SEMIBOLD, ink.HEAD, room)]
+        return lines + [(line, faces.REGULAR) for line in simpleSplit(column.unit, faces.REGULAR, ink.HEAD, room)]
+
+    def _row(self, row: tuple[Cell, ...], position: int) -> Row:
+        cells = tuple(row[index] for index in self.indexes)
+        bold = position >= len(self.table.rows) - self.table.totals
+        face = faces.SEMIBOLD if bold else faces.REGULAR
+        lines = []
+        for cell, column, width in zip(cells, self.columns, self.widths, strict=True):
+            room = width - 2 * PAD_X - (MARK_WIDTH if cell.mark and not column.wraps else 0) + 0.01
+            whole = "\n" not in cell.text and faces.width(cell.text, face, ink.CELL) <= room
+            lines.append((cell.text,) if whole else tuple(_broken(cell.text, face, room)))
+        return Row(cells, tuple(lines), max(len(part) for part in lines) * LINE_CELL + 2 * PAD_Y, bold)
+
+    def wrap(self, available_width: float, available_height: float) -> tuple[float, float]:
+        self.width = sum(self.widths)
+        self.height = self.group_height + self.head_height + sum(row.height for row in self.rows[self.first:])
+        return self.width, self.height
+
+    def split(self, available_width: float, available_height: float) -> list[Any]:
+        room = available_height - self.group_height - self.head_height
+        count = 0
+        for row in self.rows[self.first:]:
+            if row.height > room:
+                break
+            room -= row.height
+            count += 1
+        left = len(self.rows) - self.first - count
+        if left and left < 2 and count > 3:
+            count -= 1  # never one lonely row on the next page
+        if count < min(3, len(self.rows) - self.first):
+            return []
+        upper, lower = self._piece(self.first, self.first + count), self._piece(self.first + count, len(self.rows))
+        return [upper, lower]
+
+    def _piece(self, first: int, last: int) -> Grid:
+        piece: Grid = object.__new__(Grid)
+        piece.__dict__.update(self.__dict__)
+        piece.rows, piece.first = self.rows[:last], first
+        return piece
+
+    def draw(self) -> None:
+        canvas = self.canv
+        continued = self.first > 0
+        top = self.height
+        self._grounds(top)
+        top = self._head(top, continued)
+        for row in self.rows[self.first:]:
+            line = Element("TR", self.element)
+            for number, (cell, lines) in enumerate(zip(row.cells, row.lines, strict=True)):
+                label = number < self.table.labels
+                kind = Element("TH" if label else "TD", line, "row" if label else "")
+                canvas.begin(kind)
+                self._cell(number, cell, lines, top, row.bold)
+                canvas.end()
+            top -= row.height
+
+    def _grounds(self, top: float) -> None:
+        canvas = self.canv
+        canvas.begin_artifact()
+        y = top - self.group_height - self.head_height
+        canvas.setFillColor(ink.STRIPE)
+        last = len(self.table.rows) - self.table.totals
+        for position, row in enumerate(self.rows[self.first:], start=self.first):
+            if position % 2 and position < last:
+                canvas.rect(0, y - row.height, self.width, row.height, stroke=0, fill=1)
+            if position == last and position > self.first:
+                canvas.setStrokeColor(ink.INK)
+                canvas.setLineWidth(0.5)
+                canvas.line(0, y, self.width, y)
+            y -= row.height
+        canvas.setStrokeColor(ink.INK)
+        canvas.setLineWidth(0.7)
+        canvas.line(0, top - self.group_height - self.head_height, self.width, top - self.group_height - self.head_height)
+        canvas.setLineWidth(0.4)
+        canvas.setStrokeColor(ink.LINE)
+        canvas.line(0, y, self.width, y)
+        canvas.end()
+
+    def _head(self, top: float, continued: bool) -> float:
+        """Paints the heads; on a continuation they are repeated for the eye only."""
+        canvas = self.canv
+        if self.grouped:
+            self._group_heads(top)
+            top -= self.group_height
+        line = None if continued else Element("TR", self.element)
+        canvas.setFillColor(ink.INK)
+        left = 0.0
+        for number, (column, width, lines) in enumerate(zip(self.columns, self.widths, self.heads, strict=True)):
+            if line is None:
+                canvas.begin_artifact()
+            else:
+                canvas.begin(Element("TH", line, "column"))
+            y = top - self.head_height + PAD_Y + 2 + (len(lines) - 1) * LINE_HEAD
+            gutter = MARK_WIDTH if self._marked(number) else 0
+            for text, face in lines:
+                canvas.setFont(face, ink.HEAD)
+                if column.number:
+                    canvas.drawRightString(left + width - PAD_X - gutter, y, text)
+                else:
+                    canvas.drawString(left + PAD_X, y, text)
+                y -= LINE_HEAD
+            canvas.end()
+            left += width
+        return top - self.head_height
+
+    def _marked(self, number: int) -> bool:
+        return self.columns[number].number and any(row.cells[number].mark for row in self.rows)
+
+    def _group_heads(self, top: float) -> None:
+        canvas = self.canv
+        canvas.begin_artifact()
+        canvas.setFont(faces.SEMIBOLD, ink.HEAD)
+        canvas.setStrokeColor(ink.LINE)
+        canvas.setLineWidth(0.5)
+        left = 0.0
+        start, group = 0.0, ""
+        for column, width in [*zip(self.columns, self.widths, strict=True), (Column(""), 0.0)]:
+            if column.group != group:
+                if group:
+                    canvas.setFillColor(ink.WATER)
+                    room = left - start - 2 * PAD_X
+                    canvas.drawString(start + PAD_X, top - LINE_HEAD + 1.5, _clipped(group, room))
+                    canvas.line(start + PAD_X, top - LINE_HEAD - 1, left - PAD_X, top - LINE_HEAD - 1)
+                start, group = left, column.group
+            left += width
+        canvas.end()
+
+    def _cell(self, number: int, cell: Cell, lines: tuple[str, ...], top: float, bold: bool) -> None:
+        canvas, column = self.canv, self.columns[number]
+        left, width = sum(self.widths[:number]), self.widths[number]
+        face = faces.SEMIBOLD if bold else faces.REGULAR
+        canvas.setFillColor(ink.INK)
+        canvas.setFont(face, ink.CELL)
+        y = top - PAD_Y - ink.CELL + 0.6
+        gutter = MARK_WIDTH if self._marked(number) else 0
+        for text in lines:
+            if column.number:
+                canvas.drawRightString(left + width - PAD_X - gutter, y, text)
+            else:
+                canvas.drawString(left + PAD_X, y, text)
+            y -= LINE_CELL
+        if cell.mark:
+            canvas.setFont(faces.REGULAR, 5.4)
+            canvas.setFillColor(ink.QUIET)
+            canvas.drawString(left + width - PAD_X - MARK_WIDTH + 1, top - PAD_Y - ink.CELL + 2.8, cell.mark)
+
+
+def _spread(columns: list[Column], natural: list[float], page_width: float) -> list[float]:
+    """Widths of a part: words share the room that is left; without words a narrow table is loosened a little."""
+    wrapping = [index for index, column in enumerate(columns) if column.wraps]
+    fixed = sum(width for index, width in enumerate(natural) if index not in wrapping)
+    if wrapping:
+        room = page_width - fixed
+        wanted = sum(natural[index] for index in wrapping)
+        if wanted > room:
+            return [_share(natural, wrapping, index, room) if index in wrapping else width for index, width in enumerate(natural)]
+        return [
+            width + (room - wanted if index == wrapping[-1] else 0.0) if index in wrapping else width
+            for index, width in enumerate(natural)
+        ]
+    loose = min((page_width - fixed) / len(columns), 14.0)
+    return [width + max(loose, 0.0) for width in natural]
+
+
+def _share(natural: list[float], wrapping: list[int], index: int, room: float) -> float:
+    least = NARROWEST_WORDS + 2 * PAD_X
+    if room <= least * len(wrapping):
+        return room / len(wrapping)
+    surplus = sum(natural[i] - least for i in wrapping) or 1.0
+    return least + (room - least * len(wrapping)) * (natural[index] - least) / surplus
+
+
+def _broken(text: str, face: str, room: float) -> list[str]:
+    """Lines that fit; a word too long for the column is broken."""
+    out: list[str] = []
+    for line in simpleSplit(text, face, ink.CELL, room):
+        while faces.width(line, face, ink.CELL) > room and len(line) > 1:
+            keep = len(line) - 1
+            while keep > 1 and faces.width(line[:keep], face, ink.CELL) > room:
+                keep -= 1
+            out.append(line[:keep])
+            line = line[keep:]
+        out.append(line)
+    return out or [""]
+
+
+def _clipped(text: str, room: float) -> str:
+    if faces.width(text, faces.SEMIBOLD, ink.HEAD) <= room:
+        return text
+    while text and faces.width(text + "…", faces.SEMIBOLD, ink.HEAD) > room:
+        text = text[:-1]
+    return text + "…"

@@ -1,0 +1,21 @@
+"""Colours and sizes of the printed page. Nothing is told by colour alone: the page must hold when printed in grey."""
+
+from __future__ import annotations
+
+INK = "#10222B"
+QUIET = "#4A5B64"
+WATER = "#0A5A86"
+LINE = "#9FB0B6"
+HAIR = "#D5DDDF"
+STRIPE = "#F1F5F6"
+BAND = "#D3E6EE"
+CARE = "#8A5200"
+
+BODY = 9.0
+SMALL = 7.6
+CELL = 7.4
+HEAD = 7.0
+H1 = 26.0
+H2 = 14.0
+H3 = 9.6
+LEADING = 1.34
