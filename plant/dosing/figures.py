@@ -57,6 +57,7 @@ class DayDose:
     weak: bool = False
     interpolated: bool = False
     corrected: bool = False
+    strength_sd_pct: float = 0.0
     remarks: tuple[str, ...] = ()
 
     @property
