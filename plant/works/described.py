@@ -6,6 +6,8 @@ import dataclasses
 from dataclasses import dataclass, field
 from typing import Any, TypeVar
 
+from plant.works import kinds
+
 
 @dataclass(frozen=True)
 class Works:
@@ -194,11 +196,7 @@ LIMIT_HEAD = ("code", "kind", "level", "parameter", "unit", "source", "tell", "s
 def limit(code: str, value: dict[str, Any]) -> Limit:
     """A limit, what it stands on named by kind and code; the keys of its kind gathered into ``keys``."""
     subject_kind = next(
-        (
-            key
-            for key in ("sample_point", "dosing_point", "vessel", "contact_segment", "meter")
-            if key in value
-        ),
+        (key for key in kinds.LIMIT_SUBJECTS if key in value),
         "works",
     )
     keys = {key: item for key, item in value.items() if key not in LIMIT_HEAD and key != subject_kind}

@@ -68,7 +68,7 @@ _WATER = (
     Parameter("alkalinity", "Alkalinity", _CACO3, 0, -500.0, 10000.0, 5.0, 500.0),
     Parameter("p_alkalinity", "Phenolphthalein alkalinity", _CACO3, 0, 0.0, 10000.0, 0.0, 150.0),
     Parameter("carbon_dioxide", "Carbon dioxide", "mg/L", 1, 0.0, 3000.0, 0.0, 120.0),
-    Parameter("temperature", "Temperature", "°C", 1, -2.0, 100.0, 0.0, 35.0),
+    Parameter("temperature", "Temperature", "°C", 1, -2.0, 100.0, 0.0, 35.0, (SAMPLE_POINT, VESSEL)),
     Parameter("turbidity", "Turbidity", "NTU", 2, 0.0, 10000.0, 0.0, 50.0),
     Parameter("conductance", "Conductance", "uS/cm", 0, 0.0, 100000.0, 10.0, 2500.0),
     Parameter("colour", "Colour", "mg/L", 0, 0.0, 2000.0, 0.0, 100.0),

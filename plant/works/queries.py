@@ -4,27 +4,25 @@ from __future__ import annotations
 
 from collections import OrderedDict
 
-from django.db.models import Max
-
 from plant.ledger.models import Book
 from plant.works import models
 from plant.works.stated import Saying, Stated
 
-_kept: OrderedDict[tuple[int, int], Stated] = OrderedDict()
+_kept: OrderedDict[tuple[int, str], Stated] = OrderedDict()
 _KEEP = 64
 
 
 def stated(book: Book, *, known: int | None = None) -> Stated:
     """All that is stated of a works, as known at a seq (None: now).
 
-    Kept in memory by the seq of the last statement; statements are never changed, so what is kept never goes
-    stale.
+    Kept in memory by the hash of the last entry with a statement: it binds all before it, so what is kept
+    never goes stale.
     """
     rows = models.Statement.objects.filter(book=book)
     if known is not None:
         rows = rows.filter(seq__lte=known)
-    last = rows.aggregate(last=Max("seq"))["last"] or 0
-    key = (book.pk, last)
+    last = rows.order_by("-seq", "-line").values_list("entry__hash").first()
+    key = (book.pk, last[0] if last else "")
     if key in _kept:
         _kept.move_to_end(key)
         return _kept[key]

@@ -6,7 +6,7 @@ from __future__ import annotations
 
 import bisect
 import datetime as dt
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 from typing import Any
 from zoneinfo import ZoneInfo
@@ -47,6 +47,11 @@ class Stated:
         for saying in sorted(sayings, key=lambda item: (item.effective_from, item.seq, item.line)):
             self._by.setdefault(saying.kind, {}).setdefault(saying.subject, []).append(saying)
         self._calendar: dict[tuple[str, str], clock.Calendar] = {}
+
+    def adding(self, sayings: Iterable[Saying]) -> Stated:
+        """The same with more said, for looking before anything is written."""
+        said = [saying for chains in self._by.values() for chain in chains.values() for saying in chain]
+        return Stated([*said, *sayings])
 
     def saying(self, kind: str, subject: str, at: dt.datetime) -> Saying | None:
         """The statement in force, a withdrawal included; None when nothing has been said by then."""
