@@ -9,7 +9,7 @@ from dataclasses import replace
 import numpy as np
 
 from chemistry import activity as activities
-from chemistry import errors
+from chemistry import elementwise, errors
 from chemistry.carbonate import chemicals, constants_of_equilibrium, equilibrium, speciation, waters
 
 HIGHEST_DOSE_MG_L = 2000.0
@@ -23,7 +23,7 @@ def water_after_doses(water, doses_mg_l, *, activity=activities.DAVIES):
     doses_mg_l: mapping of a name in chemicals.EFFECTS to mg/L of the pure compound (chlorine, hypochlorite as Cl2), each
     0 to 2,000. Outside raises OutOfRange. Source: stoichiometry (key definition).
     """
-    return waters.water_of_totals(water, _dosed_totals(water, doses_mg_l, activity))
+    return waters.water_of_totals(water, dosed_totals(water, doses_mg_l, activity))
 
 
 def speciation_after_doses(water, doses_mg_l, *, activity=activities.DAVIES, open_to_air_ppm_co2=None):
@@ -33,7 +33,7 @@ def speciation_after_doses(water, doses_mg_l, *, activity=activities.DAVIES, ope
     lets CO2 escape or enter until the water is in balance with it, which takes hours to days in an open tank.
     A result outside pH 3 to 13 raises OutOfRange or ChemistryError.
     """
-    after = _dosed_totals(water, doses_mg_l, activity)
+    after = dosed_totals(water, doses_mg_l, activity)
     if open_to_air_ppm_co2 is None:
         found = equilibrium.solve(after, activity)
     else:
@@ -62,7 +62,7 @@ def dose_for_target_ph(water, chemical, target_ph, *, activity=activities.DAVIES
 def dose_between(water, chemical, target_ph, activity):
     """The dose of :func:`dose_for_target_ph` and the totals it leaves."""
     effect = chemicals.effect(chemical)
-    before = _carbon_totals(water, activity)
+    before = carbon_totals(water, activity)
     scalar = water.is_scalar and not isinstance(target_ph, np.ndarray)
     h = 10.0 ** (-target_ph)
 
@@ -75,15 +75,13 @@ def dose_between(water, chemical, target_ph, activity):
     nothing = 0.0 if scalar else np.zeros(np.broadcast_shapes(np.shape(before.alkalinity), np.shape(target_ph)))
     low, high = nothing, nothing + most
     f_low, f_high = at(low), at(high)
-    where, least, largest = (_where, min, float) if scalar else (np.where, np.minimum, np.max)
+    where = elementwise.where
     there = abs(f_low) < _SLACK_EQ_L
-    unreachable = ~there & (f_low * f_high > 0.0) if not scalar else (not there and f_low * f_high > 0.0)
-    if np.any(unreachable):
+    out_of_reach = np.logical_not(there) & (f_low * f_high > 0.0)
+    if np.any(out_of_reach):
+        ph = np.broadcast_to(target_ph, np.shape(out_of_reach))[out_of_reach].flat[0]
         raise errors.ChemistryError(
-            f"no dose of {chemical} up to {HIGHEST_DOSE_MG_L:g} mg/L brings this water to pH "
-            f"{np.broadcast_to(target_ph, np.shape(unreachable))[unreachable].flat[0]:g}"
-            if not scalar
-            else f"no dose of {chemical} up to {HIGHEST_DOSE_MG_L:g} mg/L brings this water to pH {target_ph:g}"
+            f"no dose of {chemical} up to {HIGHEST_DOSE_MG_L:g} mg/L brings this water to pH {ph:g}"
         )
     f_high = where(there, -f_low - 1e-12, f_high)
     moles = low
@@ -93,22 +91,17 @@ def dose_between(water, chemical, target_ph, activity):
             weight = weight * 0.0 + 0.5
         moles = where(there, 0.0, low + (high - low) * weight)
         miss = at(moles)
-        if largest(where(there, 0.0, abs(miss))) < 1e-12 or largest(high - low) < 1e-15:
+        if np.max(where(there, 0.0, abs(miss))) < 1e-12:
             break
         same = (miss > 0.0) == (f_low > 0.0)
         # Illinois: halve the kept end's value so that it can't stay for ever
         f_high, f_low = where(same, f_high * 0.5, miss), where(same, miss, f_low * 0.5)
         low, high = where(same, moles, low), where(same, high, moles)
-    del least
     return moles * (effect.g_mol * 1e3), _added(before, effect, moles)
 
 
-def _where(condition, yes, no):
-    return yes if condition else no
-
-
-def _carbon_totals(water, activity):
-    """Totals of a water with both alkalinity and carbon known."""
+def carbon_totals(water, activity):
+    """waters.Totals of a water with both alkalinity and carbon known, the pH left to be found."""
     found = waters.totals(water)
     if found.h is None:
         return found
@@ -134,8 +127,15 @@ def _added(before, effect, moles):
     )
 
 
-def _dosed_totals(water, doses_mg_l, activity):
-    after = _carbon_totals(water, activity)
+def added(before, chemical, dose_mg_l):
+    """waters.Totals after a dose in mg/L of a chemical of chemicals.EFFECTS (not checked)."""
+    effect = chemicals.effect(chemical)
+    return _added(before, effect, dose_mg_l * (1e-3 / effect.g_mol))
+
+
+def dosed_totals(water, doses_mg_l, activity):
+    """waters.Totals of a water after checked doses; see :func:`water_after_doses`."""
+    after = carbon_totals(water, activity)
     for chemical, dose_mg_l in doses_mg_l.items():
         effect = chemicals.effect(chemical)
         errors.require(f"dose of {chemical}", dose_mg_l, "mg/L", 0.0, HIGHEST_DOSE_MG_L, _DOSE_LIMIT)

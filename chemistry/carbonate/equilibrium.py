@@ -234,6 +234,14 @@ def solve(totals, model, *, calcite=False, brucite=False, co2_activity=None, sta
     return solved
 
 
+def log10(value):
+    """Log10 of a number or an array; minus infinity at zero (a metal that is absent)."""
+    if type(value) is float:
+        return math.log10(value) if value > 0.0 else -math.inf
+    with np.errstate(divide="ignore"):
+        return np.log10(value)
+
+
 def _require_sense(solved):
     errors.require("ionic strength", solved.ionic_strength, "mol/L", 0.0, 0.5, "Davies 1962")
     errors.require("activity of H+ (10^-pH)", solved.h, "", _LOWEST_H * 0.999, _HIGHEST_H * 1.001, "model, pH 3 to 13")
@@ -301,7 +309,7 @@ class _Problem:
         if start is not None:
             c = start.co3
             if self.calcite:
-                c = c / xp.sqrt(xp.most(start.ion_product_calcite, 1e-30))
+                c = c / xp.sqrt(xp.most(1e-4, xp.least(start.ion_product_calcite, 1e4)))
             return start.h, c, start.so4, start.ionic_strength
         weak = abs(t.alkalinity) if t.alkalinity is not None else t.carbon
         ionic = 0.5 * (

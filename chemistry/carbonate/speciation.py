@@ -1,9 +1,6 @@
 """Every species of a water, and its saturation with calcium carbonate."""
 
-import math
 from dataclasses import dataclass
-
-import numpy as np
 
 from chemistry import activity as activities
 from chemistry.carbonate import constants_of_equilibrium, equilibrium, waters
@@ -68,11 +65,10 @@ def speciate(water, *, activity=activities.DAVIES):
 
 def of_solved(temperature_c, found):
     """Dress an equilibrium.Solved as a :class:`Speciation`."""
-    scalar = type(found.h) is float and type(found.co3) is float and type(temperature_c) is float
-    log10 = math.log10 if scalar else np.log10
+    log10 = equilibrium.log10
     kelvin = temperature_c + 273.15
-    si_calcite = _log(found.ion_product_calcite, log10, scalar)
-    si_brucite = _log(found.ion_product_brucite, log10, scalar)
+    si_calcite = log10(found.ion_product_calcite)
+    si_brucite = log10(found.ion_product_brucite)
     gamma_h, gamma_ca, gamma_hco3, gamma_co3, gamma_co2 = found.gammas
     log_kh = constants_of_equilibrium.log_k("henry_co2", temperature_c)
     # log Ksp of calcite less that of aragonite: the two fits differ in their first and third coefficients only
@@ -111,10 +107,3 @@ def of_solved(temperature_c, found):
         solved=found,
     )
 
-
-def _log(value, log10, scalar):
-    """Log10, with minus infinity where the metal is absent."""
-    if scalar:
-        return log10(value) if value > 0.0 else -math.inf
-    with np.errstate(divide="ignore"):
-        return log10(value)
