@@ -98,6 +98,11 @@ class At:
 
     @property
     def works_name(self) -> str:
+        """The name of the works, for the head of a page."""
+        return self.stated.works(self.now).name
+
+    @property
+    def works_name(self) -> str:
         """Its name as stated; the code before anything is stated."""
         try:
             return self.stated.works(self.now).name
@@ -154,9 +159,7 @@ def needs(permission: str) -> Callable[[View], View]:
             if who is None:
                 raise Http404("There is no such works.")
             if not who.may(permission):
-                raise PermissionDenied(
-                    f"This needs the right “{permission}”, which your role ({who.role}) does not have here."
-                )
+                raise PermissionDenied(f"This needs the right “{permission}”, which your role ({who.role}) does not have here.")
             at = At(book, stated, who, now)
             request.at = at  # type: ignore[attr-defined]  # templates show the works and the role from it
             return view(request, at, *args, **kwargs)

@@ -145,17 +145,11 @@ def checked(stated: Stated, changes: Sequence[Change]) -> list[Change]:
         except blocks.BlockError as problem:
             problems += [(index, message) for message in problem.messages]
         else:
-            clean.append(
-                Change(
-                    change.kind, change.subject, value, change.effective_from, change.withdrawn, change.reason
-                )
-            )
+            clean.append(Change(change.kind, change.subject, value, change.effective_from, change.withdrawn, change.reason))
     if problems:
         raise Refused(problems)
     after = stated.adding(
-        Saying(
-            item.kind, item.subject, item.effective_from, item.value, item.withdrawn, _FAR, line, item.reason
-        )
+        Saying(item.kind, item.subject, item.effective_from, item.value, item.withdrawn, _FAR, line, item.reason)
         for line, item in enumerate(clean)
     )
     indexes = {(item.kind, item.subject): index for index, item in reversed(list(enumerate(clean)))}
@@ -181,9 +175,7 @@ def _moments(stated: Stated, changes: Sequence[Change]) -> list[dt.datetime]:
     if not changes:
         return []
     earliest = min(change.effective_from for change in changes)
-    later = {
-        saying.effective_from for saying in stated.changes(earliest, dt.datetime.max.replace(tzinfo=dt.UTC))
-    }
+    later = {saying.effective_from for saying in stated.changes(earliest, dt.datetime.max.replace(tzinfo=dt.UTC))}
     return sorted(later)
 
 

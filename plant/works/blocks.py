@@ -36,9 +36,7 @@ def check(kind: str, subject: str, value: dict[str, Any]) -> dict[str, Any]:
     if chooser and chooser in clean:
         reading.refuse_unknown(value, keys, problems, f"{chooser} {clean[chooser]}")
     else:
-        reading.refuse_unknown(
-            value, keys + [key for more in table.extra.values() for key in more], problems, ""
-        )
+        reading.refuse_unknown(value, keys + [key for more in table.extra.values() for key in more], problems, "")
     if not problems and kind in _MORE:
         _MORE[kind](clean, problems)
     if problems:

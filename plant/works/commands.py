@@ -16,6 +16,7 @@ one sentence.
 
 from __future__ import annotations
 
+import abc
 import argparse
 import csv
 import datetime as dt
@@ -94,9 +95,7 @@ def month(text: str) -> tuple[int, int]:
 
 def add_now(parser: CommandParser) -> None:
     """The option --now."""
-    parser.add_argument(
-        "--now", metavar="ISO", help="act as if it were this moment; only where WEIRBOOK_ALLOW_NOW=1"
-    )
+    parser.add_argument("--now", metavar="ISO", help="act as if it were this moment; only where WEIRBOOK_ALLOW_NOW=1")
 
 
 def set_now(text: str | None, calendar: clock.Calendar | None, book: Book | None) -> dt.datetime:
@@ -104,9 +103,7 @@ def set_now(text: str | None, calendar: clock.Calendar | None, book: Book | None
     if text is None:
         return clock.now()
     if not settings.WEIRBOOK_ALLOW_NOW:
-        raise CommandError(
-            "--now is refused: it is for replaying a history, and only where WEIRBOOK_ALLOW_NOW=1 is set"
-        )
+        raise CommandError("--now is refused: it is for replaying a history, and only where WEIRBOOK_ALLOW_NOW=1 is set")
     at = moment(text, calendar, option="--now")
     if book is not None:
         try:
@@ -125,7 +122,7 @@ def find_book(code: str) -> Book:
         raise CommandError(f"{problem}; there is {codes or 'none yet: load a works file first'}") from None
 
 
-class WorksCommand(BaseCommand):
+class WorksCommand(BaseCommand, abc.ABC):
     """Base of a command about one works; see the module's docstring."""
 
     takes_known_at = False
@@ -147,9 +144,7 @@ class WorksCommand(BaseCommand):
                 metavar="YYYY-MM-DD",
                 help="first operating day",
             )
-            parser.add_argument(
-                "--to", dest="last", required=True, type=date, metavar="YYYY-MM-DD", help="last operating day"
-            )
+            parser.add_argument("--to", dest="last", required=True, type=date, metavar="YYYY-MM-DD", help="last operating day")
 
     def handle(self, *args: Any, **options: Any) -> None:
         book = find_book(options.pop("works"))
@@ -168,9 +163,9 @@ class WorksCommand(BaseCommand):
             raise CommandError(f"--from {first} lies after --to {last}")
         self.run(Asked(book, now, known, when, stated, calendar, first, last), **options)
 
+    @abc.abstractmethod
     def run(self, asked: Asked, **options: Any) -> None:
         """Does the work; ``options`` are the subclass's own."""
-        raise NotImplementedError
 
     def write_csv(self, header: Sequence[str], rows: Iterable[Sequence[Any]]) -> None:
         """A CSV table to standard output; None is an empty cell."""
@@ -184,6 +179,4 @@ def _calendar(stated: Stated, at: dt.datetime, book: Book) -> clock.Calendar:
         return stated.calendar(at)
     except NotStated:
         when = f"{at:%Y-%m-%d %H:%M} UTC"
-        raise CommandError(
-            f"nothing was stated of works {book.code} by {when}: load a works file first"
-        ) from None
+        raise CommandError(f"nothing was stated of works {book.code} by {when}: load a works file first") from None

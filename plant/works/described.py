@@ -175,9 +175,7 @@ def build(kind: type[Part], code: str, value: dict[str, Any]) -> Part:
     ``extra``).
     """
     names = {item.name for item in dataclasses.fields(kind)}  # type: ignore[arg-type]
-    known = {
-        key: tuple(item) if isinstance(item, list) else item for key, item in value.items() if key in names
-    }
+    known = {key: tuple(item) if isinstance(item, list) else item for key, item in value.items() if key in names}
     known["code"] = code
     if "extra" in names:
         known["extra"] = {key: item for key, item in value.items() if key not in names}

@@ -214,9 +214,7 @@ def _fail() -> Any:
 def _read_points(key: kinds.Key, value: Any) -> list[list[float | int]]:
     plain = kinds.Key(key.name, "number")
     found = [[_read_number(plain, number) for number in _items(pair, 2)] for pair in _items(value)]
-    rising = all(len(pair) == 2 for pair in found) and all(
-        later[0] > former[0] for former, later in itertools.pairwise(found)
-    )
+    rising = all(len(pair) == 2 for pair in found) and all(later[0] > former[0] for former, later in itertools.pairwise(found))
     if len(found) < 2 or not rising:
         raise ValueError
     return found
@@ -255,12 +253,8 @@ def _read_need(key: kinds.Key, value: Any) -> dict[str, Any]:
     refuse_unknown(value, keys, problems, f"model {model}")
     if model == "oxidant_demand" and ("demand_mg_per_L" in value) == ("demand_from" in value):
         problems.append("expected either demand_mg_per_L or demand_from")
-    if model in ("sequestrant", "oxidise") and not set(value) & {
-        item.name for item in kinds.NEED_MODELS[model]
-    }:
-        problems.append(
-            f"expected at least one of {', '.join(item.name for item in kinds.NEED_MODELS[model])}"
-        )
+    if model in ("sequestrant", "oxidise") and not set(value) & {item.name for item in kinds.NEED_MODELS[model]}:
+        problems.append(f"expected at least one of {', '.join(item.name for item in kinds.NEED_MODELS[model])}")
     if problems:
         raise BlockError([f"need: {problem}" for problem in problems])
     return clean

@@ -142,9 +142,7 @@ LIMIT_KINDS: dict[str, tuple[Key, ...]] = {
 }
 """Keys of each kind of limit. One left out takes the default of the rule that judges it."""
 
-OF_A_PARAMETER = frozenset(
-    {"bound", "held_below", "held_above", "share_of_month", "running_mean", "rate_of_change"}
-)
+OF_A_PARAMETER = frozenset({"bound", "held_below", "held_above", "share_of_month", "running_mean", "rate_of_change"})
 """Kinds of limit that mean nothing without a parameter."""
 
 LIMIT_SUBJECTS = ("sample_point", "dosing_point", "vessel", "contact_segment", "meter", "product")
@@ -226,9 +224,7 @@ ALL = (
             Key("product", "code", required=True, refers="product"),
             Key("role", "choice", choices=("bulk", "day", "drum", "cylinder", "silo")),
             Key("shape", "choice", required=True, choices=tuple(SHAPES)),
-            Key(
-                "level_sd_m", "number", above=0.0, high=5.0, help="standard uncertainty of one level reading"
-            ),
+            Key("level_sd_m", "number", above=0.0, high=5.0, help="standard uncertainty of one level reading"),
             _from_zero("heel_L", text="below the suction, not usable"),
             _from_zero("heel_kg"),
             Key("max_fill_pct", "number", above=0.0, high=100.0),

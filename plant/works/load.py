@@ -16,6 +16,7 @@ from decimal import Decimal
 from typing import Any
 from zoneinfo import ZoneInfo
 
+from django.contrib.auth import get_user_model
 from django.db import transaction
 
 from plant import clock
@@ -117,7 +118,23 @@ def load(
             received={"file": source, "text": data.decode("utf-8-sig")},
             reason=reason or (f"loaded from {source}" if source else "loaded from a works file"),
         )
+        if new:
+            _first_members(book, by, now)
         return Loaded(book, entry, len(rows), planned.unchanged, new)
+
+
+def _first_members(book: Book, by: Any, now: dt.datetime) -> None:
+    """A new works belongs to whoever opened it, or to the installation's first administrators."""
+    openers = [by] if by is not None else get_user_model().objects.filter(is_superuser=True).order_by("pk")
+    for person in openers:
+        actions.set_membership(
+            book=book,
+            username=person.get_username(),
+            role="administrator",
+            by=by,
+            now=now,
+            reason="opened the works",
+        )
 
 
 def whose(data: bytes) -> tuple[str, clock.Calendar]:
@@ -247,10 +264,7 @@ def _compare(
     try:
         changes = actions.checked(stated, changes)
     except actions.Refused as refused:
-        problems += [
-            f"{names[index]}: {message}" if index < len(names) else message
-            for index, message in refused.problems
-        ]
+        problems += [f"{names[index]}: {message}" if index < len(names) else message for index, message in refused.problems]
     if problems:
         raise FileRefused(problems)
     return Plan(code, book, changes, unchanged, names, before)
@@ -342,9 +356,7 @@ class _Places:
     """Walking order of round lines that don't state one: as they stand already, new ones behind the last."""
 
     def __init__(self, stated: Stated, now: dt.datetime) -> None:
-        self._known = {
-            subject: value.get("order", 0) for subject, value in stated.in_force("round_line", now)
-        }
+        self._known = {subject: value.get("order", 0) for subject, value in stated.in_force("round_line", now)}
         self._last = max(self._known.values(), default=0)
 
     def place(self, change: actions.Change) -> None:

@@ -52,9 +52,7 @@ def _references(stated: Stated, at: dt.datetime) -> Iterator[Misfit]:
                 yield from _missing(stated, at, "state", subject, named, named, code)
 
 
-def _missing(
-    stated: Stated, at: dt.datetime, kind: str, subject: str, key: str, refers: str, code: str
-) -> Iterator[Misfit]:
+def _missing(stated: Stated, at: dt.datetime, kind: str, subject: str, key: str, refers: str, code: str) -> Iterator[Misfit]:
     if refers == "site":
         if stated.site_kind(code, at) is None:
             words = "no sample point, meter, vessel or dosing point"
@@ -107,10 +105,7 @@ def _dosing_point(stated: Stated, at: dt.datetime, value: dict[str, Any], _subje
         yield f"meter: {value['meter']} counts {meter['unit']}, expected one of {expected}"
     feed = stated.value("meter", value.get("feed_meter", ""), at)
     if feed and feed["unit"] not in kinds.PRODUCT_UNITS:
-        yield (
-            f"feed_meter: {value['feed_meter']} counts {feed['unit']}, "
-            f"expected one of {', '.join(kinds.PRODUCT_UNITS)}"
-        )
+        yield (f"feed_meter: {value['feed_meter']} counts {feed['unit']}, expected one of {', '.join(kinds.PRODUCT_UNITS)}")
     need = value.get("need", {"model": "none"})
     if need["model"] == "curve" and need["parameter"] not in parameters.known(stated, at):
         yield f"need: no parameter {need['parameter']!r} is known"

@@ -104,62 +104,43 @@ class Stated:
         works = self.works(at)
         key = (works.timezone, works.operating_day_starts)
         if key not in self._calendar:
-            self._calendar[key] = clock.Calendar(
-                ZoneInfo(works.timezone), dt.time.fromisoformat(works.operating_day_starts)
-            )
+            self._calendar[key] = clock.Calendar(ZoneInfo(works.timezone), dt.time.fromisoformat(works.operating_day_starts))
         return self._calendar[key]
 
     def shifts(self, at: dt.datetime) -> tuple[clock.Shift, ...]:
         """The shift pattern, by starting time."""
-        found = [
-            clock.Shift(name, dt.time.fromisoformat(value["starts"]))
-            for name, value in self.in_force("shift", at)
-        ]
+        found = [clock.Shift(name, dt.time.fromisoformat(value["starts"])) for name, value in self.in_force("shift", at)]
         return tuple(sorted(found, key=lambda shift: shift.starts))
 
     def sample_points(self, at: dt.datetime) -> tuple[described.SamplePoint, ...]:
         """In the order of the water."""
         stages = ("raw", "process", "entry", "network")
-        found = [
-            described.build(described.SamplePoint, code, value)
-            for code, value in self.in_force("sample_point", at)
-        ]
+        found = [described.build(described.SamplePoint, code, value) for code, value in self.in_force("sample_point", at)]
         return tuple(sorted(found, key=lambda point: stages.index(point.stage)))
 
     def meters(self, at: dt.datetime) -> tuple[described.Meter, ...]:
-        return tuple(
-            described.build(described.Meter, code, value) for code, value in self.in_force("meter", at)
-        )
+        return tuple(described.build(described.Meter, code, value) for code, value in self.in_force("meter", at))
 
     def products(self, at: dt.datetime) -> tuple[described.Product, ...]:
-        return tuple(
-            described.build(described.Product, code, value) for code, value in self.in_force("product", at)
-        )
+        return tuple(described.build(described.Product, code, value) for code, value in self.in_force("product", at))
 
     def vessels(self, at: dt.datetime) -> tuple[described.Vessel, ...]:
         return tuple(described.vessel(code, value) for code, value in self.in_force("vessel", at))
 
     def dosing_points(self, at: dt.datetime) -> tuple[described.DosingPoint, ...]:
-        return tuple(
-            described.build(described.DosingPoint, code, value)
-            for code, value in self.in_force("dosing_point", at)
-        )
+        return tuple(described.build(described.DosingPoint, code, value) for code, value in self.in_force("dosing_point", at))
 
     def limits(self, at: dt.datetime) -> tuple[described.Limit, ...]:
         return tuple(described.limit(code, value) for code, value in self.in_force("limit", at))
 
     def round_lines(self, at: dt.datetime) -> tuple[described.RoundLine, ...]:
         """In walking order."""
-        found = [
-            described.build(described.RoundLine, code, value)
-            for code, value in self.in_force("round_line", at)
-        ]
+        found = [described.build(described.RoundLine, code, value) for code, value in self.in_force("round_line", at)]
         return tuple(sorted(found, key=lambda line: line.order))
 
     def contact_segments(self, at: dt.datetime) -> tuple[described.ContactSegment, ...]:
         return tuple(
-            described.build(described.ContactSegment, code, value)
-            for code, value in self.in_force("contact_segment", at)
+            described.build(described.ContactSegment, code, value) for code, value in self.in_force("contact_segment", at)
         )
 
     def meter(self, code: str, at: dt.datetime) -> described.Meter:

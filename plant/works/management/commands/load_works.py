@@ -14,9 +14,7 @@ class Command(BaseCommand):
 
     def add_arguments(self, parser: CommandParser) -> None:
         parser.add_argument("file", metavar="FILE.toml")
-        parser.add_argument(
-            "--effective-from", metavar="ISO", help="from when blocks without a date hold (default: now)"
-        )
+        parser.add_argument("--effective-from", metavar="ISO", help="from when blocks without a date hold (default: now)")
         parser.add_argument("--reason", default="", help="why, for blocks that don't say it")
         commands.add_now(parser)
 
