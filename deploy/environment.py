@@ -66,9 +66,7 @@ def check_room(folder: Path, needed_mb: int) -> None:
 
 def why_pip_failed(output: str) -> str:
     """The likely cause of a failed installation, in words, with pip's own last lines."""
-    cause = next(
-        (words for pattern, words in _CAUSES if re.search(pattern, output)), "The installation failed."
-    )
+    cause = next((words for pattern, words in _CAUSES if re.search(pattern, output)), "The installation failed.")
     tail = "\n".join(f"    {line}" for line in output.strip().splitlines()[-6:])
     return f"{cause}\n\npip said:\n{tail}"
 
@@ -88,9 +86,7 @@ def make(venv: Path, requirements: Path, *, needed_mb: int, also: tuple[Path, ..
         import ensurepip  # noqa: F401
         import venv as _venv  # noqa: F401
     except ImportError:
-        raise CannotMake(
-            "This Python has no venv module. On Debian and Ubuntu: apt install python3-venv"
-        ) from None
+        raise CannotMake("This Python has no venv module. On Debian and Ubuntu: apt install python3-venv") from None
     if python.exists() and stamp_file.exists() and stamp_file.read_text().split()[-1] == stamp.split()[-1]:
         _upgrade(python, requirements, stamp_file)
     else:
@@ -129,15 +125,11 @@ def _build(venv: Path, python: Path, requirements: Path) -> None:
 
 def _run_venv(venv: Path) -> None:
     say(f"Making {venv.name} …")
-    made = subprocess.run(
-        [sys.executable, "-m", "venv", str(venv)], check=False, capture_output=True, text=True
-    )
+    made = subprocess.run([sys.executable, "-m", "venv", str(venv)], check=False, capture_output=True, text=True)
     if made.returncode:
         output = made.stdout + made.stderr
         if "ensurepip" in output:
-            raise CannotMake(
-                "This Python can't make environments. On Debian and Ubuntu: apt install python3-venv"
-            )
+            raise CannotMake("This Python can't make environments. On Debian and Ubuntu: apt install python3-venv")
         raise CannotMake(why_pip_failed(output))
 
 

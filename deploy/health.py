@@ -32,3 +32,8 @@ def ready(request: HttpRequest) -> HttpResponse:
     if waiting:
         return HttpResponse(f"{len(waiting)} migrations to apply\n", status=503, content_type="text/plain")
     return HttpResponse("ready\n", content_type="text/plain")
+
+
+# Read by the walk over all addresses.
+alive.permission = "public"  # type: ignore[attr-defined]
+ready.permission = "public"  # type: ignore[attr-defined]

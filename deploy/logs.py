@@ -25,7 +25,6 @@ class JsonLine(logging.Formatter):
         if record.exc_info and record.exc_info[0]:
             line["error"] = record.exc_info[0].__name__
             line["where"] = [
-                f"{frame.filename}:{frame.lineno} {frame.name}"
-                for frame in traceback.extract_tb(record.exc_info[2])[-12:]
+                f"{frame.filename}:{frame.lineno} {frame.name}" for frame in traceback.extract_tb(record.exc_info[2])[-12:]
             ]
         return json.dumps(line, ensure_ascii=False)

@@ -241,12 +241,8 @@ def welcome(installation: Installation, port: int) -> str:
 def arguments(words: list[str]) -> argparse.Namespace:
     parser = argparse.ArgumentParser(prog="sh deploy/start.sh", description="Sets Weirbook up and serves it.")
     kind = parser.add_mutually_exclusive_group()
-    kind.add_argument(
-        "--own", action="store_true", help="a works of your own, empty at first, instead of the demo"
-    )
-    kind.add_argument(
-        "--once", action="store_true", help="issue the demo's last full month and print the PDF's path"
-    )
+    kind.add_argument("--own", action="store_true", help="a works of your own, empty at first, instead of the demo")
+    kind.add_argument("--once", action="store_true", help="issue the demo's last full month and print the PDF's path")
     parser.epilog = "Environment: PORT, WEIRBOOK_DATA, WEIRBOOK_ADMINISTRATOR, DATABASE_URL, REDIS_URL."
     return parser.parse_args(words)
 

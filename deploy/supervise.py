@@ -112,9 +112,7 @@ class Supervisor:
         if child.false_starts >= MOST_FALSE_STARTS:
             raise KeepsEnding(f"The {child.name} keeps ending. The end of {child.log}:\n{child.last_lines()}")
         wait_s = 2.0 ** (child.false_starts - 1)
-        self.told(
-            f"The {child.name} ended ({child.process.returncode}); starting it again in {wait_s:.0f} s."
-        )
+        self.told(f"The {child.name} ended ({child.process.returncode}); starting it again in {wait_s:.0f} s.")
         child.process, child.due_s = None, now_s + wait_s
 
     def _end_all(self) -> None:
