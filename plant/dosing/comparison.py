@@ -20,7 +20,12 @@ LONGEST_BLOCK = 62
 
 
 def comparison(
-    book: Book, first: dt.date, last: dt.date, *, known: int | None = None, stated: Stated | None = None,
+    book: Book,
+    first: dt.date,
+    last: dt.date,
+    *,
+    known: int | None = None,
+    stated: Stated | None = None,
 ) -> list[DayDose]:
     """One row per operating day and dosing point, days outer, first and last included.
 
@@ -42,7 +47,12 @@ def comparison(
 
 
 def reckon(
-    book: Book, stated: Stated, days: list[dt.date], *, known: int | None, start: tuple[dt.date, dict[str, Contents]] | None,
+    book: Book,
+    stated: Stated,
+    days: list[dt.date],
+    *,
+    known: int | None,
+    start: tuple[dt.date, dict[str, Contents]] | None,
 ) -> Reckoning:
     """A reckoning that reaches far enough back for what the days ask: seven days of demand, or the carried contents."""
     back = DEMAND_DAYS if _wants_demand(stated, days[-1]) else 0

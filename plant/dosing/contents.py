@@ -10,6 +10,7 @@ import datetime as dt
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 
+
 @dataclass(frozen=True)
 class Contents:
     """Strength and density of what is in the vessel at an instant.
@@ -43,7 +44,8 @@ class Contents:
             (own_kg * self.fraction + other_kg * other.fraction) / total,
             (own_kg * self.fresh_fraction + other_kg * other.fresh_fraction) / total,
             density,
-            tuple(dict.fromkeys((*(self.lots if own_kg > 0 else ()), *other.lots))))
+            tuple(dict.fromkeys((*(self.lots if own_kg > 0 else ()), *other.lots))),
+        )
 
 
 Decay = Callable[[Contents, dt.datetime], float]
@@ -67,7 +69,7 @@ class Pour:
 
 
 @dataclass(frozen=True)
-class Test:
+class StrengthTest:
     """A strength test: from here on the contents are what it found."""
 
     at: dt.datetime

@@ -48,15 +48,23 @@ def day_dose(out: Reckoning, point: DosingPoint, product: Product, day: dt.date,
     remarks = _remarks(volume, drawn, need, expected, design_changed)
     tag = f"{point.code}:{day.isoformat()}"
     return DayDose(
-        day=day, dosing_point=point.code, product=product.code, dose_basis=product.dose_basis,
+        day=day,
+        dosing_point=point.code,
+        product=product.code,
+        dose_basis=product.dose_basis,
         volume_ml=Figure(volume.amount, "ML", volume.sd if volume.amount is not None else None, f"volume:{tag}"),
         product_kg=Figure(drawn.product_kg, "kg", None, f"product:{tag}"),
         active_kg=Figure(drawn.active_kg, "kg", _active_sd(drawn, product), f"active:{tag}"),
         used_mg_l=Figure(used, "mg/L", sd, f"used:{tag}"),
         design_mg_l=Figure(design, "mg/L", None, f"design:{tag}"),
         need_mg_l=Figure(need.dose_mg_l, "mg/L", need.sd_mg_l, f"need:{tag}"),
-        expected=expected, weak=drawn.weak, interpolated=volume.interpolated or drawn.interpolated,
-        corrected=volume.corrected or drawn.corrected, strength_sd_pct=product.strength_sd_pct, remarks=remarks)
+        expected=expected,
+        weak=drawn.weak,
+        interpolated=volume.interpolated or drawn.interpolated,
+        corrected=volume.corrected or drawn.corrected,
+        strength_sd_pct=product.strength_sd_pct,
+        remarks=remarks,
+    )
 
 
 def dose_mg_l(volume: Used, drawn: Consumption, product: Product) -> tuple[float | None, float | None]:
@@ -81,7 +89,9 @@ def _active_sd(drawn: Consumption, product: Product) -> float | None:
 def design_for_day(out: Reckoning, point: DosingPoint, day: dt.date) -> tuple[float | None, bool]:
     """The design dose in force, weighted by elapsed time where it changes within the day."""
     start, end = out.bounds(day)
-    inside = [item.effective_from for item in out.stated.history("design_dose", point.code) if start < item.effective_from < end]
+    inside = [
+        item.effective_from for item in out.stated.history("design_dose", point.code) if start < item.effective_from < end
+    ]
     if not inside:
         return out.stated.design_dose_mg_l(point.code, start), False
     total = weight = 0.0

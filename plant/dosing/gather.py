@@ -9,7 +9,7 @@ from dataclasses import dataclass, field
 
 from chemistry import errors, units, vessels
 from plant.dosing import products
-from plant.dosing.contents import Contents, Pour, Test
+from plant.dosing.contents import Contents, Pour, StrengthTest
 from plant.dosing.spells import Mark, Movement
 from plant.ledger.models import Book
 from plant.readings import queries as readings
@@ -55,13 +55,26 @@ class Facts:
 
 
 def facts(
-    book: Book, stated: Stated, *, start: dt.datetime, end: dt.datetime, sites: set[str], known: int | None,
+    book: Book,
+    stated: Stated,
+    *,
+    start: dt.datetime,
+    end: dt.datetime,
+    sites: set[str],
+    known: int | None,
 ) -> Facts:
     """Reads the span [start, end) for the named sites: three queries (and one for settlements where there are doubts)."""
     found = readings.points(book, start=start, end=end, sites=sites, known=known)
     return Facts(
-        book, stated, start, end, known, readings.by_series(found),
-        stock.deliveries(book, start=start, end=end, known=known), stock.transfers(book, start=start, end=end, known=known))
+        book,
+        stated,
+        start,
+        end,
+        known,
+        readings.by_series(found),
+        stock.deliveries(book, start=start, end=end, known=known),
+        stock.transfers(book, start=start, end=end, known=known),
+    )
 
 
 def vessel_marks(found: Facts, code: str) -> list[Mark]:
@@ -89,8 +102,13 @@ def _vessel_mark(vessel: Vessel, point: Point) -> Mark | None:
             return None
         sd = float(form.get("weight_sd_kg") or 0.0)
         return Mark(
-            point.at, float(vessels.net_mass_kg(form, value)), sd, point.ref, point.corrected,
-            begins=point.parameter == "container_change")
+            point.at,
+            float(vessels.net_mass_kg(form, value)),
+            sd,
+            point.ref,
+            point.corrected,
+            begins=point.parameter == "container_change",
+        )
     if point.parameter == "level":
         level = float(vessels.level_from_pct(form, value)) if point.unit == "%" else value
         litres = float(vessels.volume_l(form, level))
@@ -181,12 +199,12 @@ def _density(density: float | None, vessel: Vessel) -> float:
     return density
 
 
-def strength_tests(found: Facts, vessel: Vessel, product: Product) -> list[Test]:
+def strength_tests(found: Facts, vessel: Vessel, product: Product) -> list[StrengthTest]:
     """Strength tests of a vessel's contents, on the product's own basis."""
     out = []
     for point in found.usable(vessel.code, "strength"):
         try:
-            out.append(Test(point.at, products.fraction(product, point.value), point.ref))
+            out.append(StrengthTest(point.at, products.fraction(product, point.value), point.ref))
         except errors.ChemistryError as problem:
             found.problem(vessel.code, f"strength test {point.typed} not used: {problem}")
     return out

@@ -17,8 +17,14 @@ from plant.works.described import DosingPoint, Product
 
 USUAL_MAX_AGE_HOURS = 36.0
 RESIDUAL_OF = {
-    "NaOCl": "free_chlorine", "Cl2": "free_chlorine", "Ca(OCl)2": "free_chlorine", "H2O2": "hydrogen_peroxide",
-    "ClO2": "chlorine_dioxide", "O3": "ozone", "KMnO4": "permanganate", "NaMnO4": "permanganate",
+    "NaOCl": "free_chlorine",
+    "Cl2": "free_chlorine",
+    "Ca(OCl)2": "free_chlorine",
+    "H2O2": "hydrogen_peroxide",
+    "ClO2": "chlorine_dioxide",
+    "O3": "ozone",
+    "KMnO4": "permanganate",
+    "NaMnO4": "permanganate",
 }
 """The residual that shows an oxidant's effect (the names are the record file's own)."""
 
@@ -89,7 +95,9 @@ def value_for_day(out: Reckoning, site: str, parameter: str, day: dt.date, max_a
     points = out.found.usable(site, parameter)
     today = [point for point in points if start <= point.at < end]
     if today:
-        return Taken(statistics.median(point.value or 0.0 for point in today), tuple(point.ref for point in today), 0.0, today[-1].at)
+        return Taken(
+            statistics.median(point.value or 0.0 for point in today), tuple(point.ref for point in today), 0.0, today[-1].at
+        )
     before: list[Point] = [point for point in points if point.at < start]
     if not before:
         return None

@@ -32,15 +32,21 @@ def _one(rows: list[DayDose]) -> PeriodDose:
     if any(row.corrected for row in rows):
         remarks.append("corrected")
     return PeriodDose(
-        dosing_point=first.dosing_point, product=last.product, dose_basis=last.dose_basis, first=first.day, last=last.day,
-        days_expected=len(expected), days_counted=len(known),
+        dosing_point=first.dosing_point,
+        product=last.product,
+        dose_basis=last.dose_basis,
+        first=first.day,
+        last=last.day,
+        days_expected=len(expected),
+        days_counted=len(known),
         volume_ml=Figure(volume if known else None, "ML", _meter(treated, volume), f"volume:{tag}"),
         product_kg=Figure(product if known else None, "kg", None, f"product:{tag}"),
         active_kg=Figure(active if known else None, "kg", None, f"active:{tag}"),
         used_mg_l=Figure(used, "mg/L", None if used is None else _sd(treated, used, volume), f"used:{tag}"),
         design_mg_l=Figure(_by_volume(treated, "design_mg_l"), "mg/L", None, f"design:{tag}"),
         need_mg_l=Figure(_by_volume(treated, "need_mg_l"), "mg/L", None, f"need:{tag}"),
-        remarks=tuple(remarks))
+        remarks=tuple(remarks),
+    )
 
 
 def _meter(rows: list[DayDose], volume: float) -> float:

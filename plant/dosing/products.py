@@ -18,7 +18,9 @@ class NoDensity(ValueError):
     """A volume of this product can't be turned into a mass: no density is stated."""
 
 
-def fraction(product: Product, strength: float | None = None, basis: str | None = None, density_kg_l: float | None = None) -> float:
+def fraction(
+    product: Product, strength: float | None = None, basis: str | None = None, density_kg_l: float | None = None
+) -> float:
     """kg of the chemical, as the product's stated strength counts it, per kg of product.
 
     ``strength`` and ``basis`` are a certificate's or a test's; without them the stated ones hold. Raises ChemistryError.
@@ -71,11 +73,13 @@ def decay_of(product: Product, temperature_c: Callable[[dt.datetime], float]) ->
             days = (to - contents.at).total_seconds() / 86400
             before = contents.fraction * per_litre
             after = chemistry_decay.hypochlorite_strength_after(
-                before, [temperature_c(contents.at)], [days], fresh_g_l=contents.fresh_fraction * per_litre, extrapolate=True)
+                before, [temperature_c(contents.at)], [days], fresh_g_l=contents.fresh_fraction * per_litre, extrapolate=True
+            )
             return float(after) / per_litre
 
         return _guarded(hypochlorite)
     if product.chemical == "H2O2":
+
         def peroxide(contents: Contents, to: dt.datetime) -> float:
             days = (to - contents.at).total_seconds() / 86400
             return float(chemistry_decay.peroxide_strength_after(contents.fraction, [temperature_c(contents.at)], [days]))

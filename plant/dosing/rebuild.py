@@ -20,7 +20,7 @@ def check(book: Book) -> Iterator[str]:
     head = states.refresh(book)
     days = list(DayState.objects.filter(book=book, subject="doses").order_by("day").values_list("day", flat=True))
     for first in range(0, len(days), comparison.LONGEST_BLOCK):
-        block = days[first:first + comparison.LONGEST_BLOCK]
+        block = days[first : first + comparison.LONGEST_BLOCK]
         kept = states.doses(book, block)
         anew = {(row.day, row.dosing_point): row for row in comparison.comparison(book, block[0], block[-1], known=head)}
         for day in block:

@@ -73,7 +73,12 @@ class Reckoning:
 
 
 def reckoning(
-    book: Book, stated: Stated, days: Sequence[dt.date], *, known: int | None, carried: dict[str, Contents] | None = None,
+    book: Book,
+    stated: Stated,
+    days: Sequence[dt.date],
+    *,
+    known: int | None,
+    carried: dict[str, Contents] | None = None,
 ) -> Reckoning:
     """Gathers and walks. ``carried`` gives each vessel's contents at the start of the first day, where they are known;
     without it the walk begins with the book."""
@@ -93,7 +98,9 @@ def reckoning(
     for meter in stated.meters(cuts[-1]):
         marks = gather.counter_marks(found, meter)
         out.counters[meter.code] = (
-            meter, counter_spells(marks, digits=meter.digits, most_per_hour=gather.most_per_hour(meter)))
+            meter,
+            counter_spells(marks, digits=meter.digits, most_per_hour=gather.most_per_hour(meter)),
+        )
     _walk_vessels(out, carried)
     return out
 
@@ -144,13 +151,24 @@ def _walk_one(out: Reckoning, vessel: Vessel, product: Product, carried: Content
     tests = [test for test in gather.strength_tests(found, vessel, product) if test.at >= first.at]
     spells = content_spells(marks, movements)
     walked = walk(
-        spells=spells, first=first, pours=sorted(pours, key=lambda pour: pour.at), tests=tests, decay=decay,
-        in_kg=vessel.on_scale, cuts=out.cuts)
+        spells=spells,
+        first=first,
+        pours=sorted(pours, key=lambda pour: pour.at),
+        tests=tests,
+        decay=decay,
+        in_kg=vessel.on_scale,
+        cuts=out.cuts,
+    )
     return VesselWalk(vessel, product, walked, decay, pours, movements, marks)
 
 
 def _transfer(
-    out: Reckoning, transfer: Transfer, vessel: Vessel, product: Product, pours: list[Pour], movements: list[Movement],
+    out: Reckoning,
+    transfer: Transfer,
+    vessel: Vessel,
+    product: Product,
+    pours: list[Pour],
+    movements: list[Movement],
 ) -> None:
     """A transfer as this vessel sees it: out of it, or into it at the strength of where it came from."""
     if vessel.code not in (transfer.from_vessel, transfer.to_vessel):
@@ -176,7 +194,11 @@ def _transfer(
 
 
 def _first_contents(
-    out: Reckoning, vessel: Vessel, product: Product, marks: list[Mark], movements: list[Movement],
+    out: Reckoning,
+    vessel: Vessel,
+    product: Product,
+    marks: list[Mark],
+    movements: list[Movement],
 ) -> Contents:
     """What the walk begins with: the opening stock stated, else the product's stated strength at the first thing known."""
     times = [mark.at for mark in marks] + [movement.at for movement in movements]

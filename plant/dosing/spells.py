@@ -8,6 +8,7 @@ clock's true hours, whatever the wall clock did.
 from __future__ import annotations
 
 import datetime as dt
+import itertools
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass, field
@@ -82,7 +83,7 @@ def content_spells(marks: Sequence[Mark], movements: Sequence[Movement] = ()) ->
     spells = []
     ordered = sorted(marks, key=lambda mark: (mark.at, mark.begins))
     waiting = sorted(movements, key=lambda movement: movement.at)
-    for index, (start, end) in enumerate(zip(ordered, ordered[1:], strict=False)):
+    for index, (start, end) in enumerate(itertools.pairwise(ordered)):
         if end.at <= start.at:
             continue
         inside = [movement for movement in waiting if _inside(movement, start, end)]
@@ -125,7 +126,10 @@ def _inside(movement: Movement, start: Mark, end: Mark) -> bool:
 
 
 def counter_spells(
-    marks: Sequence[Mark], *, digits: int | None, most_per_hour: float | None,
+    marks: Sequence[Mark],
+    *,
+    digits: int | None,
+    most_per_hour: float | None,
 ) -> list[Spell]:
     """Spells of a totaliser, in its own unit.
 
@@ -195,11 +199,14 @@ def used_between(spells: Sequence[Spell], start: dt.datetime, end: dt.datetime) 
             weights[id(movement)] = (share, movement.sd)
     sd = math.sqrt(sum((weight * each) ** 2 for weight, each in weights.values()))
     return Used(
-        amount, sd, interpolated,
+        amount,
+        sd,
+        interpolated,
         corrected=any(mark.corrected for spell, _ in pieces for mark in (spell.start, spell.end)),
         refs=tuple(dict.fromkeys(_refs(pieces))),
         remarks=tuple(dict.fromkeys(remark for spell, _ in pieces for remark in spell.remarks)),
-        pieces=pieces)
+        pieces=pieces,
+    )
 
 
 def _weigh(weights: dict[int, tuple[float, float]], mark: Mark, share: float) -> None:

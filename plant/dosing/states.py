@@ -32,15 +32,17 @@ MARKER = ("", dt.date(1900, 1, 1))
 def refresh(book: Book) -> int:
     """Drops the days that entries since the last look have touched. Returns the seq up to which what remains is true."""
     head = Book.objects.values_list("head_seq", flat=True).get(pk=book.pk)
-    current = DayState.objects.filter(
-        book=book, subject=MARKER[0], day=MARKER[1], through_seq=head, code_version=CODE_VERSION)
+    current = DayState.objects.filter(book=book, subject=MARKER[0], day=MARKER[1], through_seq=head, code_version=CODE_VERSION)
     if current.exists():
         return int(head)
     with transaction.atomic():
         head = Book.objects.select_for_update().values_list("head_seq", flat=True).get(pk=book.pk)
         marker, _ = DayState.objects.get_or_create(
-            book=book, subject=MARKER[0], day=MARKER[1],
-            defaults={"through_seq": head, "code_version": CODE_VERSION, "figures": {}})
+            book=book,
+            subject=MARKER[0],
+            day=MARKER[1],
+            defaults={"through_seq": head, "code_version": CODE_VERSION, "figures": {}},
+        )
         if marker.code_version != CODE_VERSION:
             DayState.objects.filter(book=book).exclude(pk=marker.pk).delete()
         elif marker.through_seq < head:
@@ -60,7 +62,9 @@ def _earliest_touched(book: Book, after: int) -> dt.datetime | None:
         found = rows.aggregate(own=Min("taken_at"), replaced=Min("supersedes__taken_at"))
         times += [value for value in found.values() if value is not None]
     settled = Settlement.objects.filter(book=book, seq__gt=after).aggregate(at=Min("reading__taken_at"))["at"]
-    stated = Statement.objects.filter(book=book, seq__gt=after).exclude(kind="membership").aggregate(at=Min("effective_from"))["at"]
+    stated = (
+        Statement.objects.filter(book=book, seq__gt=after).exclude(kind="membership").aggregate(at=Min("effective_from"))["at"]
+    )
     times += [value for value in (settled, stated) if value is not None]
     # A conflict, a shape or a product stated "from the beginning" reaches as far back as anything does.
     return max(min(times), clock.BEGINNING + REACH * 2) if times else None
@@ -68,8 +72,11 @@ def _earliest_touched(book: Book, after: int) -> dt.datetime | None:
 
 def doses(book: Book, days: list[dt.date]) -> dict[dt.date, list[DayDose]]:
     """The days that are kept."""
-    rows = DayState.objects.filter(book=book, subject="doses", day__in=days) if len(days) <= 400 else (
-        DayState.objects.filter(book=book, subject="doses", day__gte=days[0], day__lte=days[-1]))
+    rows = (
+        DayState.objects.filter(book=book, subject="doses", day__in=days)
+        if len(days) <= 400
+        else (DayState.objects.filter(book=book, subject="doses", day__gte=days[0], day__lte=days[-1]))
+    )
     return {row.day: [_dose_from(item) for item in row.figures["rows"]] for row in rows}
 
 
@@ -82,16 +89,32 @@ def carried(book: Book, day: dt.date) -> tuple[dt.date, dict[str, Contents]] | N
 
 
 def keep(
-    book: Book, *, through: int, doses: dict[dt.date, list[DayDose]], contents: dict[dt.date, dict[str, Contents]],
+    book: Book,
+    *,
+    through: int,
+    doses: dict[dt.date, list[DayDose]],
+    contents: dict[dt.date, dict[str, Contents]],
 ) -> None:
     """Keeps what was reckoned from the book as it stood at ``through``; if the book has moved on, keeps nothing."""
     rows = [
-        DayState(book=book, subject="doses", day=day, through_seq=through, code_version=CODE_VERSION,
-                 figures={"rows": [_plain(item) for item in found]})
+        DayState(
+            book=book,
+            subject="doses",
+            day=day,
+            through_seq=through,
+            code_version=CODE_VERSION,
+            figures={"rows": [_plain(item) for item in found]},
+        )
         for day, found in doses.items()
     ] + [
-        DayState(book=book, subject="contents", day=day, through_seq=through, code_version=CODE_VERSION,
-                 figures={code: _plain(item) for code, item in found.items()})
+        DayState(
+            book=book,
+            subject="contents",
+            day=day,
+            through_seq=through,
+            code_version=CODE_VERSION,
+            figures={code: _plain(item) for code, item in found.items()},
+        )
         for day, found in contents.items()
     ]
     with transaction.atomic():

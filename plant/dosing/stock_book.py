@@ -122,8 +122,21 @@ def _vessel(out: Reckoning, walked: VesselWalk, at: dt.datetime, supply: dict[st
     code, product = walked.vessel.code, walked.product
     if held is None:
         return VesselStock(
-            code, product.code, at, None, None, None, None, None, None, None, None, product.strength_basis, None,
-            remarks=("no level or weight on record yet",))
+            code,
+            product.code,
+            at,
+            None,
+            None,
+            None,
+            None,
+            None,
+            None,
+            None,
+            None,
+            product.strength_basis,
+            None,
+            remarks=("no level or weight on record yet",),
+        )
     remarks: list[str] = []
     booked = _book(out, walked, held.mark, remarks)
     contents = walked.walk.contents_at(at, walked.decay)
@@ -138,12 +151,24 @@ def _vessel(out: Reckoning, walked: VesselWalk, at: dt.datetime, supply: dict[st
     remarks += out.found.problems.get(code, [])
     difference = None if booked is None else held.kg - booked[0]
     return VesselStock(
-        vessel=code, product=product.code, at=at, book_kg=None if booked is None else booked[0], dip_kg=held.kg,
-        dip_at=held.mark.at, difference_kg=difference,
-        difference_sd_kg=None if booked is None else math.hypot(booked[1], held.sd_kg), active_kg=active,
-        usable_active_kg=usable, strength=products.strength(product, contents), strength_basis=product.strength_basis,
-        days_of_supply=total.days, level_fraction=None if not size else held.mark.amount / size,
-        order_from=earliest, order_by=latest, remarks=tuple(dict.fromkeys(remarks)))
+        vessel=code,
+        product=product.code,
+        at=at,
+        book_kg=None if booked is None else booked[0],
+        dip_kg=held.kg,
+        dip_at=held.mark.at,
+        difference_kg=difference,
+        difference_sd_kg=None if booked is None else math.hypot(booked[1], held.sd_kg),
+        active_kg=active,
+        usable_active_kg=usable,
+        strength=products.strength(product, contents),
+        strength_basis=product.strength_basis,
+        days_of_supply=total.days,
+        level_fraction=None if not size else held.mark.amount / size,
+        order_from=earliest,
+        order_by=latest,
+        remarks=tuple(dict.fromkeys(remarks)),
+    )
 
 
 def _book(out: Reckoning, walked: VesselWalk, dip: Mark, remarks: list[str]) -> tuple[float, float] | None:
@@ -170,7 +195,12 @@ def _book(out: Reckoning, walked: VesselWalk, dip: Mark, remarks: list[str]) -> 
 
 
 def _used_by_witness(
-    out: Reckoning, walked: VesselWalk, point: DosingPoint, start: dt.datetime, end: dt.datetime, remarks: list[str],
+    out: Reckoning,
+    walked: VesselWalk,
+    point: DosingPoint,
+    start: dt.datetime,
+    end: dt.datetime,
+    remarks: list[str],
 ) -> tuple[float, float] | None:
     density = None if walked.walk.in_kg else _kg_per_unit(walked, end)
     share = 1 / len(point.vessels)
@@ -203,7 +233,11 @@ def _used_by_witness(
 
 
 def _order_window(
-    out: Reckoning, walked: VesselWalk, supply: Supply, held: Held, at: dt.datetime,
+    out: Reckoning,
+    walked: VesselWalk,
+    supply: Supply,
+    held: Held,
+    at: dt.datetime,
 ) -> tuple[dt.date | None, dt.date | None]:
     """From the first day on which a whole load, ordered then, fits at its arrival, to the last on which the reserve still holds."""
     product, vessel = walked.product, walked.vessel
@@ -222,7 +256,12 @@ def _order_window(
 
 
 def reconciliation(
-    book: Book, first: dt.date, last: dt.date, *, known: int | None = None, stated: Stated | None = None,
+    book: Book,
+    first: dt.date,
+    last: dt.date,
+    *,
+    known: int | None = None,
+    stated: Stated | None = None,
 ) -> list[ProductReconciliation]:
     """Each product over operating days: opening + received - witnessed use - closing = unexplained, kg of product."""
     stated = stated or works.stated(book, known=known)
@@ -237,7 +276,11 @@ def reconciliation(
 
 
 def _reconcile(
-    out: Reckoning, product: Product, begin: dt.datetime, end: dt.datetime, days: list[dt.date],
+    out: Reckoning,
+    product: Product,
+    begin: dt.datetime,
+    end: dt.datetime,
+    days: list[dt.date],
 ) -> ProductReconciliation:
     remarks: list[str] = []
     opening, closing = 0.0, 0.0
@@ -271,14 +314,26 @@ def _reconcile(
     if known_opening and known_closing and vessels and said is not None:
         unexplained = opening + received - said - closing
     return ProductReconciliation(
-        product=product.code, opening_kg=opening if known_opening and vessels else None, received_kg=received,
-        closing_kg=closing if known_closing and vessels else None, used_by_dips_kg=used, witnessed_kg=said,
-        unexplained_kg=unexplained, unexplained_sd_kg=None if unexplained is None else math.sqrt(variance + said_variance),
-        deliveries=count, remarks=tuple(dict.fromkeys(remarks)))
+        product=product.code,
+        opening_kg=opening if known_opening and vessels else None,
+        received_kg=received,
+        closing_kg=closing if known_closing and vessels else None,
+        used_by_dips_kg=used,
+        witnessed_kg=said,
+        unexplained_kg=unexplained,
+        unexplained_sd_kg=None if unexplained is None else math.sqrt(variance + said_variance),
+        deliveries=count,
+        remarks=tuple(dict.fromkeys(remarks)),
+    )
 
 
 def _used_and_witnessed(
-    out: Reckoning, product: Product, begin: dt.datetime, end: dt.datetime, days: list[dt.date], vessels: list[VesselWalk],
+    out: Reckoning,
+    product: Product,
+    begin: dt.datetime,
+    end: dt.datetime,
+    days: list[dt.date],
+    vessels: list[VesselWalk],
 ) -> tuple[float | None, float | None, float]:
     used: float | None = 0.0
     said: float | None = 0.0

@@ -21,11 +21,19 @@ from plant.works.described import DosingPoint, Product
 from plant.works.stated import Stated
 
 FIELDS = {
-    "used": "used_mg_l", "volume": "volume_ml", "product": "product_kg", "active": "active_kg", "design": "design_mg_l",
+    "used": "used_mg_l",
+    "volume": "volume_ml",
+    "product": "product_kg",
+    "active": "active_kg",
+    "design": "design_mg_l",
     "need": "need_mg_l",
 }
 TITLES = {
-    "used": "Dose used", "volume": "Water treated", "product": "Product used", "active": "Active used", "design": "Design dose",
+    "used": "Dose used",
+    "volume": "Water treated",
+    "product": "Product used",
+    "active": "Active used",
+    "design": "Design dose",
     "need": "Dose needed",
 }
 
@@ -61,13 +69,26 @@ def _of_period(book: Book, stated: Stated, what: str, subject: str, days: tuple[
     counted = [row for row in rows if row.active_kg.value is not None and row.volume_ml.value is not None]
     steps = [
         Step("Days on which mass and volume are both known", f"{total.days_counted} of {total.days_expected} expected"),
-        Step("Active mass added up", " + ".join(f"{row.active_kg.value:.3f}" for row in counted) + f" = {total.active_kg.value or 0:.3f} kg"),
-        Step("Water added up", " + ".join(f"{row.volume_ml.value:.4f}" for row in counted) + f" = {total.volume_ml.value or 0:.4f} ML"),
-        Step("Dose is mass over volume, not a mean of daily doses", _over(total.active_kg, total.volume_ml, total.used_mg_l),
-             "definition: 1 mg/L = 1 kg/ML"),
+        Step(
+            "Active mass added up",
+            " + ".join(f"{row.active_kg.value:.3f}" for row in counted) + f" = {total.active_kg.value or 0:.3f} kg",
+        ),
+        Step(
+            "Water added up",
+            " + ".join(f"{row.volume_ml.value:.4f}" for row in counted) + f" = {total.volume_ml.value or 0:.4f} ML",
+        ),
+        Step(
+            "Dose is mass over volume, not a mean of daily doses",
+            _over(total.active_kg, total.volume_ml, total.used_mg_l),
+            "definition: 1 mg/L = 1 kg/ML",
+        ),
     ]
     wanted = [1] if what in ("active", "product") else [2] if what == "volume" else [0, 1, 2, 3]
-    return Trail(getattr(total, FIELDS[what]), f"{TITLES[what]}, {subject}, {days[0]} to {days[1]}", tuple(steps[index] for index in wanted))
+    return Trail(
+        getattr(total, FIELDS[what]),
+        f"{TITLES[what]}, {subject}, {days[0]} to {days[1]}",
+        tuple(steps[index] for index in wanted),
+    )
 
 
 def _over(mass: Figure, volume: Figure, dose: Figure) -> str:
@@ -107,8 +128,11 @@ def _volume_step(out: Reckoning, point: DosingPoint, volume: Used, day: dt.date)
     parts = [f"{spell.used:,.6g} × {share:.4g}" if share < 1 else f"{spell.used:,.6g}" for spell, share in volume.pieces]
     return Step(
         words + (" (boundary interpolated by elapsed hours)" if volume.interpolated else ""),
-        f"{' + '.join(parts)} {meter.unit} = {volume.amount:.4f} ML", f"meter accuracy {meter.accuracy_pct:g} % as stated",
-        volume.refs, _statement(out, "meter", point.meter, end))
+        f"{' + '.join(parts)} {meter.unit} = {volume.amount:.4f} ML",
+        f"meter accuracy {meter.accuracy_pct:g} % as stated",
+        volume.refs,
+        _statement(out, "meter", point.meter, end),
+    )
 
 
 def _mass_steps(out: Reckoning, product: Product, drawn: Consumption, day: dt.date) -> list[Step]:
@@ -121,21 +145,30 @@ def _mass_steps(out: Reckoning, product: Product, drawn: Consumption, day: dt.da
             continue
         unit = "kg" if walked.walk.in_kg else "L"
         parts = [f"{spell.used:.5g} × {share:.4g}" if share < 1 else f"{spell.used:.5g}" for spell, share in used.pieces]
-        steps.append(Step(
-            f"Out of {walked.vessel.name}: start + in − out − end between its readings",
-            f"{' + '.join(parts)} = {used.amount:.5g} {unit}", "mass balance of the vessel", used.refs,
-            _statement(out, "vessel", walked.vessel.code, end)))
+        steps.append(
+            Step(
+                f"Out of {walked.vessel.name}: start + in − out − end between its readings",
+                f"{' + '.join(parts)} = {used.amount:.5g} {unit}",
+                "mass balance of the vessel",
+                used.refs,
+                _statement(out, "vessel", walked.vessel.code, end),
+            )
+        )
         contents = walked.walk.contents_at(start + (end - start) / 2, walked.decay)
         if contents is None:
             continue
         density = "" if walked.walk.in_kg else f" × {contents.density_kg_l or 0:.4g} kg/L"
         share = active / kg if kg else 0.0
         lots = f" (lots {', '.join(contents.lots)})" if contents.lots else ""
-        steps.append(Step(
-            f"As product and as {product.dose_basis}, at the strength of the contents at the middle of the day{lots}",
-            f"{used.amount:.5g} {unit}{density} = {kg:.4f} kg; × {share:.5g} = {active:.4f} kg",
-            "strength: certificates, tests and loss in store (chemistry.products, chemistry.decay)", (),
-            _statement(out, "product", product.code, end)))
+        steps.append(
+            Step(
+                f"As product and as {product.dose_basis}, at the strength of the contents at the middle of the day{lots}",
+                f"{used.amount:.5g} {unit}{density} = {kg:.4f} kg; × {share:.5g} = {active:.4f} kg",
+                "strength: certificates, tests and loss in store (chemistry.products, chemistry.decay)",
+                (),
+                _statement(out, "product", product.code, end),
+            )
+        )
     return steps
 
 
@@ -146,11 +179,16 @@ def _dose_steps(row: DayDose, volume: Used, drawn: Consumption, product: Product
     gauge = drawn.sd_active_kg / drawn.active_kg if drawn.active_kg else 0.0
     strength = 0.0 if product.dose_basis == "product" else product.strength_sd_pct
     return [
-        Step("Dose is mass over volume", f"{drawn.active_kg:.4f} kg ÷ {volume.amount:.4f} ML = {dose:.4f} mg/L",
-             "definition: 1 mg/L = 1 kg/ML"),
-        Step("Standard uncertainty: gauges, strength and meter, independent",
-             f"√(({gauge:.2%})² + ({strength:.2f} %)² + ({volume.sd / volume.amount:.2%})²) × {dose:.4f} = {sd or 0:.4f} mg/L",
-             "JCGM 100:2008, eq. 10"),
+        Step(
+            "Dose is mass over volume",
+            f"{drawn.active_kg:.4f} kg ÷ {volume.amount:.4f} ML = {dose:.4f} mg/L",
+            "definition: 1 mg/L = 1 kg/ML",
+        ),
+        Step(
+            "Standard uncertainty: gauges, strength and meter, independent",
+            f"√(({gauge:.2%})² + ({strength:.2f} %)² + ({volume.sd / volume.amount:.2%})²) × {dose:.4f} = {sd or 0:.4f} mg/L",
+            "JCGM 100:2008, eq. 10",
+        ),
     ]
 
 
@@ -158,7 +196,9 @@ def _design_step(out: Reckoning, point: DosingPoint, day: dt.date) -> Step:
     start, end = out.bounds(day)
     dose, changed = design_for_day(out, point, day)
     sayings = [item for item in out.stated.history("design_dose", point.code) if item.effective_from < end]
-    recent = [item for item in sayings if item.effective_from > start] + [item for item in sayings if item.effective_from <= start][-1:]
+    recent = [item for item in sayings if item.effective_from > start] + [
+        item for item in sayings if item.effective_from <= start
+    ][-1:]
     words = "Design dose in force" + (", weighted by time over the change" if changed else "")
     reasons = "; ".join(f"{out.calendar.local(item.effective_from):%Y-%m-%d %H:%M}: {item.reason}" for item in recent)
     shown = "none stated" if dose is None else f"{dose:.4g} mg/L"

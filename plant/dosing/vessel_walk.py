@@ -8,10 +8,11 @@ from __future__ import annotations
 
 import bisect
 import datetime as dt
+import itertools
 from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 
-from plant.dosing.contents import Contents, Decay, Drawn, Pour, Test
+from plant.dosing.contents import Contents, Decay, Drawn, Pour, StrengthTest
 from plant.dosing.spells import Spell, Used, used_between
 
 
@@ -44,14 +45,20 @@ class Walk:
 
 
 def walk(
-    *, spells: list[Spell], first: Contents, pours: Sequence[Pour], tests: Sequence[Test], decay: Decay, in_kg: bool,
+    *,
+    spells: list[Spell],
+    first: Contents,
+    pours: Sequence[Pour],
+    tests: Sequence[StrengthTest],
+    decay: Decay,
+    in_kg: bool,
     cuts: Sequence[dt.datetime],
 ) -> Walk:
     """The walk. ``cuts`` are the boundaries of the days asked for, in order; ``first`` holds from its own time on."""
     out = Walk(in_kg, spells, [first])
     events = sorted({*cuts, *(pour.at for pour in pours), *(test.at for test in tests)})
     now = first
-    sums = {span: [0.0, 0.0, 0.0] for span in zip(cuts, cuts[1:], strict=False)}
+    sums = {span: [0.0, 0.0, 0.0] for span in itertools.pairwise(cuts)}
     marks = sorted({mark.at for spell in spells for mark in (spell.start, spell.end)})
     times = [at for at in sorted({*events, *marks}) if at >= first.at]
     position = _Position(spells)

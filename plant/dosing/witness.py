@@ -7,6 +7,7 @@ service feeds nothing. Settings in % say nothing without a calibration and are n
 from __future__ import annotations
 
 import datetime as dt
+import itertools
 from dataclasses import dataclass
 
 from plant.dosing.reckoning import Reckoning
@@ -28,7 +29,9 @@ class Witnessed:
     words: str
 
 
-def witnessed(out: Reckoning, point: DosingPoint, start: dt.datetime, end: dt.datetime, density_kg_l: float | None) -> Witnessed | None:
+def witnessed(
+    out: Reckoning, point: DosingPoint, start: dt.datetime, end: dt.datetime, density_kg_l: float | None
+) -> Witnessed | None:
     """What the feeder says was used in [start, end); None where it says nothing, or not for the whole time."""
     for parameter, words in (("drawdown", "draw-down checks"), ("feeder_setting", "feeder settings")):
         rates = [(item.at, _kg_h(item, density_kg_l)) for item in out.found.usable(point.code, parameter)]
@@ -52,12 +55,17 @@ def _kg_h(point: Point, density_kg_l: float | None) -> float | None:
 
 
 def _held(
-    out: Reckoning, point: DosingPoint, rates: list[tuple[dt.datetime, float]], start: dt.datetime, end: dt.datetime, words: str,
+    out: Reckoning,
+    point: DosingPoint,
+    rates: list[tuple[dt.datetime, float]],
+    start: dt.datetime,
+    end: dt.datetime,
+    words: str,
 ) -> Witnessed | None:
     changes = [item.effective_from for item in out.stated.history("state", f"dosing_point:{point.code}")]
     cuts = sorted({start, end, *[at for at, _ in rates if start < at < end], *[at for at in changes if start < at < end]})
     kg = 0.0
-    for since, until in zip(cuts, cuts[1:], strict=False):
+    for since, until in itertools.pairwise(cuts):
         if out.stated.state("dosing_point", point.code, since) != "in_service":
             continue
         held = [(at, rate) for at, rate in rates if at <= since]

@@ -19,13 +19,19 @@ MOST_ATTEMPTS = 5
 
 
 def enqueue(
-    *, kind: str, key: str, now: dt.datetime, book: Book | None = None, arguments: dict[str, Any] | None = None,
+    *,
+    kind: str,
+    key: str,
+    now: dt.datetime,
+    book: Book | None = None,
+    arguments: dict[str, Any] | None = None,
     run_after: dt.datetime | None = None,
 ) -> None:
     """Notes that a piece of work is to be done. The same kind and key waiting already is enough."""
     models.Job.objects.bulk_create(
         [models.Job(kind=kind, key=key, book=book, arguments=arguments or {}, run_after=run_after or now, created_at=now)],
-        ignore_conflicts=True)
+        ignore_conflicts=True,
+    )
 
 
 def claim(*, owner: str, now: dt.datetime) -> models.Job | None:
@@ -33,7 +39,8 @@ def claim(*, owner: str, now: dt.datetime) -> models.Job | None:
     due = Q(state=models.Job.State.QUEUED, run_after__lte=now) | Q(state=models.Job.State.RUNNING, lease_until__lt=now)
     for pk in models.Job.objects.filter(due).order_by("run_after", "pk").values_list("pk", flat=True)[:20]:
         taken = models.Job.objects.filter(due, pk=pk).update(
-            state=models.Job.State.RUNNING, owner=owner, lease_until=now + LEASE, attempts=F("attempts") + 1)
+            state=models.Job.State.RUNNING, owner=owner, lease_until=now + LEASE, attempts=F("attempts") + 1
+        )
         if taken:
             return models.Job.objects.get(pk=pk)
     return None
@@ -48,7 +55,8 @@ def run(*, job: models.Job, now: dt.datetime) -> bool:
         _put_back(job, now, f"{type(problem).__name__}: {problem}")
         return False
     models.Job.objects.filter(pk=job.pk, owner=job.owner, state=models.Job.State.RUNNING).update(
-        state=models.Job.State.DONE, finished_at=now, lease_until=None, error="")
+        state=models.Job.State.DONE, finished_at=now, lease_until=None, error=""
+    )
     return True
 
 
@@ -73,3 +81,10 @@ def run_due(*, owner: str, now: dt.datetime, most: int = 100) -> int:
         run(job=job, now=now)
         taken += 1
     return taken
+
+
+def settle(*, kind: str, key: str, now: dt.datetime) -> None:
+    """Somebody has done a waiting piece of work already: its row is done, so that no worker does it again."""
+    models.Job.objects.filter(kind=kind, key=key, state=models.Job.State.QUEUED).update(
+        state=models.Job.State.DONE, finished_at=now, error=""
+    )

@@ -30,8 +30,7 @@ class Job(models.Model):
 
     class Meta:
         constraints = [
-            models.UniqueConstraint(
-                fields=["kind", "key"], condition=models.Q(state="queued"), name="job_waits_once"),
+            models.UniqueConstraint(fields=["kind", "key"], condition=models.Q(state="queued"), name="job_waits_once"),
         ]
         indexes = [models.Index(fields=["state", "run_after"], name="job_due")]
 

@@ -69,8 +69,17 @@ def append(
         seq = head.head_seq + 1
         at = now if head.head_at is None else max(now, head.head_at)
         entry = models.Entry(
-            book=head, seq=seq, client_id=client_id, recorded_at=at, recorded_by=by, device=device, attested=attested,
-            kind=kind, content_hash=content_hash, previous_hash=head.head_hash)
+            book=head,
+            seq=seq,
+            client_id=client_id,
+            recorded_at=at,
+            recorded_by=by,
+            device=device,
+            attested=attested,
+            kind=kind,
+            content_hash=content_hash,
+            previous_hash=head.head_hash,
+        )
         for line, row in enumerate(rows, start=1):
             row.book, row.seq, row.line = head, seq, line
         for row in rows:

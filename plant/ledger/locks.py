@@ -18,9 +18,7 @@ from plant.ledger import models
 def tables() -> list[str]:
     """All append-only tables, from the models themselves."""
     return sorted(
-        model._meta.db_table
-        for model in apps.get_models()
-        if issubclass(model, models.AppendOnly) and not model._meta.abstract
+        model._meta.db_table for model in apps.get_models() if issubclass(model, models.AppendOnly) and not model._meta.abstract
     )
 
 

@@ -91,10 +91,22 @@ class Entry(AppendOnly):
 
     def chained(self) -> str:
         """The hash that binds this entry to all before it."""
-        return canonical.digest([
-            self.book_id, self.seq, self.client_id, self.recorded_at, self.recorded_by_id, self.device, self.attested,
-            self.kind, self.payload_version, self.payload, self.content_hash, self.previous_hash,
-        ])
+        return canonical.digest(
+            [
+                self.book_id,
+                self.seq,
+                self.client_id,
+                self.recorded_at,
+                self.recorded_by_id,
+                self.device,
+                self.attested,
+                self.kind,
+                self.payload_version,
+                self.payload,
+                self.content_hash,
+                self.previous_hash,
+            ]
+        )
 
 
 class Row(AppendOnly):
@@ -157,9 +169,11 @@ class Record(Row):
         constraints = [
             models.UniqueConstraint(fields=["entry", "line"], name="%(class)s_line_once"),
             models.CheckConstraint(
-                condition=models.Q(supersedes__isnull=True) | ~models.Q(reason=""), name="%(class)s_correction_has_reason"),
+                condition=models.Q(supersedes__isnull=True) | ~models.Q(reason=""), name="%(class)s_correction_has_reason"
+            ),
             models.CheckConstraint(
-                condition=models.Q(voided=False) | models.Q(supersedes__isnull=False), name="%(class)s_void_of_something"),
+                condition=models.Q(voided=False) | models.Q(supersedes__isnull=False), name="%(class)s_void_of_something"
+            ),
         ]
 
 

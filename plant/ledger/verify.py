@@ -60,7 +60,9 @@ class _RowsInOrder:
 
     def __init__(self, book: models.Book) -> None:
         streams = [
-            model._base_manager.filter(book=book).select_related(*_references(model)).order_by("seq", "line")
+            model._base_manager.filter(book=book)
+            .select_related(*_references(model))
+            .order_by("seq", "line")
             .iterator(chunk_size=500)
             for model in _row_models()
         ]

@@ -5,27 +5,26 @@ from django.db import migrations, models
 
 
 class Migration(migrations.Migration):
-
     initial = True
 
     dependencies = [
-        ('ledger', '0001_initial'),
+        ("ledger", "0001_initial"),
     ]
 
     operations = [
         migrations.CreateModel(
-            name='DayState',
+            name="DayState",
             fields=[
-                ('id', models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name='ID')),
-                ('subject', models.CharField(max_length=80)),
-                ('day', models.DateField()),
-                ('through_seq', models.PositiveBigIntegerField()),
-                ('code_version', models.PositiveIntegerField()),
-                ('figures', models.JSONField()),
-                ('book', models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name='+', to='ledger.book')),
+                ("id", models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name="ID")),
+                ("subject", models.CharField(max_length=80)),
+                ("day", models.DateField()),
+                ("through_seq", models.PositiveBigIntegerField()),
+                ("code_version", models.PositiveIntegerField()),
+                ("figures", models.JSONField()),
+                ("book", models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name="+", to="ledger.book")),
             ],
             options={
-                'constraints': [models.UniqueConstraint(fields=('book', 'subject', 'day'), name='day_state_once')],
+                "constraints": [models.UniqueConstraint(fields=("book", "subject", "day"), name="day_state_once")],
             },
         ),
     ]

@@ -5,35 +5,50 @@ from django.db import migrations, models
 
 
 class Migration(migrations.Migration):
-
     initial = True
 
     dependencies = [
-        ('ledger', '0001_initial'),
+        ("ledger", "0001_initial"),
     ]
 
     operations = [
         migrations.CreateModel(
-            name='Job',
+            name="Job",
             fields=[
-                ('id', models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name='ID')),
-                ('kind', models.CharField(max_length=32)),
-                ('key', models.CharField(max_length=120)),
-                ('arguments', models.JSONField(default=dict)),
-                ('state', models.CharField(choices=[('queued', 'Queued'), ('running', 'Running'), ('done', 'Done'), ('failed', 'Failed')], default='queued', max_length=8)),
-                ('run_after', models.DateTimeField()),
-                ('created_at', models.DateTimeField()),
-                ('finished_at', models.DateTimeField(null=True)),
-                ('attempts', models.PositiveSmallIntegerField(default=0)),
-                ('owner', models.CharField(blank=True, max_length=64)),
-                ('lease_until', models.DateTimeField(null=True)),
-                ('progress', models.CharField(blank=True, max_length=120)),
-                ('error', models.TextField(blank=True)),
-                ('book', models.ForeignKey(null=True, on_delete=django.db.models.deletion.PROTECT, related_name='+', to='ledger.book')),
+                ("id", models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name="ID")),
+                ("kind", models.CharField(max_length=32)),
+                ("key", models.CharField(max_length=120)),
+                ("arguments", models.JSONField(default=dict)),
+                (
+                    "state",
+                    models.CharField(
+                        choices=[("queued", "Queued"), ("running", "Running"), ("done", "Done"), ("failed", "Failed")],
+                        default="queued",
+                        max_length=8,
+                    ),
+                ),
+                ("run_after", models.DateTimeField()),
+                ("created_at", models.DateTimeField()),
+                ("finished_at", models.DateTimeField(null=True)),
+                ("attempts", models.PositiveSmallIntegerField(default=0)),
+                ("owner", models.CharField(blank=True, max_length=64)),
+                ("lease_until", models.DateTimeField(null=True)),
+                ("progress", models.CharField(blank=True, max_length=120)),
+                ("error", models.TextField(blank=True)),
+                (
+                    "book",
+                    models.ForeignKey(
+                        null=True, on_delete=django.db.models.deletion.PROTECT, related_name="+", to="ledger.book"
+                    ),
+                ),
             ],
             options={
-                'indexes': [models.Index(fields=['state', 'run_after'], name='job_due')],
-                'constraints': [models.UniqueConstraint(condition=models.Q(('state', 'queued')), fields=('kind', 'key'), name='job_waits_once')],
+                "indexes": [models.Index(fields=["state", "run_after"], name="job_due")],
+                "constraints": [
+                    models.UniqueConstraint(
+                        condition=models.Q(("state", "queued")), fields=("kind", "key"), name="job_waits_once"
+                    )
+                ],
             },
         ),
     ]

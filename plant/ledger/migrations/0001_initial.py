@@ -6,7 +6,6 @@ from django.db import migrations, models
 
 
 class Migration(migrations.Migration):
-
     initial = True
 
     dependencies = [
@@ -15,37 +14,48 @@ class Migration(migrations.Migration):
 
     operations = [
         migrations.CreateModel(
-            name='Book',
+            name="Book",
             fields=[
-                ('id', models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name='ID')),
-                ('code', models.SlugField(max_length=24, unique=True)),
-                ('opened_at', models.DateTimeField()),
-                ('head_seq', models.PositiveBigIntegerField(default=0)),
-                ('head_hash', models.CharField(default='', max_length=64)),
-                ('head_at', models.DateTimeField(null=True)),
+                ("id", models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name="ID")),
+                ("code", models.SlugField(max_length=24, unique=True)),
+                ("opened_at", models.DateTimeField()),
+                ("head_seq", models.PositiveBigIntegerField(default=0)),
+                ("head_hash", models.CharField(default="", max_length=64)),
+                ("head_at", models.DateTimeField(null=True)),
             ],
         ),
         migrations.CreateModel(
-            name='Entry',
+            name="Entry",
             fields=[
-                ('id', models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name='ID')),
-                ('seq', models.PositiveBigIntegerField()),
-                ('client_id', models.CharField(max_length=64)),
-                ('recorded_at', models.DateTimeField()),
-                ('device', models.CharField(blank=True, max_length=64)),
-                ('attested', models.CharField(default='session', max_length=16)),
-                ('kind', models.CharField(max_length=32)),
-                ('payload_version', models.PositiveSmallIntegerField(default=1)),
-                ('payload', models.TextField()),
-                ('content_hash', models.CharField(max_length=64)),
-                ('previous_hash', models.CharField(blank=True, max_length=64)),
-                ('hash', models.CharField(max_length=64)),
-                ('book', models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name='entries', to='ledger.book')),
-                ('recorded_by', models.ForeignKey(null=True, on_delete=django.db.models.deletion.PROTECT, related_name='+', to=settings.AUTH_USER_MODEL)),
+                ("id", models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name="ID")),
+                ("seq", models.PositiveBigIntegerField()),
+                ("client_id", models.CharField(max_length=64)),
+                ("recorded_at", models.DateTimeField()),
+                ("device", models.CharField(blank=True, max_length=64)),
+                ("attested", models.CharField(default="session", max_length=16)),
+                ("kind", models.CharField(max_length=32)),
+                ("payload_version", models.PositiveSmallIntegerField(default=1)),
+                ("payload", models.TextField()),
+                ("content_hash", models.CharField(max_length=64)),
+                ("previous_hash", models.CharField(blank=True, max_length=64)),
+                ("hash", models.CharField(max_length=64)),
+                (
+                    "book",
+                    models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name="entries", to="ledger.book"),
+                ),
+                (
+                    "recorded_by",
+                    models.ForeignKey(
+                        null=True, on_delete=django.db.models.deletion.PROTECT, related_name="+", to=settings.AUTH_USER_MODEL
+                    ),
+                ),
             ],
             options={
-                'indexes': [models.Index(fields=['book', 'recorded_at'], name='entry_by_time')],
-                'constraints': [models.UniqueConstraint(fields=('book', 'seq'), name='entry_seq_once_in_a_book'), models.UniqueConstraint(fields=('book', 'client_id'), name='entry_client_id_once_in_a_book')],
+                "indexes": [models.Index(fields=["book", "recorded_at"], name="entry_by_time")],
+                "constraints": [
+                    models.UniqueConstraint(fields=("book", "seq"), name="entry_seq_once_in_a_book"),
+                    models.UniqueConstraint(fields=("book", "client_id"), name="entry_client_id_once_in_a_book"),
+                ],
             },
         ),
     ]

@@ -9,8 +9,19 @@ from plant.dosing.management.commands.comparison import number
 from plant.works import commands
 
 HEADER = (
-    "vessel", "product", "book_kg", "dip_kg", "difference_kg", "difference_sd_kg", "active_kg", "usable_active_kg", "strength",
-    "days_of_supply", "order_from", "order_by", "remarks",
+    "vessel",
+    "product",
+    "book_kg",
+    "dip_kg",
+    "difference_kg",
+    "difference_sd_kg",
+    "active_kg",
+    "usable_active_kg",
+    "strength",
+    "days_of_supply",
+    "order_from",
+    "order_by",
+    "remarks",
 )
 
 
@@ -31,6 +42,17 @@ class Command(commands.WorksCommand):
 def cells(row: figures.VesselStock) -> tuple[Any, ...]:
     """One row of the CSV."""
     return (
-        row.vessel, row.product, number(row.book_kg, 2), number(row.dip_kg, 2), number(row.difference_kg, 2),
-        number(row.difference_sd_kg, 2), number(row.active_kg, 3), number(row.usable_active_kg, 3), number(row.strength, 3),
-        number(row.days_of_supply, 1), row.order_from, row.order_by, "; ".join(row.remarks))
+        row.vessel,
+        row.product,
+        number(row.book_kg, 2),
+        number(row.dip_kg, 2),
+        number(row.difference_kg, 2),
+        number(row.difference_sd_kg, 2),
+        number(row.active_kg, 3),
+        number(row.usable_active_kg, 3),
+        number(row.strength, 3),
+        number(row.days_of_supply, 1),
+        row.order_from,
+        row.order_by,
+        "; ".join(row.remarks),
+    )
