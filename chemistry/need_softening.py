@@ -30,12 +30,8 @@ def lime_soda(settings: Settings, readings: Readings, product: Product) -> Worki
     remove_magnesium = bool(settings.get("remove_magnesium", False))
     cautions = ["stoichiometric: pH of the softened water and a jar test decide"]
     if not remove_magnesium and target < magnesium:
-        cautions.append(
-            "without removing magnesium the target can't be reached: the dose takes all the calcium"
-        )
-        steps.append(
-            Step("softest without magnesium removal", "Mg", magnesium, "mg/L as CaCO3", "definition")
-        )
+        cautions.append("without removing magnesium the target can't be reached: the dose takes all the calcium")
+        steps.append(Step("softest without magnesium removal", "Mg", magnesium, "mg/L as CaCO3", "definition"))
         target = magnesium
     dose_of = softening.caustic_dose if part == "caustic" else softening.lime_soda_dose
     result = dose_of(
@@ -91,9 +87,7 @@ def target_ph(settings: Settings, readings: Readings, product: Product) -> Worki
         dose = float(carbonate.dose_for_target_ph(water, chemical, target))
         words = f"{chemical} to pH {target:g} by carbonate equilibrium, closed to air"
     formula = "Cl2" if chemical in ("NaOCl", "Cl2") else chemical
-    steps.append(
-        Step(words, "Alk(pH, DIC) = Alk + n dose", dose, f"mg/L {formula}", "PLUMMER-BUSENBERG-1982")
-    )
+    steps.append(Step(words, "Alk(pH, DIC) = Alk + n dose", dose, f"mg/L {formula}", "PLUMMER-BUSENBERG-1982"))
     cautions = ["closed to air; aeration, biology and precipitation move the pH: confirm with a jar test"]
     return Working(dose, formula, tuple(uses), steps, cautions)
 
@@ -130,9 +124,8 @@ def _hardness(readings: Readings, lacking: list[str]) -> tuple[float, float, tup
     return calcium, magnesium, tuple(uses), steps
 
 
-def _carbon_dioxide(
-    readings: Readings, alkalinity: float, steps: list[Step]
-) -> tuple[float, tuple[str, ...]]:
+def _carbon_dioxide(readings: Readings, alkalinity: float, steps: list[Step]) -> tuple[float, tuple[str, ...]]:
+    uses: tuple[str, ...] = ("pH", "temperature")
     if need_parts.has(readings, "pH"):
         temperature = _liquid_c(need_parts.reading(readings, "temperature"), steps)
         co2 = float(carbonate.co2_mg_l(temperature, need_parts.reading(readings, "pH"), alkalinity))

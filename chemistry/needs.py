@@ -119,11 +119,7 @@ def needed_parameters(model: str, settings: Mapping[str, Any]) -> tuple[str, ...
     if model == "ion_exchange_salt":
         return ("hardness",)
     if model == "quench":
-        return (
-            ("hydrogen_peroxide",)
-            if settings.get("of") == "peroxide"
-            else ("free_chlorine", "total_chlorine")
-        )
+        return ("hydrogen_peroxide",) if settings.get("of") == "peroxide" else ("free_chlorine", "total_chlorine")
     if model == "oxidise":
         stated = tuple(key for key in _FLAG_OR_NUMBER if key in settings)
         return tuple(key for key in stated or _FLAG_OR_NUMBER if settings.get(key) is not False)
@@ -148,15 +144,13 @@ def check_settings(model: str, settings: Mapping[str, Any]) -> tuple[str, ...]:
     """What is wrong with a model's stated settings, in words, one entry a fault; empty when nothing."""
     try:
         keys = model_keys(model)
-    except errors.ChemistryError as fault:
-        return (str(fault),)
+    except errors.ChemistryError as unknown:
+        return (str(unknown),)
     faults = [f"{key} is missing" for key in sorted(keys.required - settings.keys())]
     known = ", ".join(sorted(keys.allowed))
     faults += [f"unknown key {key}; {model} knows {known}" for key in sorted(settings.keys() - keys.allowed)]
-    for key in sorted(settings.keys() & keys.allowed):
-        fault = _fault(model, key, settings[key])
-        if fault:
-            faults.append(fault)
+    found = (_fault(model, key, settings[key]) for key in sorted(settings.keys() & keys.allowed))
+    faults += [fault for fault in found if fault]
     if model == "oxidant_demand" and ("demand_mg_per_L" in settings) == ("demand_from" in settings):
         faults.append("either demand_mg_per_L or demand_from is needed, not both")
     return tuple(faults)
