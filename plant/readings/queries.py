@@ -53,14 +53,36 @@ class Point:
 
 
 COLUMNS = (
-    "seq", "line", "site", "parameter", "taken_at", "value", "value_text", "unit", "qualifier", "state", "typed", "typed_unit",
-    "statistic", "sample", "note", "marks", "supersedes_id", "date_only", "pk",
+    "seq",
+    "line",
+    "site",
+    "parameter",
+    "taken_at",
+    "value",
+    "value_text",
+    "unit",
+    "qualifier",
+    "state",
+    "typed",
+    "typed_unit",
+    "statistic",
+    "sample",
+    "note",
+    "marks",
+    "supersedes_id",
+    "date_only",
+    "pk",
 )
 
 
 def points(
-    book: Book, *, start: dt.datetime, end: dt.datetime, sites: Iterable[str] | None = None,
-    parameters: Iterable[str] | None = None, known: int | None = None,
+    book: Book,
+    *,
+    start: dt.datetime,
+    end: dt.datetime,
+    sites: Iterable[str] | None = None,
+    parameters: Iterable[str] | None = None,
+    known: int | None = None,
 ) -> list[Point]:
     """Readings with start <= taken_at < end, by time, as known at a seq (None: now)."""
     rows = models.Reading.objects.filter(book=book, taken_at__gte=start, taken_at__lt=end)
@@ -77,9 +99,26 @@ def _built(book: Book, rows: InForceQuerySet, known: int | None) -> list[Point]:
     settled = _settlements(marked, known) if marked else {}
     return [
         Point(
-            ref=f"{row[0]}.{row[1]}", site=row[2], parameter=row[3], at=row[4], value=row[5], text=row[6], unit=row[7],
-            qualifier=row[8], state=row[9], typed=row[10], typed_unit=row[11], statistic=row[12], sample=row[13], note=row[14],
-            marks=tuple(row[15]), settled=settled.get(row[18], ""), corrected=row[16] is not None, date_only=row[17], pk=row[18])
+            ref=f"{row[0]}.{row[1]}",
+            site=row[2],
+            parameter=row[3],
+            at=row[4],
+            value=row[5],
+            text=row[6],
+            unit=row[7],
+            qualifier=row[8],
+            state=row[9],
+            typed=row[10],
+            typed_unit=row[11],
+            statistic=row[12],
+            sample=row[13],
+            note=row[14],
+            marks=tuple(row[15]),
+            settled=settled.get(row[18], ""),
+            corrected=row[16] is not None,
+            date_only=row[17],
+            pk=row[18],
+        )
         for row in found
     ]
 
@@ -87,7 +126,7 @@ def _built(book: Book, rows: InForceQuerySet, known: int | None) -> list[Point]:
 def _settlements(readings: list[int], known: int | None) -> dict[int, str]:
     out: dict[int, str] = {}
     for first in range(0, len(readings), 500):
-        rows = models.Settlement.objects.filter(reading__in=readings[first:first + 500]).as_known(known)
+        rows = models.Settlement.objects.filter(reading__in=readings[first : first + 500]).as_known(known)
         out.update(rows.order_by("seq", "line").values_list("reading_id", "decision"))
     return out
 
@@ -101,7 +140,13 @@ def by_series(found: Iterable[Point]) -> dict[tuple[str, str], list[Point]]:
 
 
 def series(
-    book: Book, site: str, parameter: str, *, start: dt.datetime, end: dt.datetime, known: int | None = None,
+    book: Book,
+    site: str,
+    parameter: str,
+    *,
+    start: dt.datetime,
+    end: dt.datetime,
+    known: int | None = None,
 ) -> list[Point]:
     """One parameter at one site, start <= taken_at < end, by time."""
     return points(book, start=start, end=end, sites=[site], parameters=[parameter], known=known)
@@ -129,6 +174,30 @@ def history(reading: models.Reading) -> list[models.Reading]:
     chain = [reading]
     while chain[0].supersedes_id:
         chain.insert(0, models.Reading.objects.select_related("entry__recorded_by").get(pk=chain[0].supersedes_id))
-    while (later := models.Reading.objects.filter(supersedes=chain[-1].pk).select_related("entry__recorded_by").first()):
+    while later := models.Reading.objects.filter(supersedes=chain[-1].pk).select_related("entry__recorded_by").first():
         chain.append(later)
     return chain
+
+
+def replaced_by(reading: models.Reading) -> models.Reading | None:
+    """The row that holds now in place of this one (a void too), or None while this one holds."""
+    newest = None
+    at = reading.pk
+    rows = models.Reading.objects.select_related("entry__recorded_by")
+    while (later := rows.filter(supersedes=at).first()) is not None:
+        newest, at = later, later.pk
+    return newest
+
+
+def rivals(book: Book, reading: models.Reading) -> list[models.Reading]:
+    """Other readings in force of the same site, parameter, time, sample and statistic."""
+    same = models.Reading.objects.filter(
+        book=book,
+        site=reading.site,
+        parameter=reading.parameter,
+        taken_at=reading.taken_at,
+        date_only=reading.date_only,
+        sample=reading.sample,
+        statistic=reading.statistic,
+    )
+    return list(same.as_known().exclude(pk=reading.pk).order_by("seq", "line"))

@@ -12,7 +12,12 @@ from plant.stock import models
 
 
 def deliveries(
-    book: Book, *, start: dt.datetime, end: dt.datetime, vessels: Iterable[str] | None = None, known: int | None = None,
+    book: Book,
+    *,
+    start: dt.datetime,
+    end: dt.datetime,
+    vessels: Iterable[str] | None = None,
+    known: int | None = None,
 ) -> list[models.Delivery]:
     """Deliveries with start <= taken_at < end, by time, as known at a seq (None: now)."""
     rows = models.Delivery.objects.filter(book=book, taken_at__gte=start, taken_at__lt=end)
@@ -22,7 +27,12 @@ def deliveries(
 
 
 def transfers(
-    book: Book, *, start: dt.datetime, end: dt.datetime, vessels: Iterable[str] | None = None, known: int | None = None,
+    book: Book,
+    *,
+    start: dt.datetime,
+    end: dt.datetime,
+    vessels: Iterable[str] | None = None,
+    known: int | None = None,
 ) -> list[models.Transfer]:
     """Transfers out of or into the vessels, start <= taken_at < end, by time."""
     rows = models.Transfer.objects.filter(book=book, taken_at__gte=start, taken_at__lt=end)
