@@ -7,8 +7,11 @@ those of the `periodictable` package, which the tests compare).
 
 import re
 from functools import lru_cache
+from typing import Any
 
 from chemistry import errors
+
+Values = Any  # a float or a numpy array
 
 ATOMIC_WEIGHTS_G_MOL: dict[str, float] = {
     "H": 1.008, "Li": 6.94, "Be": 9.0121831, "B": 10.81, "C": 12.011, "N": 14.007, "O": 15.999,
@@ -56,7 +59,7 @@ def molar_mass(formula: str) -> float:
     return sum(ATOMIC_WEIGHTS_G_MOL[element] * count for element, count in _composition(formula))
 
 
-def kelvin(temperature_c):
+def kelvin(temperature_c: Values) -> Values:
     """Absolute temperature in K from °C; float or array."""
     return temperature_c + ZERO_C_IN_K
 

@@ -5,10 +5,13 @@ temperature; the integral over such steps is exact. Strengths may be floats or a
 """
 
 from collections.abc import Sequence
+from typing import Any
 
 import numpy as np
 
 from chemistry import constants, errors
+
+Values = Any  # a float or a numpy array
 
 CL2_G_MOL = constants.molar_mass("Cl2")
 CHLORATE_G_MOL = constants.molar_mass("ClO3")
@@ -23,7 +26,7 @@ CHLORATE_SHARE = 3 * 8.7 / (3 * 8.7 + 2)
 _ADAM_GORDON = "Adam & Gordon 1999"
 
 
-def hypochlorite_k2_per_m_s(temperature_c, ionic_strength_m, *, extrapolate: bool = False):
+def hypochlorite_k2_per_m_s(temperature_c: Values, ionic_strength_m: Values, *, extrapolate: bool = False) -> Values:
     """Second-order rate constant of hypochlorite loss in L/(mol s): -d[OCl]/dt = k2 [OCl]².
 
     log k2 = 0.149 µ + log(2.083e10 T exp(-1.018e5/RT) exp(-56.5/R)) (Adam & Gordon 1999, rate law of the
@@ -42,12 +45,10 @@ def hypochlorite_k2_per_m_s(temperature_c, ionic_strength_m, *, extrapolate: boo
         errors.require("ionic strength", ionic_strength_m, "mol/L", *IONIC_STRENGTH_RANGE_M, _ADAM_GORDON)
     kelvin = constants.kelvin(temperature_c)
     gas = constants.GAS_CONSTANT_J_MOL_K
-    return (
-        10.0 ** (0.149 * ionic_strength) * 2.083e10 * kelvin * np.exp(-1.018e5 / (gas * kelvin) - 56.5 / gas)
-    )
+    return 10.0 ** (0.149 * ionic_strength) * 2.083e10 * kelvin * np.exp(-1.018e5 / (gas * kelvin) - 56.5 / gas)
 
 
-def hypochlorite_ionic_strength_m(fresh_g_l, excess_naoh_mol_l=EXCESS_NAOH_MOL_L):
+def hypochlorite_ionic_strength_m(fresh_g_l: Values, excess_naoh_mol_l: Values = EXCESS_NAOH_MOL_L) -> Values:
     """Ionic strength in mol/L of hypochlorite made with ``fresh_g_l`` of available chlorine.
 
     NaOCl and NaCl come in equal moles, so µ = 2 [OCl] fresh + [NaOH]; ageing turns one ion into another and
@@ -57,23 +58,21 @@ def hypochlorite_ionic_strength_m(fresh_g_l, excess_naoh_mol_l=EXCESS_NAOH_MOL_L
 
 
 def hypochlorite_strength_after(
-    strength_g_l,
+    strength_g_l: Values,
     temperatures_c: Sequence[float],
     days: Sequence[float],
     *,
-    fresh_g_l=None,
-    excess_naoh_mol_l=EXCESS_NAOH_MOL_L,
+    fresh_g_l: Values = None,
+    excess_naoh_mol_l: Values = EXCESS_NAOH_MOL_L,
     extrapolate: bool = False,
-):
+) -> Values:
     """Available chlorine in g/L after a temperature history: 1/C = 1/C0 + Σ k2(T) t.
 
     ``fresh_g_l`` is the strength as made (default: the strength given), which fixes the ionic strength.
     Strength 0 stays 0. Ranges and errors as in :func:`hypochlorite_k2_per_m_s`; strengths from 0 to 3 mol/L
     (213 g/L). Clean product assumed: nickel, copper, cobalt or a pH below 11 make it faster.
     """
-    errors.require(
-        "available chlorine", strength_g_l, "g/L", 0.0, STRENGTH_RANGE_MOL_L[1] * CL2_G_MOL, _ADAM_GORDON
-    )
+    errors.require("available chlorine", strength_g_l, "g/L", 0.0, STRENGTH_RANGE_MOL_L[1] * CL2_G_MOL, _ADAM_GORDON)
     if len(temperatures_c) != len(days):
         raise errors.ChemistryError("a temperature history needs one temperature for each length of time")
     errors.require("time in store", list(days), "d", 0.0, 36500.0, "a temperature history")
@@ -86,7 +85,7 @@ def hypochlorite_strength_after(
     return strength_g_l / (1.0 + exposure * strength_g_l / CL2_G_MOL)
 
 
-def chlorate_formed_g_l(strength_lost_g_l):
+def chlorate_formed_g_l(strength_lost_g_l: Values) -> Values:
     """Chlorate in g/L (as ClO3) formed while so much available chlorine (g/L) was lost.
 
     0.929 of the loss goes to chlorate, one for three OCl (chlorate 8.7 times as fast as oxygen, Adam &
@@ -112,13 +111,13 @@ def hypochlorite_range_remarks(
 
 
 def peroxide_strength_after(
-    strength,
+    strength: Values,
     temperatures_c: Sequence[float],
     days: Sequence[float],
     *,
     loss_per_year: float = 0.01,
     factor_per_10_c: float = 2.0,
-):
+) -> Values:
     """Hydrogen peroxide strength (any basis) after a temperature history, first order.
 
     Default 1 % a year at 20 °C (makers: under 1 % a year if clean; opened), doubling every 10 °C (from

@@ -9,15 +9,16 @@ certificate; these are to check it and to plan.
 import csv
 from functools import lru_cache
 from pathlib import Path
+from typing import Any
 
 import numpy as np
 
 from chemistry import constants, errors
 
+Values = Any  # a float or a numpy array
+
 _TABLE = Path(__file__).parent / "tables" / "densities.csv"
-WATER_60F_KG_L = (
-    0.99902  # density of water at 15.56 °C, the usual reference of a specific gravity; IAPWS, from memory
-)
+WATER_60F_KG_L = 0.99902  # density of water at 15.56 °C, the usual reference of a specific gravity; IAPWS, from memory
 DRY_ALUM = "Al2(SO4)3.14H2O"
 _ANHYDROUS_IN_DRY_ALUM = constants.molar_mass("Al2(SO4)3") / constants.molar_mass(DRY_ALUM)
 
@@ -35,7 +36,7 @@ def valid_range(chemical: str) -> tuple[float, float, float, float]:
     return float(low), float(high), float(temperatures[0]), float(temperatures[-1])
 
 
-def density_kg_l(chemical: str, weight_pct, temperature_c):
+def density_kg_l(chemical: str, weight_pct: Values, temperature_c: Values) -> Values:
     """Density in kg/L of a solution of ``weight_pct`` (of the formula as written) at a temperature in °C.
 
     Floats or arrays that broadcast. Tables at one temperature only (Na2S2O3, Fe2(SO4)3, H2SiF6, lime
@@ -56,14 +57,12 @@ def density_kg_l(chemical: str, weight_pct, temperature_c):
     last_row, last_column = len(strengths) - 1, len(temperatures) - 1
     next_row, next_column = np.minimum(row + 1, last_row), np.minimum(column + 1, last_column)
     at_row = specific_volumes[row, column] * (1 - right) + specific_volumes[row, next_column] * right
-    at_next = (
-        specific_volumes[next_row, column] * (1 - right) + specific_volumes[next_row, next_column] * right
-    )
+    at_next = specific_volumes[next_row, column] * (1 - right) + specific_volumes[next_row, next_column] * right
     result = 1.0 / (at_row * (1 - up) + at_next * up)
     return float(result) if np.ndim(weight_pct) == 0 and np.ndim(temperature_c) == 0 else result
 
 
-def hypochlorite_density_kg_l(available_chlorine_g_l, excess_naoh_pct=0.3):
+def hypochlorite_density_kg_l(available_chlorine_g_l: Values, excess_naoh_pct: Values = 0.3) -> Values:
     """Density of sodium hypochlorite in kg/L, about 20 °C, from available chlorine (g/L, 0 to 160) and
     excess NaOH (wt %).
 
@@ -76,7 +75,7 @@ def hypochlorite_density_kg_l(available_chlorine_g_l, excess_naoh_pct=0.3):
     return 1.0 + 0.001308 * available_chlorine_g_l + 0.015 * excess_naoh_pct
 
 
-def density_from_sg_kg_l(specific_gravity, reference_kg_l: float = WATER_60F_KG_L):
+def density_from_sg_kg_l(specific_gravity: Values, reference_kg_l: float = WATER_60F_KG_L) -> Values:
     """Density in kg/L from a specific gravity; the reference is water at 60 °F unless another density is
     given.
     """
@@ -95,9 +94,7 @@ def _grid(chemical: str) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
     grids = _grids()
     key = "Al2(SO4)3" if chemical == DRY_ALUM else chemical
     if key not in grids:
-        raise errors.ChemistryError(
-            f"no density table for {chemical!r}; known: {', '.join(grids)}, {DRY_ALUM}"
-        )
+        raise errors.ChemistryError(f"no density table for {chemical!r}; known: {', '.join(grids)}, {DRY_ALUM}")
     return grids[key]
 
 

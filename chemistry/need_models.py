@@ -19,11 +19,12 @@ def oxidant_demand(settings: Settings, readings: Readings, product: Product) -> 
     MD0160.
     """
     target = need_parts.setting(settings, "target_residual_mg_per_L", 0.0)
+    uses: tuple[str, ...] = ()
     if settings.get("demand_from") == "last_7_days":
         demand, uses = need_parts.reading(readings, DEMAND), (DEMAND,)
         words = "flow-weighted mean of dose less residual over the seven operating days before"
     else:
-        demand, uses = need_parts.setting(settings, DEMAND), ()
+        demand = need_parts.setting(settings, DEMAND)
         words = "demand as stated by the works"
     dose = oxidants.dose_for_residual_mg_l(demand, target)
     return Working(
@@ -64,20 +65,14 @@ def ion_exchange_salt(settings: Settings, readings: Readings, product: Product) 
     removed = max(hardness - target, 0.0)
     per_kg = salt / capacity
     steps = [
-        Step(
-            "hardness to remove from the blended water", "TH - target", removed, "mg/L as CaCO3", "definition"
-        ),
+        Step("hardness to remove from the blended water", "TH - target", removed, "mg/L as CaCO3", "definition"),
         Step("salt per kg of hardness", "salt / capacity", per_kg, "kg/kg", "definition"),
     ]
     if removed > 0:
         cycle_ml = resin_m3 * capacity / removed
-        steps.append(
-            Step("blended water between regenerations", "V q / (TH - target)", cycle_ml, "ML", "definition")
-        )
+        steps.append(Step("blended water between regenerations", "V q / (TH - target)", cycle_ml, "ML", "definition"))
     dose = removed * per_kg
-    steps.append(
-        Step("salt per volume of blended water", "(TH - target) salt / q", dose, "mg/L", "definition")
-    )
+    steps.append(Step("salt per volume of blended water", "(TH - target) salt / q", dose, "mg/L", "definition"))
     floor = 2 * constants.molar_mass("NaCl") / constants.CACO3_G_MOL
     cautions = []
     if per_kg < floor:
@@ -176,9 +171,7 @@ def sequestrant(settings: Settings, readings: Readings, product: Product) -> Wor
             uses.append(name)
             steps.append(Step(f"for {name}", f"{ratio:g} × {name}", part, "mg/L", "common-practice"))
     steps.append(Step("dose", "Σ", dose, "mg/L", "common-practice"))
-    cautions = [
-        "polyphosphate reverts with time and heat, is weaker on manganese, and goes in before any oxidant"
-    ]
+    cautions = ["polyphosphate reverts with time and heat, is weaker on manganese, and goes in before any oxidant"]
     held = sum(float(readings[name]) for name in ("iron", "manganese") if need_parts.has(readings, name))
     if held > _FE_MN_LIMIT_MG_L:
         cautions.append("iron + manganese above 1.0 mg/L: beyond what polyphosphate holds (Wis. NR 811.56)")

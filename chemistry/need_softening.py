@@ -129,11 +129,7 @@ def _carbon_dioxide(readings: Readings, alkalinity: float, steps: list[Step]) ->
     if need_parts.has(readings, "pH"):
         temperature = _liquid_c(need_parts.reading(readings, "temperature"), steps)
         co2 = float(carbonate.co2_mg_l(temperature, need_parts.reading(readings, "pH"), alkalinity))
-        words, source, uses = (
-            "carbon dioxide from pH and alkalinity",
-            "PLUMMER-BUSENBERG-1982",
-            ("pH", "temperature"),
-        )
+        words, source = "carbon dioxide from pH and alkalinity", "PLUMMER-BUSENBERG-1982"
     else:
         co2 = need_parts.reading(readings, "carbon_dioxide")
         words, source, uses = "carbon dioxide as read", "definition", ("carbon_dioxide",)

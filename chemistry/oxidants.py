@@ -7,9 +7,13 @@ Real water holds organics and side reactions: the stoichiometric figure is where
 where it ends.
 """
 
+from typing import Any
+
 import numpy as np
 
 from chemistry import constants, errors
+
+Values = Any  # a float or a numpy array
 
 # Electrons an oxidant takes per mole: permanganate to MnO2, chlorine dioxide to chlorite.
 OXIDANT_ELECTRONS: dict[str, float] = {
@@ -36,9 +40,7 @@ REDUCTANTS: dict[str, tuple[str, float]] = {
     "ammonia_to_nitrogen": ("N", 3),  # breakpoint
     "chlorine": ("Cl2", 2),  # as the one that is quenched
 }
-MONOCHLORAMINE_RATIO = constants.molar_mass("Cl2") / constants.molar_mass(
-    "N"
-)  # 5.06 mg Cl2 per mg N, 1 mol per mol
+MONOCHLORAMINE_RATIO = constants.molar_mass("Cl2") / constants.molar_mass("N")  # 5.06 mg Cl2 per mg N, 1 mol per mol
 BREAKPOINT_RATIO = 1.5 * MONOCHLORAMINE_RATIO  # 7.59: 2 NH3 + 3 Cl2 = N2 + 6 HCl
 BREAKPOINT_PRACTICE_RATIO = (10.0, 15.0)  # Applications of Environmental Calculations, ch. 4; opened
 
@@ -59,9 +61,7 @@ ALKALINITY_PER_CL2_REDUCED = 2 * ALKALINITY_PER_CL2_STANDING  # 1.41 once it has
 _SOURCE = "oxidant arithmetic"
 
 
-def oxidant_per_reductant_mg_mg(
-    oxidant: str, reductant: str, *, oxidant_electrons: float | None = None
-) -> float:
+def oxidant_per_reductant_mg_mg(oxidant: str, reductant: str, *, oxidant_electrons: float | None = None) -> float:
     """mg of oxidant per mg of what it oxidises (names in REDUCTANTS), by electrons.
 
     Chlorine per iron 0.635, per manganese 1.29; permanganate per manganese 1.92; peroxide per iron 0.305.
@@ -72,7 +72,7 @@ def oxidant_per_reductant_mg_mg(
     return (constants.molar_mass(oxidant) / taken) / (constants.molar_mass(formula) / given)
 
 
-def equivalent_mg_l(dose_mg_l, from_oxidant: str, to_oxidant: str):
+def equivalent_mg_l(dose_mg_l: Values, from_oxidant: str, to_oxidant: str) -> Values:
     """The dose of another oxidant that takes the same electrons (chlorine to permanganate, ozone to
     peroxide ...).
     """
@@ -84,13 +84,13 @@ def equivalent_mg_l(dose_mg_l, from_oxidant: str, to_oxidant: str):
 def demand_mg_l(
     oxidant: str,
     *,
-    iron_mg_l=0.0,
-    manganese_mg_l=0.0,
-    sulfide_mg_l_s=0.0,
-    nitrite_mg_l_n=0.0,
-    ammonia_mg_l_n=0.0,
+    iron_mg_l: Values = 0.0,
+    manganese_mg_l: Values = 0.0,
+    sulfide_mg_l_s: Values = 0.0,
+    nitrite_mg_l_n: Values = 0.0,
+    ammonia_mg_l_n: Values = 0.0,
     sulfide_to_sulfate: bool = True,
-):
+) -> Values:
     """Stoichiometric demand in mg/L of the oxidant, summed over what is given (each 0 to 1000 mg/L; float
     or array).
 
@@ -114,14 +114,14 @@ def demand_mg_l(
     return total
 
 
-def dose_for_residual_mg_l(demand_mg_l, target_residual_mg_l):
+def dose_for_residual_mg_l(demand_mg_l: Values, target_residual_mg_l: Values) -> Values:
     """Dose = demand + residual wanted (MD0160; the demand belongs to one contact time and place)."""
     errors.require("demand", demand_mg_l, "mg/L", 0.0, 1000.0, _SOURCE)
     errors.require("target residual", target_residual_mg_l, "mg/L", 0.0, 100.0, _SOURCE)
     return demand_mg_l + target_residual_mg_l
 
 
-def observed_demand_mg_l(dose_mg_l, residual_mg_l):
+def observed_demand_mg_l(dose_mg_l: Values, residual_mg_l: Values) -> Values:
     """Demand seen = dose - residual; a residual above the dose is refused (a wrong reading or another
     source).
     """
@@ -130,7 +130,7 @@ def observed_demand_mg_l(dose_mg_l, residual_mg_l):
     return demand
 
 
-def flow_weighted_demand_mg_l(doses_mg_l, residuals_mg_l, volumes_ml):
+def flow_weighted_demand_mg_l(doses_mg_l: Values, residuals_mg_l: Values, volumes_ml: Values) -> Values:
     """Demand over several days, each day weighted by its volume (ML); days given as equal-length
     sequences.
     """
@@ -142,14 +142,16 @@ def flow_weighted_demand_mg_l(doses_mg_l, residuals_mg_l, volumes_ml):
     return float((daily * volumes).sum() / volumes.sum())
 
 
-def residual_after_mg_l(initial_mg_l, minutes, rate_per_min):
+def residual_after_mg_l(initial_mg_l: Values, minutes: Values, rate_per_min: Values) -> Values:
     """Residual after a time by first order: C0 exp(-k t)."""
     errors.require("rate", rate_per_min, "1/min", 0.0, 100.0, _SOURCE)
     errors.require("time", minutes, "min", 0.0, np.inf, _SOURCE)
     return initial_mg_l * np.exp(-rate_per_min * minutes)
 
 
-def residual_after_parallel_mg_l(initial_mg_l, minutes, fast_share, fast_rate_per_min, slow_rate_per_min):
+def residual_after_parallel_mg_l(
+    initial_mg_l: Values, minutes: Values, fast_share: Values, fast_rate_per_min: Values, slow_rate_per_min: Values
+) -> Values:
     """Residual when a share decays fast and the rest slowly: C0 [x exp(-k1 t) + (1 - x) exp(-k2 t)].
 
     Haas & Karra 1984, parallel first-order model; from memory.
@@ -160,7 +162,7 @@ def residual_after_parallel_mg_l(initial_mg_l, minutes, fast_share, fast_rate_pe
     return fast_share * fast + (1.0 - fast_share) * slow
 
 
-def first_order_rate_per_min(initial_mg_l, residual_mg_l, minutes):
+def first_order_rate_per_min(initial_mg_l: Values, residual_mg_l: Values, minutes: Values) -> Values:
     """Rate constant from two residuals (each above 0) a time apart: ln(C0/C) / t."""
     errors.require("residual", residual_mg_l, "mg/L", 1e-9, np.inf, _SOURCE)
     errors.require("initial less residual", initial_mg_l - residual_mg_l, "mg/L", 0.0, np.inf, _SOURCE)
@@ -179,7 +181,7 @@ def chlorine_to_nitrogen_stage(chlorine_mg_l: float, ammonia_mg_l_n: float) -> s
     return "breakpoint" if chlorine_mg_l < BREAKPOINT_RATIO * ammonia_mg_l_n else "free chlorine"
 
 
-def dechlorination_mg_l(agent: str, chlorine_mg_l, *, field: bool = False):
+def dechlorination_mg_l(agent: str, chlorine_mg_l: Values, *, field: bool = False) -> Values:
     """mg/L of a dechlorinating agent (formulas in DECHLORINATING) for so much chlorine.
 
     By stoichiometry, or ``field`` by the figures of the AWWA pipeline guide, about 10 % higher (1.9 for
@@ -196,7 +198,7 @@ def dechlorination_mg_l(agent: str, chlorine_mg_l, *, field: bool = False):
     return chlorine_mg_l * constants.molar_mass(agent) / constants.molar_mass("Cl2") / chlorine_mol
 
 
-def hocl_fraction(ph, temperature_c):
+def hocl_fraction(ph: Values, temperature_c: Values) -> Values:
     """Share of free chlorine that is HOCl: 1 / (1 + 10^(pH - pKa)), pKa = 3000.00/T - 10.0686 + 0.0253 T.
 
     Morris 1966, J. Phys. Chem. 70:3798 (from memory); 0 to 40 °C, pH 4 to 11; activity neglected.
@@ -208,7 +210,7 @@ def hocl_fraction(ph, temperature_c):
     return 1.0 / (1.0 + 10.0 ** (ph - pka))
 
 
-def alkalinity_used_mg_l(chlorine_mg_l, *, reduced: bool):
+def alkalinity_used_mg_l(chlorine_mg_l: Values, *, reduced: bool) -> Values:
     """Alkalinity (mg/L CaCO3) taken by chlorine gas: 0.71 per mg while HOCl stands, 1.41 once it is
     reduced.
     """

@@ -8,9 +8,13 @@ metals, dirt or alkali get in: vented storage, no trapped volumes, clean gear, e
 return of drawn product.
 """
 
+from typing import Any
+
 import numpy as np
 
 from chemistry import constants, errors, oxidants
+
+Values = Any  # a float or a numpy array
 
 H2O2_G_MOL = constants.molar_mass("H2O2")
 OXYGEN_PER_PEROXIDE = constants.molar_mass("O2") / 2 / H2O2_G_MOL  # 0.470: 2 H2O2 = O2 + 2 H2O
@@ -40,7 +44,7 @@ NAMED_ORGANICS: dict[str, str] = {
 _SOURCE = "peroxide arithmetic"
 
 
-def dose_to_quench_chlorine_mg_l(chlorine_mg_l):
+def dose_to_quench_chlorine_mg_l(chlorine_mg_l: Values) -> Values:
     """Peroxide (mg/L, 100 %) that takes free chlorine (mg/L Cl2): 0.480 mg/mg; H2O2 + HOCl = O2 + H2O + HCl.
 
     Free chlorine only: chloramines react slowly. The chlorine test can't show an overdose.
@@ -48,13 +52,13 @@ def dose_to_quench_chlorine_mg_l(chlorine_mg_l):
     return oxidants.dechlorination_mg_l("H2O2", chlorine_mg_l)
 
 
-def chlorine_to_quench_mg_l(peroxide_mg_l):
+def chlorine_to_quench_mg_l(peroxide_mg_l: Values) -> Values:
     """Chlorine (mg/L Cl2) that takes peroxide (mg/L): 2.084 mg/mg. Hard to hit in practice (LIU-2003)."""
     errors.require("peroxide", peroxide_mg_l, "mg/L", 0.0, 10000.0, _SOURCE)
     return peroxide_mg_l * constants.molar_mass("Cl2") / H2O2_G_MOL
 
 
-def dose_with_ozone_mg_l(ozone_mg_l, ratio_mg_mg=PEROXIDE_PER_OZONE):
+def dose_with_ozone_mg_l(ozone_mg_l: Values, ratio_mg_mg: Values = PEROXIDE_PER_OZONE) -> Values:
     """Peroxide (mg/L) to go with ozone (mg/L): 0.354 mg/mg by 2 O3 + H2O2; a works sets its own, usually
     0.3 to 0.6.
 
@@ -82,7 +86,7 @@ def organic_demand_mg_mg(name_or_formula: str) -> float:
     return electrons / 2 * H2O2_G_MOL / constants.molar_mass(formula)
 
 
-def oxygen_released_l(peroxide_kg, temperature_c=20.0):
+def oxygen_released_l(peroxide_kg: Values, temperature_c: Values = 20.0) -> Values:
     """Litres of oxygen at 1 atm that so much peroxide (kg of 100 %) gives off when it decomposes wholly.
 
     0.470 kg O2 per kg, ideal gas; 1 kg of 50 % gives about 177 L at 20 °C. Why no peroxide line may be

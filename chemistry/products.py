@@ -15,6 +15,8 @@ import numpy as np
 
 from chemistry import constants, errors
 
+Values = Any  # a float or a numpy array
+
 CHLORINE_BASES = ("g_per_L_available_chlorine", "trade_pct", "weight_pct_available_chlorine")
 STRENGTH_BASES = (*CHLORINE_BASES, "weight_pct")
 _NEEDS_DENSITY = ("g_per_L_available_chlorine", "trade_pct")
@@ -71,21 +73,17 @@ def mass_ratio(from_formula: str, to_formula: str) -> float:
     for element in _COUNTED_ELEMENTS:
         if element in mine and element in theirs:
             return mine[element] / from_mass * to_mass / theirs[element]
-    raise errors.ChemistryError(
-        f"{from_formula} can't be stated as {to_formula}: they share nothing to count by"
-    )
+    raise errors.ChemistryError(f"{from_formula} can't be stated as {to_formula}: they share nothing to count by")
 
 
-def strength_as_weight_fraction(strength, strength_basis: str, density_kg_l=None):
+def strength_as_weight_fraction(strength: Values, strength_basis: str, density_kg_l: Values = None) -> Values:
     """kg of what the strength counts per kg of product; float or array.
 
     Valid: 0 to 100 weight %, 0 to 1000 g/L; a result above 1 kg/kg is refused. Needs the density (kg/L, 0.5
     to 2.5) for strengths per volume: 12.5 trade % at 1.16 kg/L is 10.8 weight %, not 12.5.
     """
     if strength_basis not in STRENGTH_BASES:
-        raise errors.ChemistryError(
-            f"unknown strength basis {strength_basis!r}; known: {', '.join(STRENGTH_BASES)}"
-        )
+        raise errors.ChemistryError(f"unknown strength basis {strength_basis!r}; known: {', '.join(STRENGTH_BASES)}")
     if strength_basis in _NEEDS_DENSITY:
         if density_kg_l is None:
             raise errors.ChemistryError(f"{strength_basis} needs the product's density")
@@ -98,7 +96,7 @@ def strength_as_weight_fraction(strength, strength_basis: str, density_kg_l=None
     return fraction
 
 
-def strength_from_weight_fraction(fraction, strength_basis: str, density_kg_l=None):
+def strength_from_weight_fraction(fraction: Values, strength_basis: str, density_kg_l: Values = None) -> Values:
     """The inverse of :func:`strength_as_weight_fraction`."""
     if strength_basis in _NEEDS_DENSITY and density_kg_l is None:
         raise errors.ChemistryError(f"{strength_basis} needs the product's density")
@@ -108,19 +106,17 @@ def strength_from_weight_fraction(fraction, strength_basis: str, density_kg_l=No
         return fraction * 100.0 * density_kg_l
     if strength_basis in STRENGTH_BASES:
         return fraction * 100.0
-    raise errors.ChemistryError(
-        f"unknown strength basis {strength_basis!r}; known: {', '.join(STRENGTH_BASES)}"
-    )
+    raise errors.ChemistryError(f"unknown strength basis {strength_basis!r}; known: {', '.join(STRENGTH_BASES)}")
 
 
 def active_fraction(
-    strength,
+    strength: Values,
     strength_basis: str,
-    density_kg_l,
+    density_kg_l: Values,
     dose_basis: str,
     chemical: str,
     strength_as: str | None = None,
-):
+) -> Values:
     """kg of the dose basis per kg of product; float or array of strengths.
 
     125 g/L available chlorine at 1.20 kg/L: 0.10417 as Cl2, 0.10937 as NaOCl. Raises ChemistryError for a
@@ -146,7 +142,7 @@ def counted_formula(strength_basis: str, chemical: str, strength_as: str | None 
     return strength_as or chemical
 
 
-def fraction_of_product(product: Mapping[str, Any], dose_basis: str | None = None, strength=None):
+def fraction_of_product(product: Mapping[str, Any], dose_basis: str | None = None, strength: Values = None) -> Values:
     """:func:`active_fraction` of a product as stated (keys chemical, strength, strength_basis, strength_as,
     density_kg_per_L, dose_basis), with another dose basis or a newer strength where given."""
     return active_fraction(
@@ -159,7 +155,7 @@ def fraction_of_product(product: Mapping[str, Any], dose_basis: str | None = Non
     )
 
 
-def dose_in_basis_mg_l(dose_mg_l, of_formula: str, product: Mapping[str, Any]):
+def dose_in_basis_mg_l(dose_mg_l: Values, of_formula: str, product: Mapping[str, Any]) -> Values:
     """mg/L in the product's own dose basis that carry ``dose_mg_l`` of a pure substance (``Cl2``,
     ``Ca(OH)2`` ...).
     """
@@ -172,8 +168,8 @@ def dose_in_basis_mg_l(dose_mg_l, of_formula: str, product: Mapping[str, Any]):
 
 
 def convert_strength(
-    strength, from_basis: str, to_basis: str, density_kg_l, chemical: str, strength_as: str | None = None
-):
+    strength: Values, from_basis: str, to_basis: str, density_kg_l: Values, chemical: str, strength_as: str | None = None
+) -> Values:
     """A strength on another basis, for the same product.
 
     weight % NaOCl = 1.050 x weight % available chlorine; weight % available chlorine = trade % / density.
@@ -215,8 +211,13 @@ def mix_lots(
 
 
 def dilute(
-    product_l, density_kg_l, strength, strength_basis: str, water_l, water_density_kg_l: float = 0.998
-):
+    product_l: Values,
+    density_kg_l: Values,
+    strength: Values,
+    strength_basis: str,
+    water_l: Values,
+    water_density_kg_l: float = 0.998,
+) -> Values:
     """(litres, density, strength) after product and water are put together in a tank.
 
     Active mass stays; volumes are added (CADPH: strength by mass, density as the mean by volume); the few
@@ -235,17 +236,13 @@ def dilute(
     return litres, density, strength_from_weight_fraction(diluted, strength_basis, density)
 
 
-def dilution_water_l(stock_l, strength, wanted_strength):
+def dilution_water_l(stock_l: Values, strength: Values, wanted_strength: Values) -> Values:
     """Water in litres to add to stock so that a strength per volume falls to the wanted one: V (C/C' - 1)."""
-    errors.require(
-        "wanted share of the strength", wanted_strength / strength, "", 1e-9, 1.0, "dilution only weakens"
-    )
+    errors.require("wanted share of the strength", wanted_strength / strength, "", 1e-9, 1.0, "dilution only weakens")
     return stock_l * (strength / wanted_strength - 1.0)
 
 
-def stock_for_batch_l(batch_l, strength, wanted_strength):
+def stock_for_batch_l(batch_l: Values, strength: Values, wanted_strength: Values) -> Values:
     """Litres of stock in a batch of ``batch_l`` made to a wanted strength per volume: V' C'/C."""
-    errors.require(
-        "wanted share of the strength", wanted_strength / strength, "", 0.0, 1.0, "dilution only weakens"
-    )
+    errors.require("wanted share of the strength", wanted_strength / strength, "", 0.0, 1.0, "dilution only weakens")
     return batch_l * wanted_strength / strength

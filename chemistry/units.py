@@ -10,6 +10,7 @@ through molar masses use CIAAW 2021 and are marked inexact.
 from dataclasses import dataclass
 from decimal import Context, Decimal, InvalidOperation, localcontext
 from fractions import Fraction
+from typing import Any
 
 from chemistry import constants, errors
 from chemistry.unit_tables import (
@@ -22,6 +23,8 @@ from chemistry.unit_tables import (
     Parameter,
     Unit,
 )
+
+Values = Any  # a float or a numpy array
 
 _SIGNIFICANT_DIGITS = 12
 _REMARK_PLAIN_HARDNESS = "mg/L without its basis: taken as CaCO3"
@@ -54,7 +57,7 @@ class _Step:
     remark: str = ""
 
 
-def convert(value, from_unit: str, to_unit: str):
+def convert(value: Values, from_unit: str, to_unit: str) -> Values:
     """``value`` (float or array) in another unit of the same kind.
 
     Kinds: mass per volume, hardness as CaCO3 (mg/L as CaCO3, °dH, °fH, °e, gr/gal, meq/L), amount per
@@ -74,7 +77,7 @@ def convert(value, from_unit: str, to_unit: str):
     return value * float(factor) + float(offset) if offset else value * float(factor)
 
 
-def canonical(value, unit: str, parameter: str, canonical_unit: str | None = None):
+def canonical(value: Values, unit: str, parameter: str, canonical_unit: str | None = None) -> Values:
     """(value, canonical unit) of a reading; float or array.
 
     Canonical: pH '' · mg/L · mg/L as CaCO3 for hardness and alkalinity · °C · NTU · uS/cm · m (but % of
@@ -125,18 +128,16 @@ def basis_remark(unit: str, parameter: str, canonical_unit: str | None = None) -
 def canonical_unit_of(parameter: str) -> str:
     """The canonical unit of a built-in parameter. Raises UnknownParameter."""
     if parameter not in PARAMETERS:
-        raise UnknownParameter(
-            f"parameter {parameter!r} has no canonical unit; known: {', '.join(sorted(PARAMETERS))}"
-        )
+        raise UnknownParameter(f"parameter {parameter!r} has no canonical unit; known: {', '.join(sorted(PARAMETERS))}")
     return PARAMETERS[parameter].unit
 
 
-def volume_l(value, unit: str):
+def volume_l(value: Values, unit: str) -> Values:
     """A volume in litres. Raises UnknownUnit for a unit that isn't a volume."""
     return convert(value, unit, "L")
 
 
-def mass_kg(value, unit: str):
+def mass_kg(value: Values, unit: str) -> Values:
     """A mass in kilograms. Raises UnknownUnit for a unit that isn't a mass."""
     return convert(value, unit, "kg")
 
@@ -146,12 +147,12 @@ def kind_of(unit: str) -> str:
     return _unit(unit).kind
 
 
-def caco3_from_mmol_l(amount_mmol_l, equivalents_per_mol: float):
+def caco3_from_mmol_l(amount_mmol_l: Values, equivalents_per_mol: float) -> Values:
     """mg/L as CaCO3 of an ion or molecule: mmol/L x equivalents per mol x 50.043 (definition)."""
     return amount_mmol_l * equivalents_per_mol * constants.CACO3_MG_MEQ
 
 
-def fahrenheit_from_celsius(temperature_c):
+def fahrenheit_from_celsius(temperature_c: Values) -> Values:
     """°F from °C (definition)."""
     return temperature_c * 1.8 + 32.0
 
@@ -217,12 +218,8 @@ def accepted_for(parameter: str) -> tuple[str, ...]:
     """The accepted spellings that make sense for a built-in parameter."""
     info = PARAMETERS[parameter]
     other = UNITS[info.or_unit].kind if info.or_unit else None
-    fitting = tuple(
-        n for n in ACCEPTED_UNITS if _factor(UNITS[n], info)[0] is not None or UNITS[n].kind == other
-    )
-    return tuple(
-        dict.fromkeys(KEPT_UNITS.get(parameter, ()) + SAME_AS_CANONICAL.get(parameter, ()) + fitting)
-    )
+    fitting = tuple(n for n in ACCEPTED_UNITS if _factor(UNITS[n], info)[0] is not None or UNITS[n].kind == other)
+    return tuple(dict.fromkeys(KEPT_UNITS.get(parameter, ()) + SAME_AS_CANONICAL.get(parameter, ()) + fitting))
 
 
 def _factor(unit: Unit, info: Parameter) -> tuple[Fraction | None, bool]:

@@ -11,6 +11,8 @@ import numpy as np
 
 from chemistry import errors
 
+Values = Any  # a float or a numpy array
+
 OfLevel = Callable[[np.ndarray], np.ndarray]
 
 DISH_RADIUS_RATIO = 1.0  # of the diameter; UG-32
@@ -18,7 +20,7 @@ KNUCKLE_RADIUS_RATIO = 0.06  # of the diameter; UG-32
 _NODES, _WEIGHTS = np.polynomial.legendre.leggauss(48)
 
 
-def segment_m2(radius_m: float, level_m):
+def segment_m2(radius_m: float, level_m: Values) -> Values:
     """Wetted area of a circle filled to a level: r² acos((r-h)/r) - (r-h) √(2rh-h²)."""
     rest = np.clip(radius_m - level_m, -radius_m, radius_m)
     return radius_m**2 * np.arccos(rest / radius_m) - rest * np.sqrt(radius_m**2 - rest**2)
@@ -43,8 +45,7 @@ def horizontal_heads(shape: Mapping[str, Any], radius_m: float) -> OfLevel:
         pieces = _spherical_cap(shape, radius_m)
     else:
         raise errors.ChemistryError(
-            f"unknown heads {heads!r}; known: flat, elliptical_2_1, torispherical, hemispherical, "
-            "spherical_cap"
+            f"unknown heads {heads!r}; known: flat, elliptical_2_1, torispherical, hemispherical, spherical_cap"
         )
     return lambda level: 2.0 * _revolved(pieces, np.asarray(level - radius_m))
 
@@ -71,14 +72,10 @@ def vertical_bottom(shape: Mapping[str, Any], radius_m: float) -> OfLevel:
             )
         )
     if bottom == "conical":
-        return lambda level: (
-            area * (np.minimum(level, depth) ** 3 / (3 * depth**2) + np.maximum(level - depth, 0.0))
-        )
+        return lambda level: area * (np.minimum(level, depth) ** 3 / (3 * depth**2) + np.maximum(level - depth, 0.0))
     if bottom == "concave_conical":
         return lambda level: area * (level - depth / 3 * (1 - (1 - np.minimum(level / depth, 1.0)) ** 3))
-    raise errors.ChemistryError(
-        f"unknown bottom {bottom!r}; known: flat, ellipsoidal, conical, concave_conical"
-    )
+    raise errors.ChemistryError(f"unknown bottom {bottom!r}; known: flat, ellipsoidal, conical, concave_conical")
 
 
 # A piece of a head's profile: where it starts and ends along the axis, its radius there, and where it has a
@@ -98,10 +95,10 @@ def _torispherical(shape: Mapping[str, Any], radius: float) -> list[Piece]:
     centre = depth - crown
     inner = radius - knuckle
 
-    def knuckle_radius(x):
+    def knuckle_radius(x: Values) -> Values:
         return inner + np.sqrt(np.maximum(knuckle**2 - x**2, 0.0))
 
-    def knuckle_place(r):
+    def knuckle_place(r: Values) -> Values:
         return np.sqrt(np.maximum(knuckle**2 - np.maximum(r - inner, 0.0) ** 2, 0.0))
 
     return [(0.0, seam, knuckle_radius, knuckle_place), (seam, depth, *_sphere(crown, centre))]
@@ -115,11 +112,11 @@ def _spherical_cap(shape: Mapping[str, Any], radius: float) -> list[Piece]:
     return [(0.0, depth, *_sphere(sphere, depth - sphere))]
 
 
-def _sphere(sphere_radius: float, centre: float):
-    def radius_at(x):
+def _sphere(sphere_radius: float, centre: float) -> Values:
+    def radius_at(x: Values) -> Values:
         return np.sqrt(np.maximum(sphere_radius**2 - (x - centre) ** 2, 0.0))
 
-    def place_of(r):
+    def place_of(r: Values) -> Values:
         return centre + np.sqrt(np.maximum(sphere_radius**2 - r**2, 0.0))
 
     return radius_at, place_of

@@ -18,6 +18,8 @@ import numpy as np
 
 from chemistry import errors, vessel_heads
 
+Values = Any  # a float or a numpy array
+
 _SOURCE = "the vessel's stated shape"
 _SLACK = 1e-9  # relative; a level read back from a volume may miss the rim by rounding
 _BISECTIONS = 100
@@ -25,7 +27,7 @@ _BISECTIONS = 100
 Shape = Mapping[str, Any]
 
 
-def volume_l(shape: Shape, level_m):
+def volume_l(shape: Shape, level_m: Values) -> Values:
     """Litres in the vessel at a level in m, 0 to :func:`full_level_m`."""
     if shape.get("shape") == "strapping":
         levels, volumes = _strapping(shape)
@@ -36,7 +38,7 @@ def volume_l(shape: Shape, level_m):
     return _like(level_m, 1000.0 * _volume_m3(shape)(level))
 
 
-def level_m(shape: Shape, volume_l):
+def level_m(shape: Shape, volume_l: Values) -> Values:
     """Level in m that holds so many litres, 0 to :func:`full_volume_l`: the inverse of ``volume_l``.
 
     By bisection to rounding; a strapping table is read backwards along its straight lines.
@@ -79,7 +81,7 @@ def full_volume_l(shape: Shape) -> float:
     return float(volume_l(shape, full_level_m(shape)))
 
 
-def dvolume_dlevel_l_per_m(shape: Shape, level_m):
+def dvolume_dlevel_l_per_m(shape: Shape, level_m: Values) -> Values:
     """Litres per metre of level at a level: the liquid's surface x 1000.
 
     The standard uncertainty of a volume is this times that of the level. Central difference over a
@@ -99,13 +101,13 @@ def dvolume_dlevel_l_per_m(shape: Shape, level_m):
     return _like(level_m, 1000.0 * (of_level(high) - of_level(low)) / (high - low))
 
 
-def level_from_pct(shape: Shape, level_pct):
+def level_from_pct(shape: Shape, level_pct: Values) -> Values:
     """Level in m from a reading in % of the height, 0 to 100."""
     pct = _checked("level", level_pct, "%", 0.0, 100.0)
     return _like(level_pct, pct / 100.0 * full_level_m(shape))
 
 
-def net_mass_kg(shape: Shape, gross_kg):
+def net_mass_kg(shape: Shape, gross_kg: Values) -> Values:
     """Product on a scale: gross less the stated ``tare_kg`` (none stated: 0).
 
     Refuses a weight below the tare by more than three of the scale's standard uncertainties
@@ -122,7 +124,7 @@ def net_mass_kg(shape: Shape, gross_kg):
     return _like(gross_kg, gross - tare)
 
 
-def contents_kg(shape: Shape, reading, density_kg_l: float):
+def contents_kg(shape: Shape, reading: Values, density_kg_l: float) -> Values:
     """Product in kg from what the vessel shows: a level in m times density in kg/L, or a gross weight on a
     scale.
     """
@@ -158,9 +160,7 @@ def _volume_m3(shape: Shape) -> Callable[[np.ndarray], np.ndarray]:
         cone = _measure(shape, "cone_height_m")
         _measure(shape, "height_m", zero_allowed=True)
         area = np.pi * radius**2
-        return lambda level: (
-            area * (np.minimum(level, cone) ** 3 / (3 * cone**2) + np.maximum(level - cone, 0.0))
-        )
+        return lambda level: area * (np.minimum(level, cone) ** 3 / (3 * cone**2) + np.maximum(level - cone, 0.0))
     raise _unknown(shape)
 
 
@@ -192,18 +192,18 @@ def _unknown(shape: Shape) -> errors.ChemistryError:
     if kind == "scale":
         return errors.ChemistryError("a scale has no volume: use its net mass")
     return errors.ChemistryError(
-        f"unknown shape {kind!r}; known: vertical_cylinder, horizontal_cylinder, cone_bottom, "
-        "strapping, scale"
+        f"unknown shape {kind!r}; known: vertical_cylinder, horizontal_cylinder, cone_bottom, strapping, scale"
     )
 
 
-def _checked(quantity: str, value, unit: str, low: float, high: float) -> np.ndarray:
+def _checked(quantity: str, value: Values, unit: str, low: float, high: float) -> np.ndarray:
     slack = _SLACK * (1.0 + abs(high)) if np.isfinite(high) else 0.0
     values = np.asarray(value, dtype=float)
     if not np.all((values >= low - slack) & (values <= high + slack)):
         errors.require(quantity, value, unit, low, high, _SOURCE)
-    return np.clip(values, low, high)
+    inside: np.ndarray = np.clip(values, low, high)
+    return inside
 
 
-def _like(given, result: np.ndarray):
+def _like(given: Values, result: np.ndarray) -> Values:
     return float(result) if np.ndim(given) == 0 else result

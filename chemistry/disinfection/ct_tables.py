@@ -189,10 +189,10 @@ def _place(axis: np.ndarray, value: Values, method: str, *, down: bool) -> np.nd
     """Where values fall along an axis, as a fractional index; whole when rounded down or up to a tabulated
     one.
     """
-    fractional = np.interp(np.asarray(value, dtype=float), axis, np.arange(len(axis), dtype=float))
-    if method == "interpolate":
-        return np.asarray(fractional)
-    return np.floor(fractional + _TIE) if down else np.ceil(fractional - _TIE)
+    place: np.ndarray = np.interp(np.asarray(value, dtype=float), axis, np.arange(len(axis), dtype=float))
+    if method != "interpolate":
+        place = np.floor(place + _TIE) if down else np.ceil(place - _TIE)
+    return np.asarray(place)
 
 
 def _table(organism: str, disinfectant: str) -> _Table:
