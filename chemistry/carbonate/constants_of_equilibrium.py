@@ -37,6 +37,7 @@ ANALYTIC: dict[str, tuple[float, float, float, float, float]] = {
     "hocl": (10.0686, -0.0253, -3000.0, 0.0, 0.0),
 }
 # name: (log K at 25 °C, reaction enthalpy in kcal/mol)
+_KW = (293.29227, 0.1360833, -10576.913, -123.73158, 0.0, -6.996455e-5)  # as above, and F T^2
 VAN_T_HOFF: dict[str, tuple[float, float]] = {
     "caso4": (2.25, 1.325),
     "mgso4": (2.37, 4.55),
@@ -60,14 +61,11 @@ def log_k(name, temperature_c):
     temperature_c: 0 to 80 °C; outside raises OutOfRange. Source: the module's heading.
     """
     require_temperature(temperature_c)
+    if name != "kw" and name not in ANALYTIC and name not in VAN_T_HOFF:
+        raise errors.ChemistryError(f"no equilibrium constant named {name!r}")
     kelvin = temperature_c + 273.15
-    if name == "kw":
-        return _log_kw(kelvin, 1.0 / kelvin, _log10(kelvin))
-    if name in ANALYTIC:
-        return _analytic(name, kelvin, 1.0 / kelvin, _log10(kelvin))
-    if name in VAN_T_HOFF:
-        return _van_t_hoff(name, 1.0 / kelvin)
-    raise errors.ChemistryError(f"no equilibrium constant named {name!r}")
+    a, b, c, d, e, f = _coefficients(name)
+    return a + b * kelvin + c / kelvin + d * _log10(kelvin) + e / kelvin**2 + f * kelvin**2
 
 
 class Constants(NamedTuple):
@@ -96,30 +94,19 @@ class Constants(NamedTuple):
     b: object
 
 
-_BY_REACTION = (
-    "k1", "k2", "cahco3", "caco3_aq", "caso4", "caoh", "mghco3", "mgco3_aq", "mgso4", "mgoh", "nahco3", "naco3",
-    "naso4", "kso4", "hso4", "hocl", "calcite", "brucite",
-)  # fmt: skip
-
-
 def at(temperature_c):
     """All :class:`Constants` at a temperature, 0 to 80 °C (not checked here: callers have checked the water)."""
     kelvin = temperature_c + 273.15
     inverse = 1.0 / kelvin
-    log_t = _log10(kelvin)
-    exp = np.exp if isinstance(kelvin, np.ndarray) else math.exp
-    ln10 = activity.LN10
-    values = {"kw": exp(ln10 * _log_kw(kelvin, inverse, log_t))}
-    for name in _BY_REACTION:
-        if name in ANALYTIC:
-            values[name] = exp(ln10 * _analytic(name, kelvin, inverse, log_t))
-        else:
-            values[name] = exp(ln10 * _van_t_hoff(name, inverse))
-    return Constants(
-        a_natural=ln10 * activity.debye_huckel_a(temperature_c),
-        b=activity.debye_huckel_b(temperature_c),
-        **values,
-    )
+    a_natural = activity.LN10 * activity.debye_huckel_a(temperature_c)
+    b = activity.debye_huckel_b(temperature_c)
+    if isinstance(kelvin, np.ndarray):
+        basis = np.stack((np.ones_like(kelvin), kelvin, inverse, np.log10(kelvin), inverse**2, kelvin**2))
+        values = np.exp(np.tensordot(_NATURAL_TABLE, basis, axes=1))
+    else:
+        basis = (1.0, kelvin, inverse, math.log10(kelvin), inverse * inverse, kelvin * kelvin)
+        values = np.exp(_NATURAL_TABLE @ basis).tolist()
+    return Constants(*values, a_natural, b)
 
 
 def require_temperature(temperature_c):
@@ -131,19 +118,15 @@ def _log10(kelvin):
     return np.log10(kelvin) if isinstance(kelvin, np.ndarray) else math.log10(kelvin)
 
 
-def _log_kw(kelvin, inverse, log_t):
-    return 293.29227 + 0.1360833 * kelvin - 10576.913 * inverse - 123.73158 * log_t - 6.996455e-5 * kelvin * kelvin
-
-
-def _analytic(name, kelvin, inverse, log_t):
-    a, b, c, d, e = ANALYTIC[name]
-    if d == 0.0:
-        return a + b * kelvin + c * inverse
-    if e == 0.0:
-        return a + b * kelvin + c * inverse + d * log_t
-    return a + b * kelvin + inverse * (c + e * inverse) + d * log_t
-
-
-def _van_t_hoff(name, inverse):
+def _coefficients(name):
+    """A to F of one reaction; van 't Hoff is of the same form with A and C alone."""
+    if name == "kw":
+        return _KW
+    if name in ANALYTIC:
+        return (*ANALYTIC[name], 0.0)
     at_25, enthalpy_kcal = VAN_T_HOFF[name]
-    return at_25 - enthalpy_kcal / (activity.LN10 * _GAS_KCAL) * (inverse - 1.0 / 298.15)
+    slope = enthalpy_kcal / (activity.LN10 * _GAS_KCAL)
+    return (at_25 + slope / 298.15, 0.0, -slope, 0.0, 0.0, 0.0)
+
+
+_NATURAL_TABLE = activity.LN10 * np.array([_coefficients(name) for name in Constants._fields[:-2]])
