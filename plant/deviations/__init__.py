@@ -1,0 +1,1 @@
+"""Limits crossed, who was told, what was done."""
