@@ -98,11 +98,6 @@ class At:
 
     @property
     def works_name(self) -> str:
-        """The name of the works, for the head of a page."""
-        return self.stated.works(self.now).name
-
-    @property
-    def works_name(self) -> str:
         """Its name as stated; the code before anything is stated."""
         try:
             return self.stated.works(self.now).name

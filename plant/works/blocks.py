@@ -30,8 +30,8 @@ def check(kind: str, subject: str, value: dict[str, Any]) -> dict[str, Any]:
     problems = _subject_problems(kind, subject)
     keys = list(table.keys)
     chooser = {"vessel": "shape", "limit": "kind"}.get(kind)
-    if chooser and value.get(chooser) in table.extra:
-        keys += table.extra[value[chooser]]
+    if chooser and isinstance(value.get(chooser), str):
+        keys += table.extra.get(value[chooser], ())
     clean = reading.read_keys(keys, value, problems)
     if chooser and chooser in clean:
         reading.refuse_unknown(value, keys, problems, f"{chooser} {clean[chooser]}")

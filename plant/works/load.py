@@ -260,7 +260,9 @@ def _compare(
         changes.append(change)
         names.append(block.name)
         before.append(stated.value(change.kind, change.subject, change.effective_from))
-    # What holds already is in the picture; only what changes is checked against it.
+    if problems:
+        # A block left out for its own fault would make faults of all that refer to it.
+        raise FileRefused(problems)
     try:
         changes = actions.checked(stated, changes)
     except actions.Refused as refused:
