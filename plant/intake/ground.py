@@ -172,7 +172,7 @@ class Ground:
     def _possible(self, reading: models.Reading, known: parameters.Parameter) -> bool:
         value = reading.value
         assert value is not None
-        if not known.possible(value):
+        if reading.unit != "%" and not known.possible(value):
             return False
         if known.name in ("totaliser", "totaliser_reset"):
             digits = (self.value("meter", reading.site, reading.taken_at) or {}).get("digits")
