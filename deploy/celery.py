@@ -1,6 +1,6 @@
 """The Celery application for workers and beat: `celery --app deploy.celery:app worker`.
 
-Only with REDIS_URL. Tasks live in the apps as `shared_task`; the schedule is settings.CELERY_BEAT_SCHEDULE.
+Only with REDIS_URL. Its tasks are those of deploy/tasks.py, its schedule is settings.CELERY_BEAT_SCHEDULE.
 """
 
 import os
@@ -9,6 +9,5 @@ from celery import Celery
 
 os.environ.setdefault("DJANGO_SETTINGS_MODULE", "deploy.settings.production")
 
-app = Celery("weirbook")
+app = Celery("weirbook", include=["deploy.tasks"])
 app.config_from_object("django.conf:settings", namespace="CELERY")
-app.autodiscover_tasks()

@@ -227,6 +227,8 @@ def welcome(installation: Installation, port: int) -> str:
     lines = ["", f"Weirbook is at http://127.0.0.1:{port}/", ""]
     if people.exists():
         lines += [people.read_text().strip(), ""]
+    if installation.data.name == "own":
+        lines += ["A works is described in a file and brought in with: load_works FILE.toml", ""]
     return "\n".join(
         [
             *lines,

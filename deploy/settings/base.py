@@ -221,6 +221,11 @@ CELERY_BROKER_TRANSPORT_OPTIONS = {
     "socket_connect_timeout": 2,
     "socket_timeout": 5,
 }
+CELERY_BEAT_SCHEDULE = {
+    # A message that found no worker in time is worthless: the next one does the same.
+    "work": {"task": "weirbook.work", "schedule": 5.0, "options": {"expires": 5}},
+    "keep-schedule": {"task": "weirbook.keep_schedule", "schedule": 60.0, "options": {"expires": 60}},
+}
 CELERY_TASK_PUBLISH_RETRY_POLICY = {
     "max_retries": 1,
     "interval_start": 0,
