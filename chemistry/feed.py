@@ -125,6 +125,16 @@ def days_of_supply(usable_active_kg: Values, active_kg_per_day: Values) -> Value
     return float(days) if np.ndim(usable_active_kg) == 0 and np.ndim(active_kg_per_day) == 0 else days
 
 
+def stock_to_hold_kg(daily_use_kg: Values, least_days: Values, shipping_days: Values, *, shipping_factor: float) -> Values:
+    """Stock to hold: daily use x (least days + factor x shipping days).
+
+    DAVIS-2010 table 5-1 (opened): 30 d and factor 2 for critical chemicals, 10 d and 1.5 for those that may
+    be interrupted.
+    """
+    errors.require("daily use", daily_use_kg, "kg/d", 0.0, np.inf, _SOURCE)
+    return daily_use_kg * (least_days + shipping_factor * shipping_days)
+
+
 def blend(amount_a: Values, strength_a: Values, amount_b: Values, strength_b: Values) -> Values:
     """Strength of two streams or batches put together, weighted by amount (one unit for both)."""
     _positive("total", amount_a + amount_b, "")

@@ -130,6 +130,14 @@ def observed_demand_mg_l(dose_mg_l: Values, residual_mg_l: Values) -> Values:
     return demand
 
 
+def expected_residual_mg_l(dose_mg_l: Values, demand_mg_l: Values) -> Values:
+    """Residual to expect = dose - demand, 0 where the demand takes all of it."""
+    errors.require("dose", dose_mg_l, "mg/L", 0.0, 1000.0, _SOURCE)
+    errors.require("demand", demand_mg_l, "mg/L", 0.0, 1000.0, _SOURCE)
+    left = dose_mg_l - demand_mg_l
+    return left * (left > 0)
+
+
 def flow_weighted_demand_mg_l(doses_mg_l: Values, residuals_mg_l: Values, volumes_ml: Values) -> Values:
     """Demand over several days, each day weighted by its volume (ML); days given as equal-length
     sequences.

@@ -33,8 +33,7 @@ AVAILABLE_CL2_MOL: dict[str, float] = {
     "Ca(OCl)2": 2,
     "LiOCl": 1,
 }
-# Equivalents of acid taken (+) or given (-) by one mole, for doses stated as CaCO3 (chemistry.md table of
-# stoichiometry).
+# Equivalents of acid taken (+) or given (-) by one mole, for doses stated as CaCO3 (definition).
 ALKALINITY_EQ_MOL: dict[str, float] = {
     "CaCO3": 2,
     "Ca(OH)2": 2,
