@@ -1,11 +1,15 @@
 """What the chemistry says when it will not answer.
 
-A value outside the range a formula was made for raises :class:`OutOfRange`; a question with no answer (a pH no dose of
-that chemical reaches, an alkalinity that cannot stand at that pH) raises :class:`ChemistryError`. Nothing here returns
-a number in place of an answer.
+A value outside the range a formula was made for raises :class:`OutOfRange`; a question with no answer (a pH
+no dose of that chemical reaches, an alkalinity that cannot stand at that pH) raises :class:`ChemistryError`.
+Nothing here returns a number in place of an answer.
 """
 
+from typing import Any
+
 import numpy as np
+
+Values = Any  # a float or a numpy array
 
 
 class ChemistryError(ValueError):
@@ -15,10 +19,11 @@ class ChemistryError(ValueError):
 class OutOfRange(ChemistryError):
     """A value lies outside the range the formula holds for.
 
-    Carries ``quantity``, ``value``, ``unit``, ``low``, ``high`` and ``source`` so that a screen can phrase it anew.
+    Carries ``quantity``, ``value``, ``unit``, ``low``, ``high`` and ``source`` so that a screen can phrase it
+    anew.
     """
 
-    def __init__(self, quantity, value, unit, low, high, source):
+    def __init__(self, quantity: str, value: Values, unit: str, low: float, high: float, source: str) -> None:
         self.quantity = quantity
         self.value = value
         self.unit = unit
@@ -26,12 +31,10 @@ class OutOfRange(ChemistryError):
         self.high = high
         self.source = source
         unit_text = f" {unit}" if unit else ""
-        super().__init__(
-            f"{quantity} {value:g}{unit_text} is outside {low:g} to {high:g}{unit_text} ({source})"
-        )
+        super().__init__(f"{quantity} {value:g}{unit_text} is outside {low:g} to {high:g}{unit_text} ({source})")
 
 
-def require(quantity, value, unit, low, high, source):
+def require(quantity: str, value: Values, unit: str, low: float, high: float, source: str) -> None:
     """Raise :class:`OutOfRange` unless every element of ``value`` is a number within ``low`` to ``high``.
 
     Not-a-number fails as well: a missing reading must never turn into a dose.

@@ -1,14 +1,17 @@
 """Keeping iron and manganese in solution with polyphosphate or silicate: dose, limits, reversion.
 
-No constant here is a law of nature: every one is a setting with a published or customary default. Sequestration does not
-remove the metals, and phosphate or silica added is limited by product certificates and the regulator.
+No constant here is a law of nature: every one is a setting with a published or customary default.
+Sequestration does not remove the metals, and phosphate or silica added is limited by product certificates and
+the regulator.
 """
 
 from dataclasses import dataclass
 
 from chemistry import constants, elementwise, errors
+from chemistry.constants import Values
 
-# Wis. Adm. Code NR 811.56 (key WIS-NR-811, opened): polyphosphate where Fe + Mn is at most 1.0 mg/L, silicate at most 2.
+# Wis. Adm. Code NR 811.56 (key WIS-NR-811, opened): polyphosphate where Fe + Mn is at most 1.0 mg/L, silicate
+# at most 2.
 POLYPHOSPHATE_HIGHEST_FE_MN_MG_L = 1.0
 SILICATE_HIGHEST_FE_MN_MG_L = 2.0
 # Recommended Standards for Water Works (key TEN-STATES, from memory).
@@ -28,35 +31,37 @@ _LIMIT = "limit of this model"
 
 @dataclass(frozen=True, slots=True)
 class SequestrantDose:
-    """Product dose in mg/L, the phosphate it adds, and which published limits it passes (true means passed over)."""
+    """Product dose in mg/L, the phosphate it adds, and which published limits it passes (true means passed
+    over)."""
 
-    product_mg_l: object
-    phosphate_added_mg_l_po4: object
-    total_phosphate_mg_l_po4: object
-    metals_mg_l: object
-    too_much_metal: object
-    too_much_phosphate: object
+    product_mg_l: Values
+    phosphate_added_mg_l_po4: Values
+    total_phosphate_mg_l_po4: Values
+    metals_mg_l: Values
+    too_much_metal: Values
+    too_much_phosphate: Values
 
 
 def polyphosphate_dose(
-    iron_mg_l,
-    manganese_mg_l,
+    iron_mg_l: Values,
+    manganese_mg_l: Values,
     *,
-    mg_per_mg_iron=USUAL_PRODUCT_PER_METAL,
-    mg_per_mg_manganese=USUAL_PRODUCT_PER_METAL,
-    base_mg_l=0.0,
-    phosphate_share_po4=0.8,
-    raw_phosphate_mg_l_po4=0.0,
-    highest_metals_mg_l=POLYPHOSPHATE_HIGHEST_FE_MN_MG_L,
-    highest_phosphate_mg_l_po4=HIGHEST_TOTAL_PHOSPHATE_MG_L_PO4,
-):
+    mg_per_mg_iron: Values = USUAL_PRODUCT_PER_METAL,
+    mg_per_mg_manganese: Values = USUAL_PRODUCT_PER_METAL,
+    base_mg_l: Values = 0.0,
+    phosphate_share_po4: Values = 0.8,
+    raw_phosphate_mg_l_po4: Values = 0.0,
+    highest_metals_mg_l: Values = POLYPHOSPHATE_HIGHEST_FE_MN_MG_L,
+    highest_phosphate_mg_l_po4: Values = HIGHEST_TOTAL_PHOSPHATE_MG_L_PO4,
+) -> SequestrantDose:
     """:class:`SequestrantDose` of a polyphosphate product: base + iron x ratio + manganese x ratio.
 
-    iron_mg_l 0 to 10 and manganese_mg_l 0 to 5 (dissolved, before any oxidant or aeration: afterwards it does not work);
-    ratios 0 to 20 mg product per mg (2 to 5: common practice, no source); base_mg_l 0 to 20; phosphate_share_po4 0 to 1,
-    mg PO4 per mg product, from the product's certificate. Outside raises OutOfRange. Where a limit is passed the dose
-    still stands, with its flag: too much metal means remove it instead. Manganese is held less well than iron.
-    Source: limits WIS-NR-811 and TEN-STATES; ratios common practice.
+    iron_mg_l 0 to 10 and manganese_mg_l 0 to 5 (dissolved, before any oxidant or aeration: afterwards it does
+    not work); ratios 0 to 20 mg product per mg (2 to 5: common practice, no source); base_mg_l 0 to 20;
+    phosphate_share_po4 0 to 1, mg PO4 per mg product, from the product's certificate. Outside raises
+    OutOfRange. Where a limit is passed the dose still stands, with its flag: too much metal means remove it
+    instead. Manganese is held less well than iron. Source: limits WIS-NR-811 and TEN-STATES; ratios common
+    practice.
     """
     source = "limit of this model"
     errors.require("iron", iron_mg_l, "mg/L", 0.0, 10.0, source)
@@ -81,11 +86,16 @@ def polyphosphate_dose(
 
 
 def highest_product_mg_l(
-    *, phosphate_share_po4, raw_phosphate_mg_l_po4=0.0, highest_phosphate_mg_l_po4=HIGHEST_TOTAL_PHOSPHATE_MG_L_PO4
-):
-    """Largest product dose, mg/L, that keeps total phosphate within its limit; zero where the raw water passes it.
+    *,
+    phosphate_share_po4: Values,
+    raw_phosphate_mg_l_po4: Values = 0.0,
+    highest_phosphate_mg_l_po4: Values = HIGHEST_TOTAL_PHOSPHATE_MG_L_PO4,
+) -> Values:
+    """Largest product dose, mg/L, that keeps total phosphate within its limit; zero where the raw water
+    passes it.
 
-    phosphate_share_po4: above 0 to 1 mg/mg; raw phosphate 0 to 50 mg/L PO4. Source: key TEN-STATES (from memory).
+    phosphate_share_po4: above 0 to 1 mg/mg; raw phosphate 0 to 50 mg/L PO4. Source: key TEN-STATES (from
+    memory).
     """
     errors.require("phosphate share", phosphate_share_po4, "mg/mg", 0.01, 1.0, _LIMIT)
     errors.require("phosphate", raw_phosphate_mg_l_po4, "mg/L PO4", 0.0, 50.0, _LIMIT)
@@ -96,26 +106,27 @@ def highest_product_mg_l(
 class SilicateDose:
     """Silica added and in all, mg/L SiO2, and which published limits are passed (true means passed over)."""
 
-    silica_added_mg_l_sio2: object
-    silica_total_mg_l_sio2: object
-    too_much_metal: object
-    too_much_silica: object
+    silica_added_mg_l_sio2: Values
+    silica_total_mg_l_sio2: Values
+    too_much_metal: Values
+    too_much_silica: Values
 
 
-def silicate_check(silica_added_mg_l_sio2, raw_silica_mg_l_sio2, iron_mg_l, manganese_mg_l):
-    """:class:`SilicateDose`: a silicate dose against Fe + Mn at most 2 mg/L, added at most 20, total at most 60 mg/L SiO2.
+def silicate_check(
+    silica_added_mg_l_sio2: Values, raw_silica_mg_l_sio2: Values, iron_mg_l: Values, manganese_mg_l: Values
+) -> SilicateDose:
+    """:class:`SilicateDose`: a silicate dose against Fe + Mn at most 2 mg/L, added at most 20, total at most
+    60 mg/L SiO2.
 
-    Silica 0 to 200 mg/L, iron 0 to 10, manganese 0 to 5; outside raises OutOfRange. It suits groundwater that has not
-    met air. Source: WIS-NR-811 (metals), TEN-STATES (silica, from memory).
+    Silica 0 to 200 mg/L, iron 0 to 10, manganese 0 to 5; outside raises OutOfRange. It suits groundwater that
+    has not met air. Source: WIS-NR-811 (metals), TEN-STATES (silica, from memory).
     """
     errors.require("silica added", silica_added_mg_l_sio2, "mg/L SiO2", 0.0, 200.0, _LIMIT)
     errors.require("raw silica", raw_silica_mg_l_sio2, "mg/L SiO2", 0.0, 200.0, _LIMIT)
     errors.require("iron", iron_mg_l, "mg/L", 0.0, 10.0, _LIMIT)
     errors.require("manganese", manganese_mg_l, "mg/L", 0.0, 5.0, _LIMIT)
     total = silica_added_mg_l_sio2 + raw_silica_mg_l_sio2
-    over = elementwise.most(
-        silica_added_mg_l_sio2 - HIGHEST_SILICA_ADDED_MG_L_SIO2, total - HIGHEST_SILICA_TOTAL_MG_L_SIO2
-    )
+    over = elementwise.most(silica_added_mg_l_sio2 - HIGHEST_SILICA_ADDED_MG_L_SIO2, total - HIGHEST_SILICA_TOTAL_MG_L_SIO2)
     return SilicateDose(
         silica_added_mg_l_sio2=silica_added_mg_l_sio2,
         silica_total_mg_l_sio2=total,
@@ -128,23 +139,25 @@ def silicate_check(silica_added_mg_l_sio2, raw_silica_mg_l_sio2, iron_mg_l, mang
 class Reversion:
     """Estimate of polyphosphate turned to orthophosphate; ``is_estimate`` is always true."""
 
-    polyphosphate_left_share: object
-    half_life_d: object
+    polyphosphate_left_share: Values
+    half_life_d: Values
     is_estimate: bool = True
 
 
 def reversion(
-    time_d,
-    temperature_c,
+    time_d: Values,
+    temperature_c: Values,
     *,
-    half_life_d_20c=USUAL_HALF_LIFE_D_20C,
-    activation_kj_mol=USUAL_ACTIVATION_KJ_MOL,
-):
-    """:class:`Reversion` after ``time_d`` days at ``temperature_c``, first order: an estimate, the constants are settings.
+    half_life_d_20c: Values = USUAL_HALF_LIFE_D_20C,
+    activation_kj_mol: Values = USUAL_ACTIVATION_KJ_MOL,
+) -> Reversion:
+    """:class:`Reversion` after ``time_d`` days at ``temperature_c``, first order: an estimate, the constants
+    are settings.
 
-    time_d: 0 to 365; temperature_c: 0 to 60; half_life_d_20c: 0.1 to 3,650 (default 40 d, from memory: pH, calcium,
-    metals and microbes move it tenfold); activation_kj_mol: 40 to 160 (default 105, from memory). Outside raises
-    OutOfRange. What reverts no longer sequesters: measure ortho and total phosphate in the network to set the half-life.
+    time_d: 0 to 365; temperature_c: 0 to 60; half_life_d_20c: 0.1 to 3,650 (default 40 d, from memory: pH,
+    calcium, metals and microbes move it tenfold); activation_kj_mol: 40 to 160 (default 105, from memory).
+    Outside raises OutOfRange. What reverts no longer sequesters: measure ortho and total phosphate in the
+    network to set the half-life.
     """
     errors.require("time", time_d, "d", 0.0, 365.0, _LIMIT)
     errors.require("temperature", temperature_c, "°C", 0.0, 60.0, _LIMIT)
@@ -156,13 +169,14 @@ def reversion(
     return Reversion(polyphosphate_left_share=0.5 ** (time_d / half_life), half_life_d=half_life)
 
 
-def phosphate_from_phosphorus_mg_l_po4(phosphorus_mg_l):
-    """Phosphate, mg/L as PO4, from phosphorus, mg/L as P (0 to 1,000): 3.066 P. Source: SM-4500-P, by definition."""
+def phosphate_from_phosphorus_mg_l_po4(phosphorus_mg_l: Values) -> Values:
+    """Phosphate, mg/L as PO4, from phosphorus, mg/L as P (0 to 1,000): 3.066 P. Source: SM-4500-P, by
+    definition."""
     errors.require("phosphorus", phosphorus_mg_l, "mg/L", 0.0, 1000.0, _LIMIT)
     return phosphorus_mg_l * (constants.molar_mass("PO4") / constants.molar_mass("P"))
 
 
-def silica_from_silicon_mg_l_sio2(silicon_mg_l):
+def silica_from_silicon_mg_l_sio2(silicon_mg_l: Values) -> Values:
     """Silica, mg/L as SiO2, from silicon, mg/L as Si (0 to 1,000): 2.139 Si. Source: definition."""
     errors.require("silicon", silicon_mg_l, "mg/L", 0.0, 1000.0, _LIMIT)
     return silicon_mg_l * (constants.molar_mass("SiO2") / constants.molar_mass("Si"))

@@ -5,18 +5,19 @@ import math
 import numpy as np
 
 from chemistry import errors
+from chemistry.constants import Values
 
 _KELVIN = 273.15
 
 
-def _functions(*values):
+def _functions(*values: Values) -> Values:
     """Return the function namespace for ``values`` and the values as floats or float arrays."""
     if all(isinstance(v, (float, int)) for v in values):
         return math, [float(v) for v in values]
     return np, [np.asarray(v, dtype=float) for v in values]
 
 
-def density_kg_m3(temperature_c):
+def density_kg_m3(temperature_c: Values) -> Values:
     """Density of pure water at 1 atm, kg/m3.
 
     temperature_c: 0 to 100 °C; outside raises OutOfRange.
@@ -24,16 +25,15 @@ def density_kg_m3(temperature_c):
     """
     errors.require("temperature", temperature_c, "°C", 0.0, 100.0, "Kell 1975, eq. 16")
     _, (t,) = _functions(temperature_c)
-    above = 999.83952 + t * (16.945176 + t * (-7.9870401e-3 + t * (
-        -46.170461e-6 + t * (105.56302e-9 - t * 280.54253e-12))))
+    above = 999.83952 + t * (16.945176 + t * (-7.9870401e-3 + t * (-46.170461e-6 + t * (105.56302e-9 - t * 280.54253e-12))))
     return above / (1.0 + 16.879850e-3 * t)
 
 
-def pkw(temperature_c):
+def pkw(temperature_c: Values) -> Values:
     """pKw, the negative logarithm of the ionic product of water (molal, infinite dilution) at 1 atm.
 
-    temperature_c: 0 to 100 °C; outside raises OutOfRange.
-    Source: IAPWS R11-07 after Bandura and Lvov 2006 (key ``IAPWS-R11-07``), with Kell's density; 13.995 at 25 °C.
+    temperature_c: 0 to 100 °C; outside raises OutOfRange. Source: IAPWS R11-07 after Bandura and Lvov 2006
+    (key ``IAPWS-R11-07``), with Kell's density; 13.995 at 25 °C.
     """
     errors.require("temperature", temperature_c, "°C", 0.0, 100.0, "IAPWS R11-07")
     xp, (t,) = _functions(temperature_c)
@@ -45,11 +45,11 @@ def pkw(temperature_c):
     return -12.0 * hydration + gas + 2.0 * math.log10(18.015268 / 1000.0)
 
 
-def pkw_harned_hamer(temperature_c):
+def pkw_harned_hamer(temperature_c: Values) -> Values:
     """pKw by the three-term form 4471/T + 0.01706 T - 6.0875, T in kelvin.
 
-    temperature_c: 0 to 60 °C; outside raises OutOfRange.
-    Source: Harned and Hamer form as used with the Langelier index (key ``HARNED-HAMER``); coefficients from memory.
+    temperature_c: 0 to 60 °C; outside raises OutOfRange. Source: Harned and Hamer form as used with the
+    Langelier index (key ``HARNED-HAMER``); coefficients from memory.
     """
     errors.require("temperature", temperature_c, "°C", 0.0, 60.0, "Harned and Hamer form")
     _, (t,) = _functions(temperature_c)
@@ -57,7 +57,7 @@ def pkw_harned_hamer(temperature_c):
     return 4471.0 / kelvin + 0.01706 * kelvin - 6.0875
 
 
-def relative_permittivity(temperature_c):
+def relative_permittivity(temperature_c: Values) -> Values:
     """Static relative permittivity (dielectric constant) of water at 1 atm.
 
     temperature_c: 0 to 100 °C; outside raises OutOfRange.

@@ -1,6 +1,7 @@
 """Equilibrium constants between concentrations at one ionic strength, by either activity model."""
 
 from chemistry import activity as activities
+from chemistry.constants import Values
 
 _LN10_TENTH = activities.LN10 / 10.0  # neutral species: log10 gamma = 0.1 I, PHREEQC's default
 
@@ -8,13 +9,30 @@ _LN10_TENTH = activities.LN10 / 10.0  # neutral species: log10 gamma = 0.1 I, PH
 class Apparent:
     """Concentration constants at one ionic strength; each is named after the species it makes."""
 
-    __slots__ = (
-        "h", "oh", "hco3", "co2", "cahco3", "caco3", "caso4", "caoh", "mghco3", "mgco3", "mgso4", "mgoh",
-        "nahco3", "naco3", "naso4", "kso4", "hso4", "ocl", "calcite", "brucite", "gammas",
-    )  # fmt: skip
+    brucite: Values
+    caco3: Values
+    cahco3: Values
+    calcite: Values
+    caoh: Values
+    caso4: Values
+    co2: Values
+    gammas: Values
+    h: Values
+    hco3: Values
+    hso4: Values
+    kso4: Values
+    mgco3: Values
+    mghco3: Values
+    mgoh: Values
+    mgso4: Values
+    naco3: Values
+    nahco3: Values
+    naso4: Values
+    ocl: Values
+    oh: Values
 
 
-def _apparent_davies(xp, k, ionic):
+def _apparent_davies(xp: Values, k: Values, ionic: Values) -> Apparent:
     root = xp.sqrt(ionic)
     neutral = xp.exp(_LN10_TENTH * ionic)
     one = xp.exp(-k.a_natural * (root / (1.0 + root) - 0.3 * ionic))
@@ -48,7 +66,7 @@ def _apparent_davies(xp, k, ionic):
     return out
 
 
-def _apparent_phreeqc(xp, k, ionic):
+def _apparent_phreeqc(xp: Values, k: Values, ionic: Values) -> Apparent:
     root = xp.sqrt(ionic)
     neutral = xp.exp(_LN10_TENTH * ionic)
     ar = -k.a_natural * root
@@ -56,7 +74,7 @@ def _apparent_phreeqc(xp, k, ionic):
     bi = activities.LN10 * ionic
     exp = xp.exp
 
-    def gamma(name, charge_squared):
+    def gamma(name: str, charge_squared: Values) -> Values:
         size, b = activities.ION_SIZE_AND_B[name]
         exponent = charge_squared * ar / (1.0 + size * br)
         return exp(exponent + b * bi if b else exponent)

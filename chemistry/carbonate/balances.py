@@ -1,11 +1,13 @@
 """The sums over all species at given h (activity of H+), c (free CO3) and s (free SO4), and their slopes.
 
-Free metals follow in closed form from h, c and s, or from the solubility product where the solid is present. Slopes are
-taken with respect to u = ln h and v = ln c, at constant s and ionic strength. Definitions of alkalinity and the species:
-Stumm and Morgan, Aquatic Chemistry (key STUMM-MORGAN, from memory).
+Free metals follow in closed form from h, c and s, or from the solubility product where the solid is present.
+Slopes are taken with respect to u = ln h and v = ln c, at constant s and ionic strength. Definitions of
+alkalinity and the species: Stumm and Morgan, Aquatic Chemistry (key STUMM-MORGAN, from memory).
 """
 
 from dataclasses import dataclass
+
+from chemistry.constants import Values
 
 ABSENT = 0.0
 
@@ -14,56 +16,76 @@ ABSENT = 0.0
 class Solved:
     """Concentrations in mol/L after :func:`solve`; ``h`` is the activity of H+."""
 
-    h: object
-    ionic_strength: object
-    carbon: object
-    alkalinity: object
-    calcium: object  # total dissolved
-    magnesium: object
-    hydrogen: object
-    hydroxide: object
-    hco3: object
-    co3: object
-    co2: object
-    ca: object
-    cahco3: object
-    caco3: object
-    caso4: object
-    caoh: object
-    mg: object
-    mghco3: object
-    mgco3: object
-    mgso4: object
-    mgoh: object
-    na: object
-    nahco3: object
-    naco3: object
-    naso4: object
-    k: object
-    kso4: object
-    so4: object
-    hso4: object
-    hypochlorite: object
-    ion_product_calcite: object  # {Ca}{CO3} / Ksp
-    ion_product_brucite: object  # {Mg}/{H}^2 / K
-    gammas: object
+    h: Values
+    ionic_strength: Values
+    carbon: Values
+    alkalinity: Values
+    calcium: Values  # total dissolved
+    magnesium: Values
+    hydrogen: Values
+    hydroxide: Values
+    hco3: Values
+    co3: Values
+    co2: Values
+    ca: Values
+    cahco3: Values
+    caco3: Values
+    caso4: Values
+    caoh: Values
+    mg: Values
+    mghco3: Values
+    mgco3: Values
+    mgso4: Values
+    mgoh: Values
+    na: Values
+    nahco3: Values
+    naco3: Values
+    naso4: Values
+    k: Values
+    kso4: Values
+    so4: Values
+    hso4: Values
+    hypochlorite: Values
+    ion_product_calcite: Values  # {Ca}{CO3} / Ksp
+    ion_product_brucite: Values  # {Mg}/{H}^2 / K
+    gammas: Values
 
 
 class State:
     """Sums and slopes at one (h, c, s); made by :func:`evaluate`."""
 
-    __slots__ = (
-        "alkalinity", "alkalinity_u", "alkalinity_v", "c", "ca", "ca_denominator", "calcium", "carbon", "carbon_u",
-        "carbon_v", "co2", "h", "hco3", "hso4", "hydrogen", "ionic_u", "ionic_v", "magnesium", "mg", "mg_denominator",
-        "monovalent", "na", "ocl", "oh", "s",
-    )  # fmt: skip
+    alkalinity: Values
+    alkalinity_u: Values
+    alkalinity_v: Values
+    c: Values
+    ca: Values
+    ca_denominator: Values
+    calcium: Values
+    carbon: Values
+    carbon_u: Values
+    carbon_v: Values
+    co2: Values
+    h: Values
+    hco3: Values
+    hso4: Values
+    hydrogen: Values
+    ionic_u: Values
+    ionic_v: Values
+    magnesium: Values
+    mg: Values
+    mg_denominator: Values
+    monovalent: Values
+    na: Values
+    ocl: Values
+    oh: Values
+    s: Values
 
 
-def evaluate(ap, t, h, c, s, calcite, brucite, with_u):
+def evaluate(ap: Values, t: Values, h: Values, c: Values, s: Values, calcite: bool, brucite: bool, with_u: bool) -> State:
     """:class:`State` for apparent constants ``ap`` and totals ``t``; slopes in u only ``with_u``.
 
-    With a solid the balances are those the solid leaves unchanged: carbon less its calcium, alkalinity less twice its
-    metal.
+    With a solid the balances are those the solid leaves unchanged: carbon less its calcium, alkalinity less
+    twice its metal.
     """
     st = State()
     hc = h * c
@@ -200,7 +222,7 @@ def evaluate(ap, t, h, c, s, calcite, brucite, with_u):
     return st
 
 
-def renewed(ap, t, st):
+def renewed(ap: Values, t: Values, st: Values) -> Values:
     """Free sulfate and ionic strength that follow from a :class:`State`."""
     bound = 1.0 + ap.caso4 * st.ca + ap.mgso4 * st.mg + ap.naso4 * st.na + ap.hso4 * st.h
     if not (type(t.potassium) is float and t.potassium == ABSENT):
@@ -210,7 +232,7 @@ def renewed(ap, t, st):
     return s, 0.5 * (st.monovalent + spectators) + 2.0 * (st.c + s + st.ca + st.mg)
 
 
-def solved(ap, t, st, ionic, calcite, brucite):
+def solved(ap: Values, t: Values, st: Values, ionic: Values, calcite: bool, brucite: bool) -> Solved:
     """:class:`Solved` from the last :class:`State`: every species by itself."""
     h, c, s, ca, mg, na = st.h, st.c, st.s, st.ca, st.mg, st.na
     hc = h * c

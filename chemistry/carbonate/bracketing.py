@@ -1,4 +1,5 @@
-"""The slow, sure way to an equilibrium: bracket the pH, with the carbonate bracketed inside, one water at a time."""
+"""The slow, sure way to an equilibrium: bracket the pH, with the carbonate bracketed inside, one water at a
+time."""
 
 import math
 
@@ -6,12 +7,13 @@ import numpy as np
 
 from chemistry import errors
 from chemistry.carbonate import balances
+from chemistry.constants import Values
 
 LOWEST_PH, HIGHEST_PH = 3.0, 13.0
 _SOURCE = "limit of this model"
 
 
-def require_ph(h):
+def require_ph(h: Values) -> None:
     """Raise OutOfRange where the activity ``h`` of H+ is outside pH 3 to 13."""
     if type(h) is float:
         if 0.999e-13 <= h <= 1.001e-3:
@@ -23,15 +25,16 @@ def require_ph(h):
     errors.require("pH", float(ph) if ph.ndim == 0 else ph, "", LOWEST_PH, HIGHEST_PH, _SOURCE)
 
 
-def bracketed(problem):
-    """balances.Solved of one water (an equilibrium.Problem of numbers); ChemistryError where there is no answer."""
+def bracketed(problem: Values) -> balances.Solved:
+    """balances.Solved of one water (an equilibrium.Problem of numbers); ChemistryError where there is no
+    answer."""
     if problem.fixed_h:
         return _at_h(problem, problem.t.h)[1]
     low, high = -HIGHEST_PH * _LN10, -LOWEST_PH * _LN10
     at_low, at_high = _at_h(problem, math.exp(low))[0], _at_h(problem, math.exp(high))[0]
     if not (at_low >= 0.0 >= at_high):
         raise errors.ChemistryError("no pH between 3 and 13 agrees with this alkalinity and inorganic carbon")
-    found = None
+    found = _at_h(problem, math.exp(low))[1]
     for _ in range(60):
         middle = 0.5 * (low + high)
         miss, found = _at_h(problem, math.exp(middle))
@@ -42,11 +45,13 @@ def bracketed(problem):
     return found
 
 
-def _at_h(problem, h):
-    """At a given h: carbonate from its own balance, then how far the alkalinity is off (it falls as h rises)."""
+def _at_h(problem: Values, h: Values) -> tuple[float, balances.Solved]:
+    """At a given h: carbonate from its own balance, then how far the alkalinity is off (it falls as h
+    rises)."""
     t = problem.t
     s, ionic = t.sulfate, 0.01
-    state = ap = None
+    state: Values = None
+    ap: Values = None
     for _ in range(30):
         ap = problem.apparent(problem.xp, problem.k, ionic)
         if problem.co2_activity is not None and not problem.fixed_h:
@@ -63,13 +68,13 @@ def _at_h(problem, h):
     return miss, balances.solved(ap, t, state, ionic, problem.calcite, problem.brucite)
 
 
-def _carbonate_at(problem, ap, h, s):
+def _carbonate_at(problem: Values, ap: Values, h: Values, s: Values) -> float:
     on_carbon = problem.carbon_target is not None
     target = problem.carbon_target if on_carbon else problem.alkalinity_target
 
-    def too_much(log_c):
+    def too_much(log_c: Values) -> bool:
         state = problem.evaluate(ap, h, math.exp(log_c), s)
-        return (state.carbon if on_carbon else state.alkalinity) > target
+        return bool((state.carbon if on_carbon else state.alkalinity) > target)
 
     low, high = math.log(1e-30), 0.0
     if too_much(low):
@@ -83,11 +88,11 @@ def _carbonate_at(problem, ap, h, s):
     return math.exp(0.5 * (low + high))
 
 
-def mend(solved, failed, problem, scalar_functions):
+def mend(solved: Values, failed: Values, problem: Values, scalar_functions: Values) -> balances.Solved:
     """Solve the waters marked in ``failed`` one by one by bracketing, and put them into ``solved``."""
     shape = failed.shape
 
-    def one(value, index):
+    def one(value: Values, index: Values) -> Values:
         if value is None:
             return None
         return float(np.broadcast_to(value, shape)[index]) if np.ndim(value) else float(value)

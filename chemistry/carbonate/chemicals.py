@@ -1,7 +1,7 @@
 """What one mole of each dosed chemical does to alkalinity, inorganic carbon and the ions.
 
-Source: stoichiometry (key definition), with CIAAW molar masses. Doses are of the pure compound unless the entry says
-otherwise; chlorine and hypochlorite both count as mg/L Cl2.
+Source: stoichiometry (key definition), with CIAAW molar masses. Doses are of the pure compound unless the
+entry says otherwise; chlorine and hypochlorite both count as mg/L Cl2.
 """
 
 from dataclasses import dataclass
@@ -11,7 +11,8 @@ from chemistry import constants, errors
 
 @dataclass(frozen=True, slots=True)
 class Effect:
-    """Per mole: equivalents of alkalinity, moles of carbon and of each ion; ``g_mol`` is the mass the dose is in."""
+    """Per mole: equivalents of alkalinity, moles of carbon and of each ion; ``g_mol`` is the mass the dose is
+    in."""
 
     g_mol: float
     alkalinity: float
@@ -25,7 +26,7 @@ class Effect:
     free_chlorine: float = 0.0
 
 
-def _mass(formula):
+def _mass(formula: str) -> float:
     return constants.molar_mass(formula)
 
 
@@ -42,7 +43,8 @@ EFFECTS: dict[str, Effect] = {
     "CO2": Effect(_mass("CO2"), 0.0, carbon=1.0),
     "H2SO4": Effect(_mass("H2SO4"), -2.0, sulfate=1.0),
     "HCl": Effect(_mass("HCl"), -1.0, chloride=1.0),
-    # NaOCl counts as OCl- in the alkalinity; the residual stays. The sodium chloride made with it is left out.
+    # NaOCl counts as OCl- in the alkalinity; the residual stays. The sodium chloride made with it is left
+    # out.
     "NaOCl": Effect(_CL2, 1.0, sodium=1.0, free_chlorine=1.0),
     # Cl2 + H2O = HOCl + HCl; the HOCl stays.
     "Cl2": Effect(_CL2, -1.0, chloride=1.0, free_chlorine=1.0),
@@ -65,7 +67,7 @@ EFFECTS: dict[str, Effect] = {
 }
 
 
-def effect(chemical):
+def effect(chemical: str) -> Effect:
     """The :class:`Effect` of a chemical named as in EFFECTS; ChemistryError lists the names otherwise."""
     try:
         return EFFECTS[chemical]

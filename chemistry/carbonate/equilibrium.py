@@ -1,9 +1,10 @@
 """The solver: carbonate equilibrium with ion pairs, for one water or an array of waters.
 
-The unknowns are the activity h of H+ and the concentration c of free CO3, found by Newton's method in their logarithms
-with limited steps on the balances of module balances. Free sulfate and ionic strength are renewed in each step, the
-latter by a secant. Waters that have not settled after the allowed steps are solved again by bracketing the pH. The species
-are those of phreeqc.dat for these elements (key PHREEQC-DAT), without CaHSO4+ and (CO2)2; the activity of water is 1.
+The unknowns are the activity h of H+ and the concentration c of free CO3, found by Newton's method in their
+logarithms with limited steps on the balances of module balances. Free sulfate and ionic strength are renewed
+in each step, the latter by a secant. Waters that have not settled after the allowed steps are solved again by
+bracketing the pH. The species are those of phreeqc.dat for these elements (key PHREEQC-DAT), without CaHSO4+
+and (CO2)2; the activity of water is 1.
 """
 
 import math
@@ -14,6 +15,7 @@ import numpy as np
 from chemistry import activity as activities
 from chemistry import errors
 from chemistry.carbonate import apparent, balances, bracketing, constants_of_equilibrium
+from chemistry.constants import Values
 
 _TOLERANCE = 2e-8  # of the last step; the error left is about a tenth of it
 _MOST_STEPS = 40
@@ -34,14 +36,23 @@ _ARRAY = SimpleNamespace(
 Solved = balances.Solved
 
 
-def solve(totals, model, *, calcite=False, brucite=False, co2_activity=None, start=None):
+def solve(
+    totals: Values,
+    model: str,
+    *,
+    calcite: bool = False,
+    brucite: bool = False,
+    co2_activity: Values = None,
+    start: Values = None,
+) -> balances.Solved:
     """Speciate ``totals`` (see waters.Totals); returns balances.Solved.
 
-    Which two of h, alkalinity and carbon stand in ``totals`` decides what is found. With ``calcite`` or ``brucite``
-    the water is brought to equilibrium with that solid (dissolving or forming it): calcium, magnesium, carbon and
-    alkalinity in the result are what stays dissolved. ``co2_activity`` (mol/kg) takes the place of carbon for a water
-    in equilibrium with a gas. ``start`` is an earlier Solved to begin from. Raises ChemistryError where no answer
-    exists between pH 3 and 13, OutOfRange where the ionic strength passes 0.5 mol/L.
+    Which two of h, alkalinity and carbon stand in ``totals`` decides what is found. With ``calcite`` or
+    ``brucite`` the water is brought to equilibrium with that solid (dissolving or forming it): calcium,
+    magnesium, carbon and alkalinity in the result are what stays dissolved. ``co2_activity`` (mol/kg) takes
+    the place of carbon for a water in equilibrium with a gas. ``start`` is an earlier Solved to begin from.
+    Raises ChemistryError where no answer exists between pH 3 and 13, OutOfRange where the ionic strength
+    passes 0.5 mol/L.
     """
     activities.require_model(model)
     fields = [getattr(totals, name) for name in totals.__slots__]
@@ -53,9 +64,10 @@ def solve(totals, model, *, calcite=False, brucite=False, co2_activity=None, sta
     if scalar:
         try:
             solved, step = problem.newton(start)
+            settled = step < _TOLERANCE
         except (ZeroDivisionError, OverflowError, ValueError):
-            solved, step = None, math.inf
-        if not step < _TOLERANCE:
+            settled = False
+        if not settled:
             solved = bracketing.bracketed(problem)
     else:
         with np.errstate(all="ignore"):
@@ -70,7 +82,7 @@ def solve(totals, model, *, calcite=False, brucite=False, co2_activity=None, sta
     return solved
 
 
-def log10(value):
+def log10(value: Values) -> Values:
     """Log10 of a number or an array; minus infinity at zero (a metal that is absent)."""
     if type(value) is float:
         return math.log10(value) if value > 0.0 else -math.inf
@@ -81,11 +93,16 @@ def log10(value):
 class Problem:
     """One call of :func:`solve`: constants, totals and what is held fixed."""
 
-    __slots__ = (
-        "alkalinity_target", "apparent", "brucite", "calcite", "carbon_target", "co2_activity", "fixed_h", "k", "t", "xp",
-    )  # fmt: skip
-
-    def __init__(self, xp, constants, apparent_of, totals, calcite, brucite, co2_activity):
+    def __init__(
+        self,
+        xp: Values,
+        constants: Values,
+        apparent_of: Values,
+        totals: Values,
+        calcite: bool,
+        brucite: bool,
+        co2_activity: Values,
+    ) -> None:
         self.xp = xp
         self.k = constants
         self.apparent = apparent_of
@@ -105,11 +122,11 @@ class Problem:
         self.carbon_target = carbon
         self.alkalinity_target = alkalinity
 
-    def evaluate(self, ap, h, c, s):
+    def evaluate(self, ap: Values, h: Values, c: Values, s: Values) -> balances.State:
         """balances.State of this problem."""
         return balances.evaluate(ap, self.t, h, c, s, self.calcite, self.brucite, not self.fixed_h)
 
-    def newton(self, start):
+    def newton(self, start: Values) -> tuple[balances.Solved, Values]:
         """Return (Solved, size of the last step)."""
         xp, t = self.xp, self.t
         h, c, s, ionic = self._start(start)
@@ -144,7 +161,7 @@ class Problem:
             ap = self.apparent(xp, self.k, ionic)
         return balances.solved(ap, t, state, ionic, self.calcite, self.brucite), step
 
-    def _start(self, start):
+    def _start(self, start: Values) -> Values:
         """First h, c, free sulfate and ionic strength."""
         xp, t, k = self.xp, self.t, self.k
         if start is not None:
@@ -179,12 +196,12 @@ class Problem:
             c = carbon / (1.0 + h / k.k2 + h * h / (k.k1 * k.k2))
         return h, xp.most(c, 1e-20), t.sulfate, ionic
 
-    def _one_step(self, state):
+    def _one_step(self, state: Values) -> Values:
         if self.carbon_target is not None:
             return (self.carbon_target - state.carbon) / state.carbon_v
         return (self.alkalinity_target - state.alkalinity) / state.alkalinity_v
 
-    def _two_steps(self, ap, state):
+    def _two_steps(self, ap: Values, state: Values) -> Values:
         if self.co2_activity is not None:
             first = state.co2 - self.co2_activity / ap.gammas[4]
             first_u, first_v = state.co2 + state.co2, state.co2

@@ -4,55 +4,57 @@ from dataclasses import dataclass
 
 from chemistry import activity as activities
 from chemistry.carbonate import constants_of_equilibrium, equilibrium, waters
+from chemistry.constants import Values
 
 
 @dataclass(frozen=True, slots=True)
 class Speciation:
-    """A water at equilibrium. Concentrations in mmol/L (meq/L for alkalinity), activity coefficients without unit.
+    """A water at equilibrium. Concentrations in mmol/L (meq/L for alkalinity), activity coefficients without
+    unit.
 
-    si_* are saturation indices log10(ion activity product / solubility product); log_pco2 is log10 of the pressure of
-    CO2 in atm with which the water would be in balance.
+    si_* are saturation indices log10(ion activity product / solubility product); log_pco2 is log10 of the
+    pressure of CO2 in atm with which the water would be in balance.
     """
 
-    temperature_c: object
-    ph: object
-    ionic_strength_mol_l: object
-    alkalinity_meq_l: object
-    dic_mmol_l: object
-    co2_mmol_l: object
-    hco3_mmol_l: object
-    co3_mmol_l: object
-    hydroxide_mmol_l: object
-    free_calcium_mmol_l: object
-    cahco3_mmol_l: object
-    caco3_aq_mmol_l: object
-    caso4_mmol_l: object
-    free_magnesium_mmol_l: object
-    mghco3_mmol_l: object
-    mgco3_mmol_l: object
-    mgso4_mmol_l: object
-    nahco3_mmol_l: object
-    naco3_mmol_l: object
-    free_sulfate_mmol_l: object
-    hypochlorite_mmol_l: object
-    gamma_h: object
-    gamma_calcium: object
-    gamma_hco3: object
-    gamma_co3: object
-    gamma_co2: object
-    si_calcite: object
-    si_aragonite: object
-    si_brucite: object
-    log_pco2: object
-    solved: object  # equilibrium.Solved, in mol/L
+    temperature_c: Values
+    ph: Values
+    ionic_strength_mol_l: Values
+    alkalinity_meq_l: Values
+    dic_mmol_l: Values
+    co2_mmol_l: Values
+    hco3_mmol_l: Values
+    co3_mmol_l: Values
+    hydroxide_mmol_l: Values
+    free_calcium_mmol_l: Values
+    cahco3_mmol_l: Values
+    caco3_aq_mmol_l: Values
+    caso4_mmol_l: Values
+    free_magnesium_mmol_l: Values
+    mghco3_mmol_l: Values
+    mgco3_mmol_l: Values
+    mgso4_mmol_l: Values
+    nahco3_mmol_l: Values
+    naco3_mmol_l: Values
+    free_sulfate_mmol_l: Values
+    hypochlorite_mmol_l: Values
+    gamma_h: Values
+    gamma_calcium: Values
+    gamma_hco3: Values
+    gamma_co3: Values
+    gamma_co2: Values
+    si_calcite: Values
+    si_aragonite: Values
+    si_brucite: Values
+    log_pco2: Values
+    solved: Values  # equilibrium.Solved, in mol/L
 
     @property
-    def alkalinity_mg_l_caco3(self):
+    def alkalinity_mg_l_caco3(self) -> Values:
         """Total alkalinity, mg/L as CaCO3."""
         return self.alkalinity_meq_l * waters.CACO3_MG_MEQ
 
 
-def speciate(water, *, activity=activities.DAVIES):
+def speciate(water: waters.Water, *, activity: str = activities.DAVIES) -> Speciation:
     """The :class:`Speciation` of a :class:`waters.Water`.
 
     activity: "davies" or "phreeqc". Ranges and errors as for Water; an alkalinity too low for its pH raises
@@ -63,7 +65,7 @@ def speciate(water, *, activity=activities.DAVIES):
     return of_solved(totals.temperature_c, equilibrium.solve(totals, activity))
 
 
-def of_solved(temperature_c, found):
+def of_solved(temperature_c: Values, found: Values) -> Speciation:
     """Dress an equilibrium.Solved as a :class:`Speciation`."""
     log10 = equilibrium.log10
     kelvin = temperature_c + 273.15
@@ -71,7 +73,8 @@ def of_solved(temperature_c, found):
     si_brucite = log10(found.ion_product_brucite)
     gamma_h, gamma_ca, gamma_hco3, gamma_co3, gamma_co2 = found.gammas
     log_kh = constants_of_equilibrium.log_k("henry_co2", temperature_c)
-    # log Ksp of calcite less that of aragonite: the two fits differ in their first and third coefficients only
+    # log Ksp of calcite less that of aragonite: the two fits differ in their first and third coefficients
+    # only
     over_aragonite = -171.9065 + 171.9773 + (2839.319 - 2903.293) / kelvin
     return Speciation(
         temperature_c=temperature_c,
@@ -106,4 +109,3 @@ def of_solved(temperature_c, found):
         log_pco2=log10(found.co2 * gamma_co2) - log_kh,
         solved=found,
     )
-

@@ -1,8 +1,10 @@
-"""Softening as an equilibrium: what lime, soda or caustic leave dissolved once calcite and brucite have formed.
+"""Softening as an equilibrium: what lime, soda or caustic leave dissolved once calcite and brucite have
+formed.
 
-Calcite and brucite form only where supersaturated and never dissolve below what was dosed. Practice leaves more calcium
-and magnesium than this (fine crystals, short time, magnesium carried over): see lime_soda.PRACTICAL_*. The residual
-magnesium depends on the solubility product chosen for brucite: published values move it by up to 6 mg/L as CaCO3.
+Calcite and brucite form only where supersaturated and never dissolve below what was dosed. Practice leaves
+more calcium and magnesium than this (fine crystals, short time, magnesium carried over): see
+lime_soda.PRACTICAL_*. The residual magnesium depends on the solubility product chosen for brucite: published
+values move it by up to 6 mg/L as CaCO3.
 """
 
 from dataclasses import dataclass, replace
@@ -12,6 +14,7 @@ import numpy as np
 from chemistry import activity as activities
 from chemistry import constants, elementwise, errors
 from chemistry.carbonate import dosing, equilibrium, waters
+from chemistry.constants import Values
 from chemistry.softening import lime_soda, precipitation
 
 _CACO3_MG_MOL = waters.CACO3_MG_MEQ * 2.0 * 1e3
@@ -22,42 +25,44 @@ _USUAL_EXCESS_MOL = lime_soda.USUAL_EXCESS_MG_L_CACO3 / _CACO3_MG_MOL
 
 @dataclass(frozen=True, slots=True)
 class Softened:
-    """The clear water after softening at equilibrium, and the solids per litre; ``water`` can be treated further."""
+    """The clear water after softening at equilibrium, and the solids per litre; ``water`` can be treated
+    further."""
 
-    ph: object
-    calcium_hardness_mg_l_caco3: object
-    magnesium_hardness_mg_l_caco3: object
-    alkalinity_mg_l_caco3: object
-    dic_mmol_l: object
-    ionic_strength_mol_l: object
-    calcite_mg_l: object
-    brucite_mg_l: object
+    ph: Values
+    calcium_hardness_mg_l_caco3: Values
+    magnesium_hardness_mg_l_caco3: Values
+    alkalinity_mg_l_caco3: Values
+    dic_mmol_l: Values
+    ionic_strength_mol_l: Values
+    calcite_mg_l: Values
+    brucite_mg_l: Values
     water: waters.Water
 
     @property
-    def solids_mg_l(self):
+    def solids_mg_l(self) -> Values:
         """Calcite and brucite together, dry, mg/L."""
         return self.calcite_mg_l + self.brucite_mg_l
 
     @property
-    def hardness_mg_l_caco3(self):
+    def hardness_mg_l_caco3(self) -> Values:
         """Calcium and magnesium hardness together."""
         return self.calcium_hardness_mg_l_caco3 + self.magnesium_hardness_mg_l_caco3
 
 
 def soften(
-    water,
+    water: waters.Water,
     *,
-    lime_ca_oh_2_mg_l=0.0,
-    soda_na2co3_mg_l=0.0,
-    caustic_naoh_mg_l=0.0,
-    co2_mg_l=0.0,
-    activity=activities.DAVIES,
-):
+    lime_ca_oh_2_mg_l: Values = 0.0,
+    soda_na2co3_mg_l: Values = 0.0,
+    caustic_naoh_mg_l: Values = 0.0,
+    co2_mg_l: Values = 0.0,
+    activity: str = activities.DAVIES,
+) -> Softened:
     """:class:`Softened` for a Water after the doses given (pure compounds, each 0 to 2,000 mg/L).
 
-    Without a dose it shows what the raw water itself would precipitate. Ranges and errors as for carbonate.speciate.
-    Source: equilibrium with calcite and brucite (keys PLUMMER-BUSENBERG-1982, WATEQ4F-DAT), checked against PHREEQC.
+    Without a dose it shows what the raw water itself would precipitate. Ranges and errors as for
+    carbonate.speciate. Source: equilibrium with calcite and brucite (keys PLUMMER-BUSENBERG-1982,
+    WATEQ4F-DAT), checked against PHREEQC.
     """
     doses = {
         "Ca(OH)2": lime_ca_oh_2_mg_l,
@@ -70,12 +75,19 @@ def soften(
     return _softened(water, dosed, found)
 
 
-def lime_for_hardness(water, target_hardness_mg_l_caco3, *, soda_na2co3_mg_l=0.0, activity=activities.DAVIES):
+def lime_for_hardness(
+    water: waters.Water,
+    target_hardness_mg_l_caco3: Values,
+    *,
+    soda_na2co3_mg_l: Values = 0.0,
+    activity: str = activities.DAVIES,
+) -> Values:
     """Smallest lime dose, mg/L Ca(OH)2, that leaves ``target_hardness_mg_l_caco3`` (total) at equilibrium.
 
-    Hardness falls with lime, then rises again as lime is overdosed; the falling side is taken. Zero where the water is
-    soft enough already. Doses are sought up to what CO2, alkalinity and magnesium take plus 62.5 mg/L as CaCO3; a target
-    below what that reaches raises ChemistryError. target: 0 to 5,000 mg/L as CaCO3. Source: :func:`soften`.
+    Hardness falls with lime, then rises again as lime is overdosed; the falling side is taken. Zero where the
+    water is soft enough already. Doses are sought up to what CO2, alkalinity and magnesium take plus 62.5
+    mg/L as CaCO3; a target below what that reaches raises ChemistryError. target: 0 to 5,000 mg/L as CaCO3.
+    Source: :func:`soften`.
     """
     target = elementwise.number(target_hardness_mg_l_caco3)
     errors.require("target hardness", target, "mg/L CaCO3", 0.0, 5000.0, "limit of this model")
@@ -85,7 +97,7 @@ def lime_for_hardness(water, target_hardness_mg_l_caco3, *, soda_na2co3_mg_l=0.0
     column = _as_columns(start, np.shape(target))
     target_column = np.broadcast_to(np.atleast_1d(target)[..., None], (*np.shape(column.alkalinity)[:-1], 1))
 
-    def over(lime_mg_l):
+    def over(lime_mg_l: Values) -> Values:
         dosed = dosing.added(column, "Ca(OH)2", lime_mg_l)
         found = precipitation.precipitate(dosed, activity)
         return (found.calcium + found.magnesium) * _CACO3_MG_MOL - target_column
@@ -113,7 +125,7 @@ def lime_for_hardness(water, target_hardness_mg_l_caco3, *, soda_na2co3_mg_l=0.0
     return float(dose[0]) if scalar else dose.reshape(np.broadcast_shapes(precipitation.shape_of(start), np.shape(target)))
 
 
-def _softened(water, dosed, found):
+def _softened(water: waters.Water, dosed: waters.Totals, found: Values) -> Softened:
     after = replace(
         dosed,
         alkalinity=found.alkalinity,
@@ -134,7 +146,7 @@ def _softened(water, dosed, found):
     )
 
 
-def _as_columns(totals, other_shape):
+def _as_columns(totals: waters.Totals, other_shape: tuple[int, ...]) -> waters.Totals:
     """Every total with a last axis of one, so that a row of doses can stand against each water."""
     shape = np.broadcast_shapes(precipitation.shape_of(totals), other_shape) or (1,)
     return replace(

@@ -1,17 +1,19 @@
 """Lime, lime-soda and caustic softening by stoichiometry.
 
-Hardness, alkalinity and excess in mg/L as CaCO3; CO2 in mg/L; doses in mg/L of the pure compound. The result is what
-the reactions consume: real dosing follows from a jar test and the finished water's pH, and lime and caustic burn eyes and
-skin, so the local safety rules and a licensed operator decide.
+Hardness, alkalinity and excess in mg/L as CaCO3; CO2 in mg/L; doses in mg/L of the pure compound. The result
+is what the reactions consume: real dosing follows from a jar test and the finished water's pH, and lime and
+caustic burn eyes and skin, so the local safety rules and a licensed operator decide.
 """
 
 from dataclasses import dataclass
 
 from chemistry import constants, elementwise, errors, hardness
+from chemistry.constants import Values
 
 # 1.25 meq/L: course notes and worked examples (key LIME-EXCESS). Another handbook takes 1.0 meq/L.
 USUAL_EXCESS_MG_L_CACO3 = 62.5
-# ASCE/AWWA, Water Treatment Plant Design, p. 11.11 (key WTPD-11): calcium 35, magnesium 10; course cards 30 and 10.
+# ASCE/AWWA, Water Treatment Plant Design, p. 11.11 (key WTPD-11): calcium 35, magnesium 10; course cards 30
+# and 10.
 PRACTICAL_CALCIUM_MG_L_CACO3 = 35.0
 PRACTICAL_MAGNESIUM_MG_L_CACO3 = 10.0
 
@@ -29,20 +31,15 @@ _LIMIT = "limit of this model"
 class Removal:
     """Hardness to be removed by what it is bound to, mg/L as CaCO3."""
 
-    calcium_carbonate: object
-    magnesium_carbonate: object
-    calcium_non_carbonate: object
-    magnesium_non_carbonate: object
+    calcium_carbonate: Values
+    magnesium_carbonate: Values
+    calcium_non_carbonate: Values
+    magnesium_non_carbonate: Values
 
     @property
-    def total(self):
+    def total(self) -> Values:
         """All of it."""
-        return (
-            self.calcium_carbonate
-            + self.magnesium_carbonate
-            + self.calcium_non_carbonate
-            + self.magnesium_non_carbonate
-        )
+        return self.calcium_carbonate + self.magnesium_carbonate + self.calcium_non_carbonate + self.magnesium_non_carbonate
 
 
 @dataclass(frozen=True, slots=True)
@@ -52,16 +49,16 @@ class LimeSodaDose:
     below_practical_floor: true where the water left would be softer than cold softening reaches in practice.
     """
 
-    lime_ca_oh_2_mg_l: object
-    lime_cao_mg_l: object
-    soda_na2co3_mg_l: object
+    lime_ca_oh_2_mg_l: Values
+    lime_cao_mg_l: Values
+    soda_na2co3_mg_l: Values
     removal: Removal
-    hardness_after_mg_l_caco3: object
-    co2_demand_meq_l: object
-    sodium_alkalinity_demand_meq_l: object
-    excess_meq_l: object
-    solids_mg_l: object
-    below_practical_floor: object
+    hardness_after_mg_l_caco3: Values
+    co2_demand_meq_l: Values
+    sodium_alkalinity_demand_meq_l: Values
+    excess_meq_l: Values
+    solids_mg_l: Values
+    below_practical_floor: Values
 
 
 @dataclass(frozen=True, slots=True)
@@ -71,40 +68,41 @@ class CausticDose:
     sodium_added_mg_l counts the sodium of both chemicals.
     """
 
-    caustic_naoh_mg_l: object
-    soda_na2co3_mg_l: object
-    sodium_added_mg_l: object
+    caustic_naoh_mg_l: Values
+    soda_na2co3_mg_l: Values
+    sodium_added_mg_l: Values
     removal: Removal
-    hardness_after_mg_l_caco3: object
-    co2_demand_meq_l: object
-    sodium_alkalinity_demand_meq_l: object
-    excess_meq_l: object
-    solids_mg_l: object
-    below_practical_floor: object
+    hardness_after_mg_l_caco3: Values
+    co2_demand_meq_l: Values
+    sodium_alkalinity_demand_meq_l: Values
+    excess_meq_l: Values
+    solids_mg_l: Values
+    below_practical_floor: Values
 
 
 def lime_soda_dose(
     *,
-    calcium_hardness_mg_l_caco3,
-    magnesium_hardness_mg_l_caco3,
-    alkalinity_mg_l_caco3,
-    co2_mg_l,
-    target_hardness_mg_l_caco3=None,
-    remove_magnesium=False,
-    excess_mg_l_caco3=None,
-    convert_sodium_alkalinity=False,
-):
+    calcium_hardness_mg_l_caco3: Values,
+    magnesium_hardness_mg_l_caco3: Values,
+    alkalinity_mg_l_caco3: Values,
+    co2_mg_l: Values,
+    target_hardness_mg_l_caco3: Values = None,
+    remove_magnesium: bool = False,
+    excess_mg_l_caco3: Values = None,
+    convert_sodium_alkalinity: bool = False,
+) -> LimeSodaDose:
     """:class:`LimeSodaDose` for softening to a target total hardness (None: all that can react is removed).
 
-    Calcium carbonate hardness goes first (lime), then calcium non-carbonate (soda); with ``remove_magnesium`` magnesium
-    carbonate goes after calcium carbonate (lime, twice), magnesium non-carbonate last (lime and soda).
-    In meq/L: lime = 2 CO2 (mmol/L) + CaCH + 2 MgCH + MgNCH + excess; soda = CaNCH + MgNCH.
+    Calcium carbonate hardness goes first (lime), then calcium non-carbonate (soda); with ``remove_magnesium``
+    magnesium carbonate goes after calcium carbonate (lime, twice), magnesium non-carbonate last (lime and
+    soda). In meq/L: lime = 2 CO2 (mmol/L) + CaCH + 2 MgCH + MgNCH + excess; soda = CaNCH + MgNCH.
 
-    excess_mg_l_caco3: lime beyond the reactions, 0 to 500; None means 62.5 where magnesium is removed, else 0. It is
-    dosed only where some magnesium is to be removed. convert_sodium_alkalinity: also bring alkalinity beyond the hardness
-    to carbonate (needed for magnesium at pH 11). Other inputs 0 to 5,000, co2_mg_l 0 to 500. Outside raises OutOfRange.
-    A target that can't be reached without magnesium removal raises ChemistryError; one above the hardness gives no dose.
-    Source: stoichiometry as in ASCE/AWWA Water Treatment Plant Design ch. 11, eq. 11.10, 11.18 (key WTPD-11).
+    excess_mg_l_caco3: lime beyond the reactions, 0 to 500; None means 62.5 where magnesium is removed, else
+    0. It is dosed only where some magnesium is to be removed. convert_sodium_alkalinity: also bring
+    alkalinity beyond the hardness to carbonate (needed for magnesium at pH 11). Other inputs 0 to 5,000,
+    co2_mg_l 0 to 500. Outside raises OutOfRange. A target that can't be reached without magnesium removal
+    raises ChemistryError; one above the hardness gives no dose. Source: stoichiometry as in ASCE/AWWA Water
+    Treatment Plant Design ch. 11, eq. 11.10, 11.18 (key WTPD-11).
     """
     removal, common = _plan(
         calcium_hardness_mg_l_caco3, magnesium_hardness_mg_l_caco3, alkalinity_mg_l_caco3, co2_mg_l,
@@ -124,20 +122,21 @@ def lime_soda_dose(
 
 def caustic_dose(
     *,
-    calcium_hardness_mg_l_caco3,
-    magnesium_hardness_mg_l_caco3,
-    alkalinity_mg_l_caco3,
-    co2_mg_l,
-    target_hardness_mg_l_caco3=None,
-    remove_magnesium=False,
-    excess_mg_l_caco3=None,
-    convert_sodium_alkalinity=False,
-):
+    calcium_hardness_mg_l_caco3: Values,
+    magnesium_hardness_mg_l_caco3: Values,
+    alkalinity_mg_l_caco3: Values,
+    co2_mg_l: Values,
+    target_hardness_mg_l_caco3: Values = None,
+    remove_magnesium: bool = False,
+    excess_mg_l_caco3: Values = None,
+    convert_sodium_alkalinity: bool = False,
+) -> CausticDose:
     """:class:`CausticDose` for softening with sodium hydroxide; arguments as for :func:`lime_soda_dose`.
 
-    In meq/L caustic equals the lime of that function. It adds no calcium: the carbonate it makes, 2 CO2 + CaCH + 2 MgCH
-    (+ sodium alkalinity brought to carbonate), serves the calcium non-carbonate hardness before any soda is needed.
-    Source: stoichiometry (key definition): Ca(HCO3)2 + 2 NaOH = CaCO3 + Na2CO3 + 2 H2O and its like.
+    In meq/L caustic equals the lime of that function. It adds no calcium: the carbonate it makes, 2 CO2 +
+    CaCH + 2 MgCH (+ sodium alkalinity brought to carbonate), serves the calcium non-carbonate hardness before
+    any soda is needed. Source: stoichiometry (key definition): Ca(HCO3)2 + 2 NaOH = CaCO3 + Na2CO3 + 2 H2O
+    and its like.
     """
     removal, common = _plan(
         calcium_hardness_mg_l_caco3, magnesium_hardness_mg_l_caco3, alkalinity_mg_l_caco3, co2_mg_l,
@@ -163,11 +162,13 @@ def caustic_dose(
     )
 
 
-def solids_mg_l(removal, *, co2_removed_mg_l=0.0):
-    """Dry solids from lime-soda softening, mg/L: CaCO3 and Mg(OH)2 for a :class:`Removal` and the CO2 taken by lime.
+def solids_mg_l(removal: Values, *, co2_removed_mg_l: Values = 0.0) -> Values:
+    """Dry solids from lime-soda softening, mg/L: CaCO3 and Mg(OH)2 for a :class:`Removal` and the CO2 taken
+    by lime.
 
-    Per mg as CaCO3 removed: CaCH 2.00, CaNCH 1.00, MgCH 2.583, MgNCH 1.583; per mg CO2 2.274 mg. Turbidity and
-    coagulant sludge come on top. Source: stoichiometry; the first and third agree with Lang et al. 1985 (key LANG-1985).
+    Per mg as CaCO3 removed: CaCH 2.00, CaNCH 1.00, MgCH 2.583, MgNCH 1.583; per mg CO2 2.274 mg. Turbidity
+    and coagulant sludge come on top. Source: stoichiometry; the first and third agree with Lang et al. 1985
+    (key LANG-1985).
     """
     brucite = constants.molar_mass("Mg(OH)2") / hardness.CACO3_G_MOL
     return (
@@ -179,7 +180,16 @@ def solids_mg_l(removal, *, co2_removed_mg_l=0.0):
     )
 
 
-def _plan(calcium, magnesium, alkalinity, co2_mg_l, target, remove_magnesium, excess, convert_sodium_alkalinity):
+def _plan(
+    calcium: Values,
+    magnesium: Values,
+    alkalinity: Values,
+    co2_mg_l: Values,
+    target: Values,
+    remove_magnesium: bool,
+    excess: Values,
+    convert_sodium_alkalinity: bool,
+) -> tuple[Removal, dict[str, Values]]:
     calcium, magnesium, alkalinity = (
         _checked(name, value)
         for name, value in (
@@ -225,7 +235,7 @@ def _plan(calcium, magnesium, alkalinity, co2_mg_l, target, remove_magnesium, ex
     return removal, common
 
 
-def _removal(parts, wanted, remove_magnesium):
+def _removal(parts: Values, wanted: Values, remove_magnesium: bool) -> Removal:
     """Share the hardness to be removed out over its parts, in the order of cost."""
     left = wanted
     calcium_carbonate = elementwise.least(parts.calcium_carbonate, left)
@@ -234,27 +244,20 @@ def _removal(parts, wanted, remove_magnesium):
     left = left - magnesium_carbonate
     calcium_non_carbonate = elementwise.least(parts.calcium_non_carbonate, left)
     left = left - calcium_non_carbonate
-    magnesium_non_carbonate = (
-        elementwise.least(parts.magnesium_non_carbonate, left) if remove_magnesium else 0.0 * left
-    )
+    magnesium_non_carbonate = elementwise.least(parts.magnesium_non_carbonate, left) if remove_magnesium else 0.0 * left
     return Removal(calcium_carbonate, magnesium_carbonate, calcium_non_carbonate, magnesium_non_carbonate)
 
 
-def _alkali_meq(removal, common):
+def _alkali_meq(removal: Values, common: Values) -> Values:
     return (
         common["co2_demand_meq_l"]
-        + (
-            removal.calcium_carbonate
-            + 2.0 * removal.magnesium_carbonate
-            + removal.magnesium_non_carbonate
-        )
-        / _MEQ
+        + (removal.calcium_carbonate + 2.0 * removal.magnesium_carbonate + removal.magnesium_non_carbonate) / _MEQ
         + common["sodium_alkalinity_demand_meq_l"]
         + common["excess_meq_l"]
     )
 
 
-def _checked(name, value):
+def _checked(name: str, value: Values) -> Values:
     value = elementwise.number(value)
     errors.require(name, value, "mg/L CaCO3", 0.0, _HIGHEST, _LIMIT)
     return value

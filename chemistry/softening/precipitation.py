@@ -5,22 +5,24 @@ from dataclasses import fields
 import numpy as np
 
 from chemistry.carbonate import equilibrium, waters
+from chemistry.constants import Values
 
 _NOTICEABLE = 1e-9  # of ion product over solubility product, and mol/L: below this nothing forms
 
 
-def precipitate(dosed, activity):
-    """equilibrium.Solved of ``dosed`` totals (alkalinity and carbon given) after calcite and brucite have formed."""
+def precipitate(dosed: waters.Totals, activity: str) -> equilibrium.Solved:
+    """equilibrium.Solved of ``dosed`` totals (alkalinity and carbon given) after calcite and brucite have
+    formed."""
     closed = equilibrium.solve(dosed, activity)
     if type(closed.ion_product_calcite) is float:
         return _precipitate_one(dosed, closed, activity)
     return _precipitate_many(dosed, closed, activity)
 
 
-def _precipitate_one(dosed, closed, activity):
+def _precipitate_one(dosed: waters.Totals, closed: equilibrium.Solved, activity: str) -> equilibrium.Solved:
     calcite = closed.ion_product_calcite > 1.0 + _NOTICEABLE
     brucite = closed.ion_product_brucite > 1.0 + _NOTICEABLE
-    found = closed
+    found: equilibrium.Solved = closed
     for _ in range(6):
         if not (calcite or brucite):
             return closed
@@ -38,7 +40,7 @@ def _precipitate_one(dosed, closed, activity):
     return found
 
 
-def _precipitate_many(dosed, closed, activity):
+def _precipitate_many(dosed: waters.Totals, closed: equilibrium.Solved, activity: str) -> equilibrium.Solved:
     shape = np.broadcast_shapes(shape_of(dosed), np.shape(closed.h))
     flat = {name: _flat(getattr(dosed, name), shape) for name in dosed.__slots__}
     result = {name: _flat(getattr(closed, name), shape).copy() for name in _SOLVED_FIELDS}
@@ -55,9 +57,7 @@ def _precipitate_many(dosed, closed, activity):
             if where.size == 0:
                 continue
             part = waters.Totals(**{n: None if v is None else v[where] for n, v in flat.items()})
-            begin = equilibrium.Solved(
-                gammas=tuple(g[where] for g in gammas), **{n: v[where] for n, v in result.items()}
-            )
+            begin = equilibrium.Solved(gammas=tuple(g[where] for g in gammas), **{n: v[where] for n, v in result.items()})
             found = equilibrium.solve(part, activity, calcite=with_calcite, brucite=with_brucite, start=begin)
             for name, values in result.items():
                 values[where] = getattr(found, name)
@@ -88,11 +88,11 @@ def _precipitate_many(dosed, closed, activity):
 _SOLVED_FIELDS = tuple(field.name for field in fields(equilibrium.Solved) if field.name != "gammas")
 
 
-def shape_of(totals):
+def shape_of(totals: waters.Totals) -> tuple[int, ...]:
     """The shape the totals broadcast to."""
     parts = [np.shape(getattr(totals, n)) for n in totals.__slots__ if getattr(totals, n) is not None]
     return np.broadcast_shapes(*parts)
 
 
-def _flat(value, shape):
+def _flat(value: Values, shape: tuple[int, ...]) -> Values:
     return None if value is None else np.broadcast_to(value, shape).reshape(-1)

@@ -1,8 +1,10 @@
-"""Split treatment: part of the water is softened with excess lime, the rest passes by and uses the excess up."""
+"""Split treatment: part of the water is softened with excess lime, the rest passes by and uses the excess
+up."""
 
 from dataclasses import dataclass
 
 from chemistry import elementwise, errors, hardness
+from chemistry.constants import Values
 from chemistry.softening import lime_soda
 
 USUAL_MAGNESIUM_LEFT_MG_L_CACO3 = lime_soda.PRACTICAL_MAGNESIUM_MG_L_CACO3
@@ -10,23 +12,26 @@ USUAL_MAGNESIUM_LEFT_MG_L_CACO3 = lime_soda.PRACTICAL_MAGNESIUM_MG_L_CACO3
 
 @dataclass(frozen=True, slots=True)
 class SplitTreatment:
-    """bypass_share: part of the whole flow that passes by, 0 to 1. Doses per litre of treated and of whole water."""
+    """bypass_share: part of the whole flow that passes by, 0 to 1. Doses per litre of treated and of whole
+    water."""
 
-    bypass_share: object
-    treated_lime_ca_oh_2_mg_l: object
-    treated_soda_na2co3_mg_l: object
-    whole_lime_ca_oh_2_mg_l: object
-    whole_soda_na2co3_mg_l: object
-    magnesium_after_mg_l_caco3: object
+    bypass_share: Values
+    treated_lime_ca_oh_2_mg_l: Values
+    treated_soda_na2co3_mg_l: Values
+    whole_lime_ca_oh_2_mg_l: Values
+    whole_soda_na2co3_mg_l: Values
+    magnesium_after_mg_l_caco3: Values
 
 
 def bypass_share(
-    raw_magnesium_mg_l_caco3, target_magnesium_mg_l_caco3, *, treated_magnesium_mg_l_caco3=10.0
-):
-    """Share of the flow that may pass the softener, 0 to 1: (target - treated)/(raw - treated), all magnesium as CaCO3.
+    raw_magnesium_mg_l_caco3: Values, target_magnesium_mg_l_caco3: Values, *, treated_magnesium_mg_l_caco3: Values = 10.0
+) -> Values:
+    """Share of the flow that may pass the softener, 0 to 1: (target - treated)/(raw - treated), all magnesium
+    as CaCO3.
 
-    0 to 5,000 mg/L each. A raw water at or below the target needs no magnesium removal and gives 1; a target below
-    what the treated stream holds raises ChemistryError. Source: mass balance; 10 mg/L left: from memory.
+    0 to 5,000 mg/L each. A raw water at or below the target needs no magnesium removal and gives 1; a target
+    below what the treated stream holds raises ChemistryError. Source: mass balance; 10 mg/L left: from
+    memory.
     """
     raw, target, treated = (
         _checked(name, value)
@@ -45,19 +50,19 @@ def bypass_share(
 
 def split_treatment(
     *,
-    calcium_hardness_mg_l_caco3,
-    magnesium_hardness_mg_l_caco3,
-    alkalinity_mg_l_caco3,
-    co2_mg_l,
-    target_magnesium_mg_l_caco3,
-    excess_mg_l_caco3=None,
-    treated_magnesium_mg_l_caco3=10.0,
-):
+    calcium_hardness_mg_l_caco3: Values,
+    magnesium_hardness_mg_l_caco3: Values,
+    alkalinity_mg_l_caco3: Values,
+    co2_mg_l: Values,
+    target_magnesium_mg_l_caco3: Values,
+    excess_mg_l_caco3: Values = None,
+    treated_magnesium_mg_l_caco3: Values = 10.0,
+) -> SplitTreatment:
     """:class:`SplitTreatment`: full lime-soda dose with excess on the treated part, nothing on the bypass.
 
-    The excess lime of the treated part reacts with the carbon dioxide and bicarbonate of the bypass when they meet:
-    check the mixture with carbonate.blend. Arguments as for lime_soda.lime_soda_dose and :func:`bypass_share`.
-    Source: mass balance and lime_soda (key DAVIS-2010 for the method; opened in part).
+    The excess lime of the treated part reacts with the carbon dioxide and bicarbonate of the bypass when they
+    meet: check the mixture with carbonate.blend. Arguments as for lime_soda.lime_soda_dose and
+    :func:`bypass_share`. Source: mass balance and lime_soda (key DAVIS-2010 for the method; opened in part).
     """
     share = bypass_share(
         magnesium_hardness_mg_l_caco3,
@@ -85,7 +90,7 @@ def split_treatment(
     )
 
 
-def _checked(name, value):
+def _checked(name: str, value: Values) -> Values:
     value = elementwise.number(value)
     errors.require(name, value, "mg/L CaCO3", 0.0, 5000.0, "limit of this model")
     return value
