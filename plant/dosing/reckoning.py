@@ -25,7 +25,7 @@ REACH = LONGEST_SPELL + dt.timedelta(hours=1)
 """How far outside a span readings may stand that decide about its ends."""
 NEED_REACH = dt.timedelta(days=9)
 """How far back a need may look: seven days of demand and the age a reading may have."""
-MEANINGLESS_DOSE = 1e-12
+MACHINES = ("meter", "vessel", "dosing_point")
 
 
 @dataclass
@@ -79,6 +79,7 @@ def reckoning(
     *,
     known: int | None,
     carried: dict[str, Contents] | None = None,
+    water: bool = True,
 ) -> Reckoning:
     """Gathers and walks. ``carried`` gives each vessel's contents at the start of the first day, where they are known;
     without it the walk begins with the book."""
@@ -86,7 +87,7 @@ def reckoning(
     cuts = [calendar.start_of(day) for day in [*days, days[-1] + dt.timedelta(days=1)]]
     start = cuts[0] - NEED_REACH if carried is not None else clock.BEGINNING
     end = cuts[-1] + REACH
-    sites = {code for kind in ("meter", "vessel", "sample_point", "dosing_point") for code in stated.subjects(kind)}
+    sites = {code for kind in (*MACHINES, *(("sample_point",) if water else ())) for code in stated.subjects(kind)}
     if carried is None:
         # The whole past is wanted of the vessels only; readings of water matter for the days asked and just before.
         found = gather.facts(book, stated, start=start, end=end, sites=set(stated.subjects("vessel")), known=known)

@@ -7,6 +7,7 @@ clock's true hours, whatever the wall clock did.
 
 from __future__ import annotations
 
+import bisect
 import datetime as dt
 import itertools
 import math
@@ -182,8 +183,9 @@ def used_between(spells: Sequence[Spell], start: dt.datetime, end: dt.datetime) 
     The uncertainty counts each reading once, with the share it really has: a reading inside the span cancels out, one at an
     interpolated boundary keeps its part.
     """
-    pieces = [(spell, spell.share(start, end)) for spell in spells]
-    pieces = [(spell, share) for spell, share in pieces if share > 0]
+    first = bisect.bisect_right(spells, start, key=lambda spell: spell.end.at)
+    inside = itertools.takewhile(lambda spell: spell.start.at < end, itertools.islice(spells, first, None))
+    pieces = [(spell, share) for spell in inside if (share := spell.share(start, end)) > 0]
     gap = _gap(pieces, start, end)
     if gap:
         return Used(None, remarks=(gap,))

@@ -46,13 +46,18 @@ def refresh(book: Book) -> int:
         if marker.code_version != CODE_VERSION:
             DayState.objects.filter(book=book).exclude(pk=marker.pk).delete()
         elif marker.through_seq < head:
-            touched = _earliest_touched(book, marker.through_seq)
-            if touched is not None:
-                first = (touched - REACH - dt.timedelta(days=1)).date()
+            first = touched_day(book, marker.through_seq)
+            if first is not None:
                 DayState.objects.filter(book=book, day__gte=first).exclude(pk=marker.pk).delete()
         if marker.through_seq != head or marker.code_version != CODE_VERSION:
             DayState.objects.filter(pk=marker.pk).update(through_seq=head, code_version=CODE_VERSION)
         return int(head)
+
+
+def touched_day(book: Book, after: int) -> dt.date | None:
+    """The first day whose figures may differ by what was entered after a seq; None when nothing was that matters."""
+    touched = _earliest_touched(book, after)
+    return None if touched is None else (touched - REACH - dt.timedelta(days=1)).date()
 
 
 def _earliest_touched(book: Book, after: int) -> dt.datetime | None:

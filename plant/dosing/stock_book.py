@@ -13,8 +13,7 @@ import statistics
 from dataclasses import dataclass
 
 from plant import clock
-from plant.dosing import products, states
-from plant.dosing.comparison import reckon
+from plant.dosing import carry, products
 from plant.dosing.figures import ProductReconciliation, VesselStock
 from plant.dosing.reckoning import Reckoning, VesselWalk, capacity, consumption
 from plant.dosing.spells import Mark
@@ -35,11 +34,7 @@ def stock(book: Book, at: dt.datetime, *, known: int | None = None, stated: Stat
     calendar = stated.calendar(at)
     day = calendar.day_of(at)
     days = clock.days(day - dt.timedelta(days=RECENT_DAYS + BOOK_DAYS + 1), day)
-    start = None
-    if known is None:
-        states.refresh(book)
-        start = states.carried(book, days[0])
-    out = reckon(book, stated, days, known=known, start=start)
+    out = carry.reckon(book, stated, days, known=known, water=False)
     supply = {product.code: _supply(out, product, at) for product in stated.products(at)}
     return [_vessel(out, out.walks[vessel.code], at, supply) for vessel in stated.vessels(at) if vessel.code in out.walks]
 
@@ -239,7 +234,7 @@ def _order_window(
     held: Held,
     at: dt.datetime,
 ) -> tuple[dt.date | None, dt.date | None]:
-    """From the first day on which a whole load, ordered then, fits at its arrival, to the last on which the reserve still holds."""
+    """From the first day on which a whole load, ordered then, fits at its arrival, to the last that keeps the reserve."""
     product, vessel = walked.product, walked.vessel
     if product.lead_time_days is None or supply.days is None or not supply.product_kg or not supply.usable_active_kg:
         return None, None
@@ -266,11 +261,7 @@ def reconciliation(
     """Each product over operating days: opening + received - witnessed use - closing = unexplained, kg of product."""
     stated = stated or works.stated(book, known=known)
     days = clock.days(first, last)
-    start = None
-    if known is None:
-        states.refresh(book)
-        start = states.carried(book, first)
-    out = reckon(book, stated, days, known=known, start=start)
+    out = carry.reckon(book, stated, days, known=known, water=False)
     begin, end = out.calendar.span(first, last)
     return [_reconcile(out, product, begin, end, days) for product in stated.products(end - dt.timedelta(microseconds=1))]
 

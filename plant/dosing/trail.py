@@ -8,7 +8,7 @@ from __future__ import annotations
 import datetime as dt
 from typing import Any
 
-from plant.dosing import comparison
+from plant.dosing import carry, comparison
 from plant.dosing.day import day_dose, design_for_day, dose_mg_l, in_service
 from plant.dosing.figures import DayDose, Figure, Step, Trail
 from plant.dosing.need import day_need
@@ -98,7 +98,7 @@ def _over(mass: Figure, volume: Figure, dose: Figure) -> str:
 
 
 def _of_day(book: Book, stated: Stated, what: str, subject: str, day: dt.date, known: int | None) -> Trail:
-    out = comparison.reckon(book, stated, [day], known=known, start=None)
+    out = carry.reckon(book, stated, [day], known=known)
     end = out.bounds(day)[1] - dt.timedelta(microseconds=1)
     point = stated.dosing_point(subject, end)
     product = stated.product(point.product, end)
