@@ -1,5 +1,6 @@
 """Stating one thing: checked, known by whom and why, and never over somebody else's head."""
 
+import contextlib
 import datetime as dt
 
 import pytest
@@ -99,9 +100,5 @@ any_key = st.sampled_from(sorted({key.name for kind in kinds.ALL for key in kind
 
 @given(st.sampled_from(sorted(kinds.KINDS)), st.text(max_size=12), st.dictionaries(any_key, json, max_size=6))
 def test_nothing_but_a_refusal_comes_of_nonsense(kind, subject, value):
-    try:
-        clean = blocks.check(kind, subject, value)
-    except blocks.BlockError as problem:
-        assert problem.messages
-    else:
-        assert set(clean) <= set(value)
+    with contextlib.suppress(blocks.BlockError):
+        assert set(blocks.check(kind, subject, value)) <= set(value)

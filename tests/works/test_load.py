@@ -79,8 +79,8 @@ def test_only_what_differs_is_stated_and_from_now():
     stated = queries.stated(book)
     assert stated.design_dose_mg_l("CAUSTIC-PH", dt.datetime(2026, 2, 1, 6, tzinfo=dt.UTC)) == 9.0
     assert stated.design_dose_mg_l("CAUSTIC-PH", dt.datetime(2026, 2, 1, 5, tzinfo=dt.UTC)) == 8.0
-    assert [point.name for point in stated.sample_points(LATER)][0] == "Raw water, wells 1 to 4"
-    assert [point.name for point in stated.sample_points(LATER - dt.timedelta(seconds=1))][0] == "Raw water"
+    assert next(point.name for point in stated.sample_points(LATER)) == "Raw water, wells 1 to 4"
+    assert next(point.name for point in stated.sample_points(LATER - dt.timedelta(seconds=1))) == "Raw water"
 
 
 def test_a_file_with_a_subject_twice_loads_twice_without_change():
