@@ -44,6 +44,8 @@ def test_the_contracts_hold():
         ("chemistry/units.py", "import django.db"),
         ("chemistry/units.py", "from plant import clock"),
         ("plant/works/models.py", "import deploy.health"),
+        ("plant/reports/pdf/ink.py", "from plant.works import queries"),
+        ("plant/reports/pdf/ink.py", "from django.utils import timezone"),
     ],
 )
 def test_an_import_upwards_or_sideways_is_noticed(tree, file, line):
