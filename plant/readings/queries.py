@@ -161,6 +161,14 @@ def latest(book: Book, site: str, parameter: str, *, before: dt.datetime, known:
     return usable[-1] if usable else None
 
 
+def first_taken_at(book: Book, *, known: int | None = None) -> dt.datetime | None:
+    """When the earliest reading on record was taken; None while there is none."""
+    rows = models.Reading.objects.filter(book=book)
+    if known is not None:
+        rows = rows.filter(seq__lte=known)
+    return rows.order_by("taken_at").values_list("taken_at", flat=True).first()
+
+
 def one(book: Book, ref: str) -> models.Reading | None:
     """The reading called ``seq.line``."""
     seq, _, line = ref.partition(".")
