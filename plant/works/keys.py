@@ -73,6 +73,7 @@ _WORDS = {
     "text": "text in quotes",
     "code": "a code in quotes",
     "flag": "true or false",
+    "flag_or_number": "true, false or mg per mg",
     "time": "a local time such as 07:00",
     "date": "a date such as 2026-01-31",
     "moment": "a time such as 2026-01-01T07:00:00",
@@ -129,6 +130,10 @@ def _read_flag(key: kinds.Key, value: Any) -> bool:
     if not isinstance(value, bool):
         raise ValueError
     return value
+
+
+def _read_flag_or_number(key: kinds.Key, value: Any) -> bool | float | int:
+    return value if isinstance(value, bool) else _read_number(key, value)
 
 
 def _read_choice(key: kinds.Key, value: Any) -> str:
@@ -253,7 +258,7 @@ def _read_need(key: kinds.Key, value: Any) -> dict[str, Any]:
     refuse_unknown(value, keys, problems, f"model {model}")
     if model == "oxidant_demand" and ("demand_mg_per_L" in value) == ("demand_from" in value):
         problems.append("expected either demand_mg_per_L or demand_from")
-    if model in ("sequestrant", "oxidise") and not set(value) & {item.name for item in kinds.NEED_MODELS[model]}:
+    if model == "sequestrant" and not set(value) & {item.name for item in kinds.NEED_MODELS[model]}:
         problems.append(f"expected at least one of {', '.join(item.name for item in kinds.NEED_MODELS[model])}")
     if problems:
         raise BlockError([f"need: {problem}" for problem in problems])
@@ -266,6 +271,7 @@ _READ: dict[str, Callable[[kinds.Key, Any], Any]] = {
     "number": _read_number,
     "whole": _read_whole,
     "flag": _read_flag,
+    "flag_or_number": _read_flag_or_number,
     "choice": _read_choice,
     "time": _read_time,
     "date": _read_date,

@@ -16,7 +16,7 @@ WEEKDAYS = ("Mon", "Tue", "Wed", "Thu", "Fri", "Sat", "Sun")
 class Key:
     """One key of a block.
 
-    ``holds``: text, code, number, whole, flag, time, date, moment, choice, formula, refs (a list of codes),
+    ``holds``: text, code, number, whole, flag, flag_or_number, time, date, moment, choice, formula, refs (a list of codes),
     weekdays, due, points (a list of pairs), tell, need. ``refers`` names the kind of block a code must be of.
     ``above`` is an exclusive lower bound, ``low`` and ``high`` are inclusive.
     """
@@ -81,9 +81,14 @@ NEED_MODELS: dict[str, tuple[Key, ...]] = {
     "target_ph": (Key("target_ph", "number", required=True, low=0.0, high=14.0),),
     "quench": (
         Key("of", "choice", required=True, choices=("chlorine", "peroxide")),
-        _from_zero("target_mg_per_L", required=True),
+        _from_zero("target_mg_per_L"),
     ),
-    "oxidise": (Key("iron", "flag"), Key("manganese", "flag"), Key("sulfide", "flag")),
+    "oxidise": (
+        Key("iron", "flag_or_number", low=0.0),
+        Key("manganese", "flag_or_number", low=0.0),
+        Key("sulfide", "flag_or_number", low=0.0),
+        Key("sulfide_to", "choice", choices=("sulfur", "sulfate")),
+    ),
     "sequestrant": (
         _from_zero("mg_per_mg_iron"),
         _from_zero("mg_per_mg_manganese"),

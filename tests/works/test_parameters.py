@@ -2,8 +2,8 @@
 
 import pytest
 
-from chemistry import units
-from plant.works import parameters, queries
+from chemistry import needs, units
+from plant.works import kinds, parameters, queries
 from tests import people
 
 
@@ -37,3 +37,11 @@ def test_the_works_own_parameter_and_units_at_a_site():
     assert parameters.unit_at(stated, people.OPENED, "HYPO-BULK", "strength") == "g/L"
     assert parameters.unit_at(stated, people.OPENED, "NAOH-BULK", "strength") == "%"
     assert parameters.unit_at(stated, people.OPENED, "ENTRY", "hardness") == "mg/L as CaCO3"
+
+
+@pytest.mark.parametrize("model", sorted(kinds.NEED_MODELS))
+def test_need_models_take_the_keys_the_chemistry_understands(model):
+    stated = {key.name for key in kinds.NEED_MODELS[model]}
+    understood = needs.model_keys(model)
+    assert stated | {"model", "max_age_hours"} == understood.allowed
+    assert {key.name for key in kinds.NEED_MODELS[model] if key.required} == understood.required - {"model"}
