@@ -1,0 +1,1 @@
+"""How long what is there will last, and when to order."""
