@@ -75,7 +75,9 @@ def no_design(day: dt.date) -> float | None:
     return None
 
 
-def forecast(history: History, made_on: dt.date, *, horizon: int = 120, design: Design = no_design, check_past: bool = True) -> Forecast | None:
+def forecast(
+    history: History, made_on: dt.date, *, horizon: int = 120, design: Design = no_design, check_past: bool = True
+) -> Forecast | None:
     """The forecast as it could be made at the end of ``made_on``; None while fewer than three days are known."""
     expected = _expected(history, made_on, horizon, design)
     if expected is None:

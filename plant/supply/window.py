@@ -56,13 +56,19 @@ def arrival(ordered: dt.date, terms: Terms) -> dt.date:
 
 
 def window(
-    *, today: dt.date, usable_kg: float, room_kg: float, terms: Terms, use_kg: Callable[[int, str], float],
-    placed: Sequence[Placed] = (), horizon: int = 110,
+    *,
+    today: dt.date,
+    usable_kg: float,
+    room_kg: float,
+    terms: Terms,
+    use_kg: Callable[[int, str], float],
+    placed: Sequence[Placed] = (),
+    horizon: int = 110,
 ) -> Window:
     """The order window of one product.
 
-    ``usable_kg`` is what can be used today, ``room_kg`` what fits today; ``use_kg(days, edge)`` is the use of the next days, kg of
-    product, at the ``low``, ``expected`` or ``high`` edge of the band.
+    ``usable_kg`` is what can be used today, ``room_kg`` what fits today; ``use_kg(days, edge)`` is the use of the next days, kg
+    of product, at the ``low``, ``expected`` or ``high`` edge of the band.
     """
     reserve = terms.reserve_days * use_kg(28, "expected") / 28
     order_by = None
@@ -88,14 +94,20 @@ def _came(placed: Sequence[Placed], today: dt.date, days: int) -> float:
 
 
 def _explained(
-    today: dt.date, order_from: dt.date | None, order_by: dt.date | None, terms: Terms, use_kg: Callable[[int, str], float],
+    today: dt.date,
+    order_from: dt.date | None,
+    order_by: dt.date | None,
+    terms: Terms,
+    use_kg: Callable[[int, str], float],
 ) -> Window:
     if order_from is None:
         return Window(None, order_by, "a whole load does not fit within the time looked ahead")
     if order_by is None:
-        return Window(order_from, None, "the reserve is reached before a load ordered today can come: order at once and look for cover")
+        return Window(
+            order_from, None, "a load ordered today comes after the reserve is reached: order at once and look for cover"
+        )
     if order_from > order_by:
-        return Window(order_from, order_by, "no window: a whole load fits only after the reserve is reached; order a part load or state other terms")
+        return Window(order_from, order_by, "no window: a whole load fits only after the reserve is reached; order a part load")
     if terms.shelf_life_days is not None and terms.load_kg > use_kg(round(terms.shelf_life_days), "expected"):
         return Window(order_from, order_by, f"a load lasts longer than its shelf life of {terms.shelf_life_days:g} days")
     return Window(order_from, order_by, "open now" if order_from <= today <= order_by else f"opens on {order_from}")

@@ -24,7 +24,7 @@ os.environ["WEIRBOOK_DATA"] = tempfile.mkdtemp(prefix="weirbook-benchmark-")
 os.environ.setdefault("DJANGO_SETTINGS_MODULE", "deploy.settings.development")
 os.environ.pop("DATABASE_URL", None)
 
-import django  # noqa: E402
+import django
 
 django.setup()
 
@@ -60,13 +60,24 @@ def stated() -> list[Statement]:
     for n in range(POINTS):
         oxidant = n == 0
         rows += [
-            say("product", f"P{n}", name=f"Product {n}", chemical="NaOCl" if oxidant else "NaOH",
+            say(
+                "product",
+                f"P{n}",
+                name=f"Product {n}",
+                chemical="NaOCl" if oxidant else "NaOH",
                 strength=125.0 if oxidant else 25.0,
                 strength_basis="g_per_L_available_chlorine" if oxidant else "weight_pct",
-                density_kg_per_L=1.2, strength_sd_pct=1.0, dose_basis="Cl2" if oxidant else "NaOH",
-                lead_time_days=4, load_kg=6000, reserve_days=7),
+                density_kg_per_L=1.2,
+                strength_sd_pct=1.0,
+                dose_basis="Cl2" if oxidant else "NaOH",
+                lead_time_days=4,
+                load_kg=6000,
+                reserve_days=7,
+            ),
             say("vessel", f"T{n}", name=f"Tank {n}", product=f"P{n}", shape="vertical_cylinder", diameter_m=2.0, height_m=4.0),
-            say("dosing_point", f"D{n}", name=f"Point {n}", product=f"P{n}", vessels=[f"T{n}"], meter="FT", sample_point="ENTRY"),
+            say(
+                "dosing_point", f"D{n}", name=f"Point {n}", product=f"P{n}", vessels=[f"T{n}"], meter="FT", sample_point="ENTRY"
+            ),
             say("design_dose", f"D{n}", dose_mg_per_L=5.0),
         ]
     return rows
@@ -74,7 +85,7 @@ def stated() -> list[Statement]:
 
 def fill(book: Book, years: int) -> int:
     """Two shifts a day, 40 lines each: 12 levels, a totaliser, and readings of the water."""
-    rng = random.Random(7)  # noqa: S311  # not a secret, a benchmark
+    rng = random.Random(7)  # not a secret, a benchmark
     calendar = clock.Calendar(clock.ZoneInfo("Europe/Berlin"), dt.time(7))
     first = END.replace(year=END.year - years) + dt.timedelta(days=1)
     litres, count, rows = [9000.0] * POINTS, 0, 0
@@ -82,21 +93,37 @@ def fill(book: Book, years: int) -> int:
         start = calendar.start_of(day)
         for half in range(2):
             at = start + dt.timedelta(hours=12 * half)
-            batch: list = [Reading(site="FT", parameter="totaliser", taken_at=at, value=float(count), value_text=str(count), unit="m3")]
+            batch: list = [
+                Reading(site="FT", parameter="totaliser", taken_at=at, value=float(count), value_text=str(count), unit="m3")
+            ]
             for n in range(POINTS):
                 level = litres[n] / 3141.592653589793
-                batch.append(Reading(site=f"T{n}", parameter="level", taken_at=at, value=level, value_text=f"{level:.3f}", unit="m"))
+                batch.append(
+                    Reading(site=f"T{n}", parameter="level", taken_at=at, value=level, value_text=f"{level:.3f}", unit="m")
+                )
                 litres[n] -= 6000 * 0.005 / (0.25 * 1.2) * rng.uniform(0.97, 1.03)
                 if litres[n] < 3000:
                     when = at + dt.timedelta(hours=3)
-                    batch.append(Delivery(taken_at=when, vessel=f"T{n}", product=f"P{n}", quantity=7200.0, unit="kg", density_kg_per_l=1.2))
+                    batch.append(
+                        Delivery(
+                            taken_at=when, vessel=f"T{n}", product=f"P{n}", quantity=7200.0, unit="kg", density_kg_per_l=1.2
+                        )
+                    )
                     litres[n] += 6000
             batch += [
                 Reading(site="ENTRY", parameter="pH", taken_at=at, value=7.5, value_text="7.50", sample=str(k))
                 for k in range(WATER_LINES)
             ]
             batch += [
-                Reading(site="ENTRY", parameter="free_chlorine", taken_at=at, value=0.5, value_text="0.50", unit="mg/L", sample=str(k))
+                Reading(
+                    site="ENTRY",
+                    parameter="free_chlorine",
+                    taken_at=at,
+                    value=0.5,
+                    value_text="0.50",
+                    unit="mg/L",
+                    sample=str(k),
+                )
                 for k in range(40 - 1 - POINTS - WATER_LINES)
             ]
             count += 6000
@@ -123,7 +150,8 @@ def bare(book: Book, start: dt.datetime, end: dt.datetime) -> Callable[[], objec
             cursor.execute(
                 "SELECT * FROM readings_reading r WHERE book_id = %s AND taken_at >= %s AND taken_at < %s AND NOT EXISTS "
                 "(SELECT 1 FROM readings_reading s WHERE s.supersedes_id = r.id) ORDER BY taken_at",
-                [book.pk, start, end])
+                [book.pk, start, end],
+            )
             return cursor.fetchall()
 
     return run
@@ -146,7 +174,11 @@ def report(book: Book, years: int, rows: int) -> dict[str, float]:
     stock = timed(lambda: dosing.stock(book, end))
     print(f"{years} year(s), {rows} rows: bare SQL for the month {floor * 1000:.0f} ms")
     ratios = {"kept": kept / floor, "reckoned": reckoned / floor, "stock": stock / floor}
-    for name, words in (("kept", "comparison, days kept"), ("reckoned", "comparison, reckoned anew"), ("stock", "stock at month's end")):
+    for name, words in (
+        ("kept", "comparison, days kept"),
+        ("reckoned", "comparison, reckoned anew"),
+        ("stock", "stock at month's end"),
+    ):
         took = {"kept": kept, "reckoned": reckoned, "stock": stock}[name]
         print(f"  {words:28} {took * 1000:7.0f} ms   {ratios[name]:5.1f} × bare SQL")
     return ratios
@@ -167,7 +199,9 @@ def main() -> None:
     if len(found) > 1:
         small, large = found[sizes[0]], found[sizes[-1]]
         for name in small:
-            print(f"{name}: {sizes[-1]} years cost {large[name] / small[name]:.2f} × what {sizes[0]} year(s) cost, each to its own bare SQL")
+            print(
+                f"{name}: {sizes[-1]} years cost {large[name] / small[name]:.2f} × what {sizes[0]} year(s) cost, each to its own bare SQL"
+            )
 
 
 if __name__ == "__main__":

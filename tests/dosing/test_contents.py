@@ -45,8 +45,14 @@ class TestWalk:
         marks = [Mark(at(0), 1000), Mark(at(10), 500)]
         spells = content_spells(marks, [Movement(at(5), 500)])
         out = walk(
-            spells=spells, first=contents(0.10, 1.0), pours=[Pour(at(5), 500, contents(0.16, 1.0))], tests=[], decay=no_decay,
-            in_kg=False, cuts=[at(0), at(10)])
+            spells=spells,
+            first=contents(0.10, 1.0),
+            pours=[Pour(at(5), 500, contents(0.16, 1.0))],
+            tests=[],
+            decay=no_decay,
+            in_kg=False,
+            cuts=[at(0), at(10)],
+        )
         drawn = out.drawn[at(0), at(10)]
         assert drawn.kg == pytest.approx(1000)
         assert drawn.active_kg == pytest.approx(500 * 0.10 + 500 * 0.13)
@@ -54,8 +60,14 @@ class TestWalk:
     def test_a_strength_test_sets_it_anew(self):
         spells = content_spells([Mark(at(0), 1000), Mark(at(10), 0)])
         out = walk(
-            spells=spells, first=contents(0.10, 1.0), pours=[], tests=[StrengthTest(at(5), 0.08)], decay=no_decay, in_kg=False,
-            cuts=[at(0), at(10)])
+            spells=spells,
+            first=contents(0.10, 1.0),
+            pours=[],
+            tests=[StrengthTest(at(5), 0.08)],
+            decay=no_decay,
+            in_kg=False,
+            cuts=[at(0), at(10)],
+        )
         assert out.drawn[at(0), at(10)].active_kg == pytest.approx(500 * 0.10 + 500 * 0.08)
 
     def test_amount_between_readings(self):
@@ -97,7 +109,8 @@ def test_product_and_chemical_are_conserved(rates, loads):
     pours = [pour for pour in pours if pour.at < end]
     spells = content_spells(marks[: len(rates) + 1], [item for item in movements if item.at < end])
     result = walk(
-        spells=spells, first=contents(0.12, None), pours=pours, tests=[], decay=no_decay, in_kg=True, cuts=[at(0), end])
+        spells=spells, first=contents(0.12, None), pours=pours, tests=[], decay=no_decay, in_kg=True, cuts=[at(0), end]
+    )
     drawn = result.drawn[at(0), end]
     assert drawn.kg == pytest.approx(sum(rate * 12 for rate in rates), rel=1e-9, abs=1e-6)
     assert drawn.active_kg == pytest.approx(used_chemical, rel=1e-9, abs=1e-6)

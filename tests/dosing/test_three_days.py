@@ -100,8 +100,16 @@ def test_the_command_prints_the_documented_columns(book):
     call_command("comparison", "--works", "TRI", "--from", "2026-03-28", "--to", "2026-03-30", stdout=out)
     rows = list(csv.DictReader(io.StringIO(out.getvalue())))
     assert list(rows[0]) == [
-        "operating_day", "dosing_point", "volume_ml", "product_kg", "active_kg", "used_mg_per_L", "used_sd_mg_per_L",
-        "design_mg_per_L", "need_mg_per_L", "remarks",
+        "operating_day",
+        "dosing_point",
+        "volume_ml",
+        "product_kg",
+        "active_kg",
+        "used_mg_per_L",
+        "used_sd_mg_per_L",
+        "design_mg_per_L",
+        "need_mg_per_L",
+        "remarks",
     ]
     assert rows[0]["used_mg_per_L"] == "7.8695"
     assert rows[0]["design_mg_per_L"] == "8.0000"
@@ -116,20 +124,33 @@ class TestKeptDays:
     def test_a_late_entry_drops_what_it_touches(self, book, tmp_path, settings):
         before = by_key(queries.comparison(book, FIRST, LAST))
         (tmp_path / "late.csv").write_text(
-            "site,timestamp,parameter,value,unit,note\nDRUM,2026-03-30T19:00,weight,800,kg,display back\n", encoding="utf-8")
+            "site,timestamp,parameter,value,unit,note\nDRUM,2026-03-30T19:00,weight,800,kg,display back\n", encoding="utf-8"
+        )
         call_command(
-            "import_records", str(tmp_path / "late.csv"), "--works", "TRI", "--now", "2026-04-02T06:00:00Z", stdout=io.StringIO())
+            "import_records",
+            str(tmp_path / "late.csv"),
+            "--works",
+            "TRI",
+            "--now",
+            "2026-04-02T06:00:00Z",
+            stdout=io.StringIO(),
+        )
         after = by_key(queries.comparison(book, FIRST, LAST))
-        assert after["2026-03-30", "PEROXIDE"].used_mg_l.value == pytest.approx(before["2026-03-30", "PEROXIDE"].used_mg_l.value, rel=1e-3)
+        assert after["2026-03-30", "PEROXIDE"].used_mg_l.value == pytest.approx(
+            before["2026-03-30", "PEROXIDE"].used_mg_l.value, rel=1e-3
+        )
         assert states.refresh(book) == Book.objects.get(pk=book.pk).head_seq
 
     def test_a_correction_changes_the_day_and_the_past_stays_askable(self, book, tmp_path, settings):
         head = book.head_seq
         queries.comparison(book, FIRST, LAST)
         (tmp_path / "fix.csv").write_text(
-            "site,timestamp,parameter,value,unit,note,replaces\nTANK,2026-03-31T07:00,level,1.604,m,misread,yes\n", encoding="utf-8")
+            "site,timestamp,parameter,value,unit,note,replaces\nTANK,2026-03-31T07:00,level,1.604,m,misread,yes\n",
+            encoding="utf-8",
+        )
         call_command(
-            "import_records", str(tmp_path / "fix.csv"), "--works", "TRI", "--now", "2026-04-02T06:00:00Z", stdout=io.StringIO())
+            "import_records", str(tmp_path / "fix.csv"), "--works", "TRI", "--now", "2026-04-02T06:00:00Z", stdout=io.StringIO()
+        )
         now = by_key(queries.comparison(book, FIRST, LAST))["2026-03-30", "CAUSTIC"]
         then = by_key(queries.comparison(book, FIRST, LAST, known=head))["2026-03-30", "CAUSTIC"]
         # 20 L more: 320 L × 1.273 × 0.25 ÷ 12 ML

@@ -26,7 +26,8 @@ def reading(value: float = 7.2, **more) -> Reading:
 
 def append(book, *rows, client_id="one", received=None, now=NOW):
     return actions.append(
-        book=book, client_id=client_id, kind="line", received=received or {"client": client_id}, rows=rows, by=None, now=now)
+        book=book, client_id=client_id, kind="line", received=received or {"client": client_id}, rows=rows, by=None, now=now
+    )
 
 
 class TestAppend:
@@ -164,7 +165,7 @@ class TestVerify:
             ("readings_reading", "UPDATE readings_reading SET value = 7.9", "differs in value"),
             ("readings_reading", "DELETE FROM readings_reading WHERE line = 2", "is missing from its table"),
             ("ledger_entry", "UPDATE ledger_entry SET device = 'tablet 9'", "the chain is broken"),
-            ("ledger_entry", "UPDATE ledger_entry SET payload = '{\"received\":{},\"rows\":[]}'", "the chain is broken"),
+            ("ledger_entry", 'UPDATE ledger_entry SET payload = \'{"received":{},"rows":[]}\'', "the chain is broken"),
         ],
     )
     def test_what_was_altered_is_found(self, book, table, change, found):
@@ -202,7 +203,7 @@ def test_two_writers_make_one_gapless_chain():
             for n in range(10):
                 own = models.Book.objects.get(pk=book.pk)
                 append(own, reading(), client_id=f"{number}-{n}")
-        except Exception as problem:
+        except DatabaseError as problem:
             problems.append(problem)
         finally:
             connection.close()

@@ -46,7 +46,8 @@ def test_a_change_within_the_recent_past_does_not_linger():
     """Half of the last 28 days ran at the old design: the forecast is of the new one."""
     change = TODAY - dt.timedelta(days=14)
     made = forecast(
-        history(60, dose=lambda day: 3.0 if day > change else 2.0), TODAY, design=lambda day: 3.0 if day > change else 2.0)
+        history(60, dose=lambda day: 3.0 if day > change else 2.0), TODAY, design=lambda day: 3.0 if day > change else 2.0
+    )
     assert made.per_day_kg[0] == pytest.approx(30)
 
 

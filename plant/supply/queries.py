@@ -1,0 +1,196 @@
+"""How long each product lasts and when to order it, from the stock and the comparison of the past year."""
+
+from __future__ import annotations
+
+import datetime as dt
+from collections.abc import Callable
+from dataclasses import dataclass
+
+from chemistry import units
+from plant.dosing import products as active
+from plant.dosing import queries as dosing
+from plant.dosing.figures import VesselStock
+from plant.dosing.reckoning import capacity
+from plant.ledger.models import Book
+from plant.stock import queries as stock
+from plant.supply.forecast import DayUse, Forecast, forecast
+from plant.supply.window import Terms, Window, window
+from plant.works import queries as works
+from plant.works.described import Product
+from plant.works.stated import Stated
+
+PAST_DAYS = 430
+"""A year and what a season needs on either side."""
+
+
+@dataclass(frozen=True)
+class ProductSupply:
+    """One product over all its vessels. Masses active are in its dose basis."""
+
+    product: str
+    name: str
+    usable_active_kg: float | None
+    stock_kg: float | None
+    per_day_kg: float | None
+    days_of_supply: float | None
+    days_low: float | None
+    days_high: float | None
+    forecast: Forecast | None
+    window: Window | None
+    vessels: tuple[VesselStock, ...]
+    price_per_active_kg: float | None = None
+    currency: str = ""
+    remarks: tuple[str, ...] = ()
+
+
+def supply(book: Book, at: dt.datetime, *, known: int | None = None, stated: Stated | None = None) -> list[ProductSupply]:
+    """Every product in force at a moment, in the order stated."""
+    stated = stated or works.stated(book, known=known)
+    vessels = dosing.stock(book, at, known=known, stated=stated)
+    calendar = stated.calendar(at)
+    yesterday = calendar.day_of(at) - dt.timedelta(days=1)
+    history = _history(book, yesterday, known, stated)
+    return [
+        _one(
+            book,
+            stated,
+            product,
+            at,
+            yesterday,
+            history.get(product.code, {}),
+            tuple(row for row in vessels if row.product == product.code),
+            known,
+        )
+        for product in stated.products(at)
+    ]
+
+
+def _history(book: Book, last: dt.date, known: int | None, stated: Stated) -> dict[str, dict[dt.date, DayUse]]:
+    """Use per product and day. Points of one product add up by mass; the water is that of the point that treats most."""
+    rows = dosing.comparison(book, last - dt.timedelta(days=PAST_DAYS), last, known=known, stated=stated)
+    missing: dict[str, set[dt.date]] = {}
+    out: dict[str, dict[dt.date, DayUse]] = {}
+    for row in rows:
+        if not row.expected:
+            continue
+        if row.active_kg.value is None or row.volume_ml.value is None:
+            missing.setdefault(row.product, set()).add(row.day)
+            continue
+        before = out.setdefault(row.product, {}).get(row.day, DayUse(0.0, 0.0))
+        out[row.product][row.day] = DayUse(
+            before.active_kg + max(row.active_kg.value, 0.0), max(before.volume_ml, row.volume_ml.value)
+        )
+    return {code: {day: use for day, use in found.items() if day not in missing.get(code, ())} for code, found in out.items()}
+
+
+def _one(
+    book: Book,
+    stated: Stated,
+    product: Product,
+    at: dt.datetime,
+    yesterday: dt.date,
+    history: dict[dt.date, DayUse],
+    vessels: tuple[VesselStock, ...],
+    known: int | None,
+) -> ProductSupply:
+    made = forecast(history, yesterday, design=_design(stated, product, at))
+    usable = _sum(row.usable_active_kg for row in vessels)
+    kg = _sum(row.dip_kg for row in vessels)
+    remarks = []
+    if made is None:
+        remarks.append("too little past for a forecast")
+    elif made.past_checked == 0:
+        remarks.append("band: usual error, the past is too short to tell")
+    lasts = None if made is None or usable is None else made.lasts_days(usable)
+    price, currency = _price(book, product, at, known)
+    return ProductSupply(
+        product=product.code,
+        name=product.name,
+        usable_active_kg=usable,
+        stock_kg=kg,
+        per_day_kg=None if made is None else made.total(7) / 7,
+        days_of_supply=lasts,
+        days_low=None if made is None or usable is None else made.lasts_days(usable, high=True),
+        days_high=None,
+        forecast=made,
+        window=_window(stated, product, at, yesterday, made, usable, kg, vessels),
+        vessels=vessels,
+        price_per_active_kg=price,
+        currency=currency,
+        remarks=tuple(remarks),
+    )
+
+
+def _sum(values: object) -> float | None:
+    found = [value for value in values if value is not None]  # type: ignore[attr-defined]
+    return sum(found) if found else None
+
+
+def _design(stated: Stated, product: Product, at: dt.datetime) -> Callable[[dt.date], float | None]:
+    """The design doses of a product's points added up, on any day, past or stated ahead."""
+    points = [point.code for point in stated.dosing_points(at) if point.product == product.code]
+    calendar = stated.calendar(at)
+
+    def on(day: dt.date) -> float | None:
+        moment = calendar.start_of(day) + dt.timedelta(hours=12)
+        return _sum(stated.design_dose_mg_l(point, moment) for point in points)
+
+    return on
+
+
+def _window(
+    stated: Stated,
+    product: Product,
+    at: dt.datetime,
+    yesterday: dt.date,
+    made: Forecast | None,
+    usable: float | None,
+    kg: float | None,
+    vessels: tuple[VesselStock, ...],
+) -> Window | None:
+    """In kg of product, at the strength the stock has now."""
+    if made is None or usable is None or not kg or product.load_kg is None or product.lead_time_days is None:
+        return None
+    held_active = _sum(row.active_kg for row in vessels) or 0.0
+    share = held_active / kg if kg else 0.0
+    if share <= 0:
+        return None
+    room = 0.0
+    for row in vessels:
+        vessel = stated.vessel(row.vessel, at)
+        size = capacity(vessel)
+        if vessel.role == "bulk" and size and row.dip_kg is not None:
+            density = 1.0 if vessel.on_scale else (product.density_kg_per_L or 1.0)
+            room = max(room, size * density * vessel.max_fill_pct / 100 - row.dip_kg)
+    if room == 0.0:
+        return None
+    terms = Terms(
+        product.lead_time_days, product.load_kg, product.reserve_days or 0.0, product.shelf_life_days, product.no_delivery_days
+    )
+
+    def use_kg(days: int, edge: str) -> float:
+        low, high = made.band(max(days, 1))
+        total = {"low": low, "high": high}.get(edge, made.total(max(days, 1)))
+        return (total if days > 0 else 0.0) / share
+
+    return window(today=yesterday + dt.timedelta(days=1), usable_kg=usable / share, room_kg=room, terms=terms, use_kg=use_kg)
+
+
+def _price(book: Book, product: Product, at: dt.datetime, known: int | None) -> tuple[float | None, str]:
+    """Price per delivered active kilogram over the last year, by what the certificates say was in the loads."""
+    paid = mass = 0.0
+    currency = ""
+    for delivery in stock.deliveries(book, start=at - dt.timedelta(days=365), end=at, known=known):
+        if delivery.product != product.code or delivery.cost is None:
+            continue
+        if currency and delivery.currency != currency:
+            return None, ""
+        density = delivery.density_kg_per_l or product.density_kg_per_L
+        if units.kind_of(delivery.unit) != "mass" and not density:
+            continue
+        kg = active.quantity_kg(delivery.quantity, delivery.unit, density)
+        share = active.fraction(product, delivery.strength, delivery.strength_basis or None, density)
+        mass += active.active_kg(product, kg, kg * share)
+        paid += delivery.cost
+        currency = delivery.currency
+    return (paid / mass if mass else None), currency
