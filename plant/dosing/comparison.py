@@ -36,7 +36,8 @@ def comparison(
     if known is not None:
         stated = works.stated(book, known=known)
         return [
-            row for block in _blocks(days)
+            row
+            for block in _blocks(days)
             for row in day_doses(carry.reckon(book, stated, block, known=known, bypass=bypass), block)
         ]
     through = states.refresh(book)

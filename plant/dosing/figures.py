@@ -93,7 +93,11 @@ class PeriodDose:
 
 @dataclass(frozen=True)
 class VesselStock:
-    """What a vessel holds at a moment: by the book, by the dip, and the difference with its uncertainty."""
+    """What a vessel holds at a moment: by the book, by the dip, and the difference with its uncertainty.
+
+    ``days_of_supply`` is the product's, over all its vessels, at the mean use of the last four weeks. plant.supply looks
+    ahead: there it is reckoned from the forecast, and the order window is filled in.
+    """
 
     vessel: str
     product: str

@@ -45,7 +45,6 @@ class Supply:
 
     usable_active_kg: float | None
     active_per_day_kg: float | None
-    product_kg: float | None
 
     @property
     def days(self) -> float | None:
@@ -67,7 +66,7 @@ def _supply(out: Reckoning, product: Product, at: dt.datetime) -> Supply:
             drawn = [consumption(out, point, product, day).active_kg for point in _points_of(out, product.code, at)]
             if drawn and all(item is not None for item in drawn):
                 per_day.append(sum(item for item in drawn if item is not None))
-    usable = kg = 0.0
+    usable = 0.0
     seen = False
     for walked in out.walks.values():
         if walked.vessel.product != product.code or out.stated.state("vessel", walked.vessel.code, at) == "off":
@@ -76,10 +75,9 @@ def _supply(out: Reckoning, product: Product, at: dt.datetime) -> Supply:
         if held is None:
             continue
         seen = True
-        kg += held.kg
         usable += products.active_kg(product, held.usable_kg, held.usable_kg * held.fraction)
     rate = statistics.fmean(per_day) if per_day else None
-    return Supply(usable if seen else None, rate, kg if seen else None)
+    return Supply(usable if seen else None, rate)
 
 
 @dataclass(frozen=True)
@@ -137,7 +135,6 @@ def _vessel(out: Reckoning, walked: VesselWalk, at: dt.datetime, supply: dict[st
     contents = walked.walk.contents_at(at, walked.decay)
     assert contents is not None  # held is known
     total = supply[product.code]
-    earliest, latest = _order_window(out, walked, total, held, at)
     size = capacity(walked.vessel)
     active = products.active_kg(product, held.kg, held.kg * held.fraction)
     usable = products.active_kg(product, held.usable_kg, held.usable_kg * held.fraction)
@@ -160,8 +157,6 @@ def _vessel(out: Reckoning, walked: VesselWalk, at: dt.datetime, supply: dict[st
         strength_basis=product.strength_basis,
         days_of_supply=total.days,
         level_fraction=None if not size else held.mark.amount / size,
-        order_from=earliest,
-        order_by=latest,
         remarks=tuple(dict.fromkeys(remarks)),
     )
 
@@ -225,29 +220,6 @@ def _used_by_witness(
     kg = rate * volume * share
     # The scatter of the days averages out over the week; what the dose really does meanwhile does not: 3 % is kept for it.
     return kg, kg * math.hypot(spread / rate / math.sqrt(BOOK_DAYS), 0.03)
-
-
-def _order_window(
-    out: Reckoning,
-    walked: VesselWalk,
-    supply: Supply,
-    held: Held,
-    at: dt.datetime,
-) -> tuple[dt.date | None, dt.date | None]:
-    """From the first day on which a whole load, ordered then, fits at its arrival, to the last that keeps the reserve."""
-    product, vessel = walked.product, walked.vessel
-    if product.lead_time_days is None or supply.days is None or not supply.product_kg or not supply.usable_active_kg:
-        return None, None
-    today = out.calendar.local(at).date()
-    latest = today + dt.timedelta(days=math.floor(supply.days - (product.reserve_days or 0.0) - product.lead_time_days))
-    earliest = None
-    size = capacity(vessel)
-    if product.load_kg and size and supply.active_per_day_kg:
-        room = size * vessel.max_fill_pct / 100 * _kg_per_unit(walked, at) - held.kg
-        per_day = supply.active_per_day_kg / max(products.active_kg(product, 1.0, held.fraction), 1e-9)
-        wait = max((product.load_kg - room) / per_day - product.lead_time_days, 0.0)
-        earliest = today + dt.timedelta(days=math.ceil(wait))
-    return earliest, latest
 
 
 def reconciliation(

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import datetime as dt
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from chemistry import units
 from plant.dosing import products as active
@@ -12,7 +12,7 @@ from plant.dosing import queries as dosing
 from plant.dosing.figures import VesselStock
 from plant.dosing.reckoning import capacity
 from plant.ledger.models import Book
-from plant.stock import queries as stock
+from plant.stock import queries as movements
 from plant.supply.forecast import DayUse, Forecast, forecast
 from plant.supply.window import Terms, Window, window
 from plant.works import queries as works
@@ -63,6 +63,26 @@ def supply(book: Book, at: dt.datetime, *, known: int | None = None, stated: Sta
         )
         for product in stated.products(at)
     ]
+
+
+def stock(book: Book, at: dt.datetime, *, known: int | None = None, stated: Stated | None = None) -> list[VesselStock]:
+    """Every vessel, its days of supply from the forecast and its product's order window filled in."""
+    out = []
+    for product in supply(book, at, known=known, stated=stated):
+        for row in product.vessels:
+            remarks = [*row.remarks, *product.remarks]
+            if product.window is not None:
+                remarks.append(f"order: {product.window.why}")
+            out.append(
+                replace(
+                    row,
+                    days_of_supply=product.days_of_supply,
+                    order_from=product.window.order_from if product.window else None,
+                    order_by=product.window.order_by if product.window else None,
+                    remarks=tuple(remarks),
+                )
+            )
+    return out
 
 
 def _history(book: Book, last: dt.date, known: int | None, stated: Stated) -> dict[str, dict[dt.date, DayUse]]:
@@ -180,7 +200,7 @@ def _price(book: Book, product: Product, at: dt.datetime, known: int | None) -> 
     """Price per delivered active kilogram over the last year, by what the certificates say was in the loads."""
     paid = mass = 0.0
     currency = ""
-    for delivery in stock.deliveries(book, start=at - dt.timedelta(days=365), end=at, known=known):
+    for delivery in movements.deliveries(book, start=at - dt.timedelta(days=365), end=at, known=known):
         if delivery.product != product.code or delivery.cost is None:
             continue
         if currency and delivery.currency != currency:

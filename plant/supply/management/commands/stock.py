@@ -4,8 +4,9 @@ from typing import Any
 
 from django.core.management.base import CommandParser
 
-from plant.dosing import figures, queries
+from plant.dosing import figures
 from plant.dosing.management.commands.comparison import number
+from plant.supply import queries
 from plant.works import commands
 
 HEADER = (
@@ -40,7 +41,7 @@ class Command(commands.WorksCommand):
 
 
 def cells(row: figures.VesselStock) -> tuple[Any, ...]:
-    """One row of the CSV."""
+    """One row of the CSV; days of supply and the order window are those of the product over all its vessels."""
     return (
         row.vessel,
         row.product,
