@@ -46,7 +46,7 @@ class Month:
     start: dt.datetime
     end: dt.datetime
     works: described.Works
-    explanations: dict[str, str] = field(default_factory=dict)
+    explanations: dict[str, dict[str, str]] = field(default_factory=dict)
 
     @property
     def at(self) -> dt.datetime:
@@ -165,7 +165,7 @@ class Month:
 
 def gather(
     book: Book, year: int, month: int, *, now: dt.datetime, known: int | None = None, unchanged: bool = False,
-    explanations: dict[str, str] | None = None,
+    explanations: dict[str, dict[str, str]] | None = None,
 ) -> Month:
     """The month as known at a seq (None: the head of the book). ``unchanged`` says that nothing recorded since that seq
     touches it, so that kept figures may be used. Raises NoSuchMonth.

@@ -18,7 +18,6 @@ def section(month: Month) -> Section:
     if not month.periods:
         return Section(KEY, TITLE, (Text("No dosing point is stated."),))
     blocks: list[Block] = [
-        strips(month),
         _table(month, "use-month", f"Use per volume treated, {month.words}", month.periods),
         _table(
             month, "use-year", f"Year to date, {month.year_first:%Y-%m-%d} to {month.last:%Y-%m-%d}",
@@ -66,7 +65,7 @@ def _table(month: Month, name: str, caption: str, rows: list[PeriodDose]) -> Tab
     body = []
     for row in rows:
         doses_known = [row.used_mg_l.value, row.design_mg_l.value, row.need_mg_l.value]
-        places = measures.decimals(doses_known)
+        places = measures.decimals(doses_known, figures=4, most=3)
         volume, product = show.shown(row.volume_ml.value, "ML"), show.shown(row.product_kg.value, "kg")
         active = show.shown(row.active_kg.value, "kg")
         each = None if product is None or not volume else product / volume

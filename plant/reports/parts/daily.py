@@ -92,7 +92,7 @@ def _places(month: Month, series: list[tuple[str, str, str, list[Figure | None],
     for _, code, field, figures, _ in series:
         if field in ("used_mg_l", "design_mg_l", "need_mg_l"):
             known = [figure.value for figure in figures if figure is not None]
-            shared[code] = max(shared.get(code, 0), measures.decimals(known, most=3))
+            shared[code] = max(shared.get(code, 0), measures.decimals(known, figures=4, most=3))
     for unit, code, field, figures, _ in series:
         if code and field != "product_kg":
             out.append(shared[code])

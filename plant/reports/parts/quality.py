@@ -17,6 +17,7 @@ from plant.reports.pdf.document import Block, Cell, Column, Section, Table, Text
 from plant.works.described import Limit
 
 KEY, TITLE = "quality", "Water quality"
+WIDTH = 13  # cells of a row without a second mean
 NEVER_AVERAGED = frozenset({"pH", "total_coliform", "e_coli"})
 SUBSTITUTES = {"zero": "zero", "half": "half of x", "full": "x itself"}
 
@@ -63,10 +64,11 @@ def _site(month: Month, site: str, name: str, due: dict[tuple[str, str], expecte
     if not body:
         return None
     counted = [Column(head) for head in ("due", "present", "missing", "late", "corrected", "below/ above", "doubtful", "set aside")]
+    means = [Column("mean")] + ([Column("mean with doubtful")] if any(len(row) > WIDTH for row in body) else [])
+    width = WIDTH + len(means) - 1
     return Table(f"quality-{site}", f"{site}, {name}", (
-        Column("Parameter", number=False), Column("Unit", number=False), *counted, Column("lowest"), Column("middle"), Column("highest"),
-        Column("mean"), Column("mean with doubtful"),
-    ), tuple(body), 2)
+        Column("Parameter", number=False), *counted, Column("lowest"), Column("middle"), Column("highest"), *means,
+    ), tuple((*row, Cell(""))[:width] for row in body), 1)
 
 
 def _row(month: Month, parameter: str, points: list[Point], line: expected.Due | None) -> tuple[Cell, ...]:
@@ -86,12 +88,12 @@ def _row(month: Month, parameter: str, points: list[Point], line: expected.Due |
     )
     averaged = parameter.partition("|")[0] not in NEVER_AVERAGED
     return (
-        Cell(label), Cell(unit), *counts,
+        Cell(f"{label}, {unit}" if unit else label), *counts,
         values.cell(month, min(usable, key=values.order), places) if usable else Cell(measures.UNKNOWN),
         _middle(month, usable, places),
         values.cell(month, max(usable, key=values.order), places) if usable else Cell(measures.UNKNOWN),
         _mean(month, usable, places) if averaged else Cell("not averaged" if usable else measures.UNKNOWN),
-        _mean(month, usable + doubtful, places) if averaged and doubtful else Cell(""),
+        *([_mean(month, usable + doubtful, places)] if averaged and doubtful else []),
     )
 
 

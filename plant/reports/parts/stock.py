@@ -57,12 +57,12 @@ def _vessels(month: Month) -> Table:
         strength = measures.decimals([row.strength], figures=4)
         body.append((
             Cell(row.vessel), Cell(row.product), *(measures.cell(amount, places) for amount in amounts),
-            measures.cell(row.strength, strength), Cell(row.strength_basis.replace("_", " ")),
+            measures.cell(row.strength, strength),
             measures.cell(row.days_of_supply, 0), Cell(month.local(row.dip_at) if row.dip_at else "no dip"),
-            Cell("; ".join(row.remarks)),
+            Cell("; ".join([f"strength in {row.strength_basis.replace('_', ' ')}", *row.remarks])),
         ))
     return Table("vessels", f"Vessels at the end of the month, {month.local(month.end)}", (
         Column("Vessel", number=False), Column("Product", number=False), Column("book", kg), Column("dip", kg),
-        Column("book − dip", kg), Column("± 2 sd", kg), Column("strength"), Column("basis", number=False, wraps=True),
+        Column("book − dip", kg), Column("± 2 sd", kg), Column("strength"),
         Column("supply", "days"), Column("last dip", number=False), Column("Remarks", number=False, wraps=True),
     ), tuple(body), 2, 0)

@@ -16,7 +16,7 @@ from plant.reports.pdf import faces, ink
 from plant.reports.pdf.document import Cell, Column, Table
 from plant.reports.pdf.tagged import Element
 
-PAD_X = 3.5
+PAD_X = 2.7
 PAD_Y = 2.1
 MARK_WIDTH = 5.0
 LINE_CELL = 9.4

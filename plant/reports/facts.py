@@ -1,0 +1,102 @@
+"""The figures of a report one by one: what the CSV and XLSX hold, and what two issues are compared by."""
+
+from __future__ import annotations
+
+import csv
+import io
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+from plant.reports.pdf.document import NOTICE, Document, Section, Table
+
+CSV_HEADER = ("month", "issue", "section", "table", "row", "quantity", "unit", "value", "full_value", "text", "mark", "trail")
+_FORMULA = ("=", "+", "-", "@", "\t", "\r", "\n")
+
+
+@dataclass(frozen=True)
+class Fact:
+    """One cell of one table: a number with its unit, or words. ``printed`` is exactly what stands in the report."""
+
+    section: str
+    table: str
+    row: str
+    quantity: str
+    unit: str
+    printed: str
+    value: float | None
+    mark: str
+    trail: str
+
+    @property
+    def place(self) -> tuple[str, str, str, str]:
+        return self.section, self.table, self.row, self.quantity
+
+    @property
+    def words(self) -> str:
+        """Which figure this is, for a list of those that moved."""
+        return " · ".join(part for part in (self.table, self.row, f"{self.quantity} ({self.unit})" if self.unit else self.quantity) if part)
+
+
+def facts(document: Document) -> Iterator[Fact]:
+    """Every cell beside the row labels, in the order of print."""
+    for section in document.sections:
+        for block in section.blocks:
+            if isinstance(block, Table):
+                yield from _of_table(section, block)
+
+
+def _of_table(section: Section, table: Table) -> Iterator[Fact]:
+    seen: dict[str, int] = {}
+    for row in table.rows:
+        label = ", ".join(cell.text for cell in row[:table.labels])
+        seen[label] = seen.get(label, 0) + 1
+        name = label if seen[label] == 1 else f"{label} ({seen[label]})"
+        for column, cell in zip(table.columns[table.labels:], row[table.labels:], strict=True):
+            if not cell.text:
+                continue
+            quantity = " ".join(part for part in (column.group, column.head) if part)
+            yield Fact(section.key, table.name, name, quantity, column.unit, cell.text, cell.value, cell.mark, cell.key)
+
+
+def moved(before: Document, after: Document, *, leave_out: frozenset[str] = frozenset()) -> list[tuple[str, str, str]]:
+    """Figures that print otherwise: (which, was, is). Sections named in ``leave_out`` are not compared."""
+    old = {fact.place: fact for fact in facts(before) if fact.section not in leave_out}
+    new = {fact.place: fact for fact in facts(after) if fact.section not in leave_out}
+    out = []
+    for place, fact in {**old, **new}.items():
+        was, now = old.get(place), new.get(place)
+        if (was.printed if was else None) != (now.printed if now else None):
+            out.append((fact.words, was.printed if was else "not printed", now.printed if now else "not printed"))
+    return out
+
+
+def safe(text: str) -> str:
+    """Words that a spreadsheet will not take for a formula."""
+    return f"'{text}" if text.startswith(_FORMULA) else text
+
+
+def to_csv(document: Document) -> str:
+    """One row a fact. ``value`` is the number as printed, ``full_value`` before rounding; words stand in ``text`` only."""
+    out = io.StringIO()
+    writer = csv.writer(out, lineterminator="\n")
+    writer.writerow(CSV_HEADER)
+    issue = "draft" if document.draft else f"{document.number} revision {document.revision}"
+    for fact in facts(document):
+        number = plain_number(fact)
+        head = [document.month, issue, fact.section, fact.table, safe(fact.row), safe(fact.quantity), fact.unit]
+        full = "" if number is None or fact.value is None else repr(fact.value)
+        writer.writerow([*head, number or "", full, safe(fact.printed) if number is None else "", fact.mark, fact.trail])
+    writer.writerow([document.month, issue, "notice", "", "", "", "", "", "", NOTICE, "", ""])
+    return out.getvalue()
+
+
+def plain_number(fact: Fact) -> str | None:
+    """The printed number with an ASCII minus sign; None for words, and for values below or above a bound."""
+    text = fact.printed.replace("−", "-")
+    if fact.value is None:
+        return None
+    try:
+        float(text)
+    except ValueError:
+        return None
+    return text
