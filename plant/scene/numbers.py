@@ -9,16 +9,24 @@ def tidy(value: float) -> str:
     """Three figures that count, never an exponent, at most four decimals: 0.043, 1.12, 12.3, 1 234."""
     if value == 0:
         return "0"
-    decimals = min(4, max(0, 2 - math.floor(math.log10(abs(value)))))
-    text = f"{value:,.{decimals}f}".replace(",", "\u202f").replace("-", "−")
+    text = _written(value, _decimals(value))
     return "0" if not any(figure in text for figure in "123456789") else text
 
 
-def alike(value: float, other: float) -> str:
-    """``value`` with as many decimals as ``other`` shows; for an uncertainty beside its figure."""
-    text = tidy(other)
-    decimals = len(text.partition(".")[2])
-    return f"{value:.{decimals}f}".replace("-", "−")
+def _decimals(value: float) -> int:
+    return 4 if value == 0 else min(4, max(0, 2 - math.floor(math.log10(abs(value)))))
+
+
+def _written(value: float, decimals: int) -> str:
+    return f"{value:,.{decimals}f}".replace(",", "\u202f").replace("-", "−")
+
+
+def with_spread(value: float, spread: float) -> str:
+    """A value and what it is give or take, both to the second figure of the spread: 0.96 ± 0.52, 1.17 ± 0.08, −17 ± 47."""
+    if spread <= 0:
+        return tidy(value)
+    decimals = max(0, min(_decimals(value), 1 - math.floor(math.log10(spread))))
+    return f"{_written(value, decimals)} ± {_written(spread, decimals)}"
 
 
 def scale(low: float, high: float, wanted: int = 4) -> list[float]:
@@ -36,7 +44,7 @@ def tick(value: float, steps: list[float]) -> str:
     """A step of a scale with just the decimals that the scale needs."""
     gap = steps[1] - steps[0] if len(steps) > 1 else abs(value) or 1
     decimals = next((n for n in range(5) if abs(gap * 10**n - round(gap * 10**n)) < 1e-6), 4)
-    return f"{value:,.{decimals}f}".replace(",", "\u202f").replace("-", "−")
+    return _written(value, decimals)
 
 
 def width_of(words: str, size: float = 14) -> float:

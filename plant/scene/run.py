@@ -95,8 +95,8 @@ def run(
     """The picture of one quantity from ``start`` to ``end``; times are local, with their zone.
 
     A point without a value breaks the line, and so does a step longer than ``longest_step``: a gap stays a gap. Values
-    outside a limit carry its mark. Limits that lie far outside the values are named in the summary and not drawn. ``dated``: a value stands for a day,
-    so that the hour of its place is not read out.
+    outside a limit carry its mark. Limits that lie far outside the values are named in the summary and not drawn.
+    ``dated``: a value stands for a day, so that the hour of its place is not read out.
     """
     low, high = _reach(points, need, bands, limits)
     bottom = height - AXIS_H - (FLAG_H if flags else 0)

@@ -36,12 +36,12 @@ def dose_strip(
     the numbers used, design and need lead to.
     """
     numbers_w = 132.0
-    x0, x1 = 10.0, width - numbers_w - 14
+    x0, x1 = 10.0, width - numbers_w - 22
     known = [value for value in (used, need) if value is not None]
     if used is not None and used_sd and whisker:
         known.append(used + 2 * used_sd)
     top = max([1.6 * design if design else 0.0, *(1.15 * value for value in known)], default=0.0)
-    right = _numbers(width - numbers_w, used, used_sd if whisker else None, design, need, weak, opens or {})
+    right = _numbers(width - numbers_w, used, used_sd if whisker else None, design, need, opens or {})
     summary = _summary(unit, used, used_sd if whisker else None, design, need, weak, why_unknown)
     if top <= 0:
         shapes = (*_unknown(x0, x1, "nothing known yet"), *right)
@@ -56,7 +56,7 @@ def dose_strip(
         band_w = max(at(high) - at(low), 3)
         shapes.append(scene.Rect(at(low), SCALE_Y - BAND_H / 2, band_w, BAND_H, fill="band"))
     shapes.append(scene.Line(x0, SCALE_Y, x1, SCALE_Y, stroke="edge", width=1))
-    steps = numbers.scale(0, top, 4 if width < 500 else 8)
+    steps = numbers.scale(0, top, 3 if width < 300 else 4 if width < 500 else 8)
     for step in steps:
         shapes.append(scene.Line(at(step), SCALE_Y, at(step), SCALE_Y + 16, stroke="line"))
         words = numbers.tick(step, steps)
@@ -76,6 +76,8 @@ def dose_strip(
             for tip in (left, end):
                 shapes.append(scene.Line(tip, SCALE_Y - 6, tip, SCALE_Y + 6, stroke="water", width=2))
         fill = "card" if weak else "water"
+        if weak:
+            shapes.append(scene.Text(x0, 12, "weak day", "quiet"))
         shapes.append(scene.Circle(x, SCALE_Y, 7, fill=fill, stroke="water", width=2.5))
     return scene.Scene(width, HEIGHT, title, summary, (*shapes, *right))
 
@@ -93,26 +95,22 @@ def _numbers(
     sd: float | None,
     design: float | None,
     need: float | None,
-    weak: bool,
     opens: Mapping[str, str],
 ) -> tuple[scene.Shape, ...]:
-    if used is None:
-        used_words = "not known"
-    else:
-        used_words = numbers.tidy(used) + (f" ± {numbers.alike(2 * sd, used)}" if sd else "")
+    used_words = "not known" if used is None else numbers.with_spread(used, 2 * sd) if sd else numbers.tidy(used)
     rows = [
-        ("weak" if weak else "used", used_words, "quiet" if used is None else "water", used is not None),
+        ("used", used_words, "quiet" if used is None else "water", used is not None),
         ("design", "not stated" if design is None else numbers.tidy(design), "quiet" if design is None else "ink", False),
         ("need", "not known" if need is None else numbers.tidy(need), "quiet" if need is None else "need", False),
     ]
     shapes: list[scene.Shape] = []
     for index, (name, words, fill, bold) in enumerate(rows):
         y = 19 + index * ROW_H
-        row = (scene.Text(x, y, name, "quiet"), scene.Text(x + 52, y, words, fill, bold=bold))
-        href = opens.get("used" if name == "weak" else name, "")
+        row = (scene.Text(x, y, name, "quiet"), scene.Text(x + 50, y, words, fill, bold=bold))
+        href = opens.get(name, "")
         if href:
             # Invisible, as large as a finger's mark may be small: the whole row opens.
-            row = (scene.Rect(x - 4, y - 17, 136, ROW_H), *row, scene.Line(x + 52, y + 4, x + 84, y + 4, "edge", 1.5, (1.5, 3)))
+            row = (scene.Rect(x - 4, y - 17, 136, ROW_H), *row, scene.Line(x + 50, y + 4, x + 84, y + 4, "edge", 1.5, (1.5, 3)))
         shapes.append(scene.Group(row, f"{name} {words}: how it was made" if href else "", href))
     return tuple(shapes)
 
@@ -124,8 +122,8 @@ def _summary(
     if used is None:
         parts.append("Used: not known" + (f" ({why})" if why else ""))
     else:
-        spread = f", give or take {numbers.alike(2 * sd, used)}" if sd else ""
-        parts.append(f"Used {numbers.tidy(used)} {unit}{spread}" + (" (a weak day)" if weak else ""))
+        words = numbers.with_spread(used, 2 * sd) if sd else numbers.tidy(used)
+        parts.append(f"Used {words} {unit}" + (" (a weak day)" if weak else ""))
     parts.append("design not stated" if design is None else f"design {numbers.tidy(design)} {unit}")
     parts.append("need not known" if need is None else f"need {numbers.tidy(need)} {unit}")
     return "; ".join(parts) + "."

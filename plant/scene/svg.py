@@ -20,7 +20,8 @@ def paint(picture: scene.Scene, ident: str) -> str:
         stops = [[_n(stop.x), None if stop.y is None else _n(stop.y), stop.words] for stop in picture.cursor]
         cursor = f' data-cursor="{escape(json.dumps(stops, ensure_ascii=False))}"'
     return (
-        f'<svg class="scene" viewBox="0 0 {_n(picture.width)} {_n(picture.height)}" role="{role}" '
+        f'<svg class="scene" width="{_n(picture.width)}" height="{_n(picture.height)}" '
+        f'viewBox="0 0 {_n(picture.width)} {_n(picture.height)}" role="{role}" '
         f'aria-labelledby="{ident}-t {ident}-d"{cursor}>'
         f'<title id="{ident}-t">{escape(picture.title)}</title><desc id="{ident}-d">{escape(picture.summary)}</desc>'
         + "".join(_shape(one) for one in picture.shapes)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import datetime as dt
+import itertools
 import re
 from xml.etree import ElementTree as ET
 from zoneinfo import ZoneInfo
@@ -30,7 +31,8 @@ def flat(shapes):
 
 def of(picture: scene.Scene, kind: type, **attributes):
     return [
-        one for one in flat(picture.shapes)
+        one
+        for one in flat(picture.shapes)
         if isinstance(one, kind) and all(getattr(one, name) == value for name, value in attributes.items())
     ]
 
@@ -49,13 +51,25 @@ def hypo(**changes) -> scene.Scene:
 class TestNumbers:
     @pytest.mark.parametrize(
         ("value", "text"),
-        [(0, "0"), (0.0432, "0.0432"), (1.117, "1.12"), (12.34, "12.3"), (1234.4, "1\u202f234"), (-0.5, "−0.500"), (0.00001, "0")],
+        [
+            (0, "0"),
+            (0.0432, "0.0432"),
+            (1.117, "1.12"),
+            (12.34, "12.3"),
+            (1234.4, "1\u202f234"),
+            (-0.5, "−0.500"),
+            (0.00001, "0"),
+        ],
     )
     def test_a_number_shows_three_figures(self, value, text):
         assert numbers.tidy(value) == text
 
-    def test_an_uncertainty_takes_the_decimals_of_its_figure(self):
-        assert numbers.alike(0.0812, 1.17) == "0.08"
+    @pytest.mark.parametrize(
+        ("value", "spread", "text"),
+        [(0.959, 0.523, "0.96 ± 0.52"), (1.17, 0.0812, "1.17 ± 0.08"), (-16.9, 46.6, "−17 ± 47"), (184.2, 8, "184 ± 8")],
+    )
+    def test_a_spread_shows_two_figures_and_no_more_than_the_value(self, value, spread, text):
+        assert numbers.with_spread(value, spread) == text
 
     def test_a_scale_has_round_steps_inside(self):
         assert numbers.scale(0, 1.76, 4) == [0, 0.5, 1.0, 1.5]
@@ -96,7 +110,7 @@ class TestDoseStrip:
         picture = hypo(whisker=False)
         assert of(picture, scene.Line, stroke="water") == []
         assert not any("±" in one for one in words(picture))
-        assert "give or take" not in picture.summary
+        assert "±" not in picture.summary
 
     def test_a_weak_day_is_a_hollow_dot(self):
         assert of(hypo(weak=True), scene.Circle)[0].fill == "card"
@@ -143,9 +157,7 @@ class TestRun:
     def test_a_value_outside_a_limit_carries_its_mark_and_is_counted(self):
         points = [run.Point(day(0), 1.0), run.Point(day(1), 1.6, level="action"), run.Point(day(2), 1.1)]
         limit = run.Limit(1.5, "action high", "action")
-        picture = run.run(
-            title="t", quantity="Dose used", unit="mg/L", points=points, start=day(0), end=day(3), limits=[limit]
-        )
+        picture = run.run(title="t", quantity="Dose used", unit="mg/L", points=points, start=day(0), end=day(3), limits=[limit])
         assert of(picture, scene.Poly, fill="action")
         assert "action high" in words(picture)
         assert "1 outside a limit; action high at 1.50 mg/L" in picture.summary
@@ -176,10 +188,9 @@ class TestRun:
 
     def test_time_labels_do_not_touch(self):
         picture = self.picture([1.0 + n / 1000 for n in range(90)])
-        labels = sorted(
-            (one for one in of(picture, scene.Text, anchor="middle") if one.y > 250), key=lambda one: one.x)
+        labels = sorted((one for one in of(picture, scene.Text, anchor="middle") if one.y > 250), key=lambda one: one.x)
         assert len(labels) > 5
-        for left, right in zip(labels, labels[1:], strict=False):
+        for left, right in itertools.pairwise(labels):
             assert right.x - left.x > numbers.width_of(left.words) / 2 + numbers.width_of(right.words) / 2
 
 
@@ -246,7 +257,8 @@ class TestSvg:
     def test_a_picture_with_links_is_not_one_image(self):
         flags = [run.Flag(day(1), "delivery", href="/x/?a=1&b=2")]
         picture = run.run(
-            title="t", quantity="q", unit="m", points=[run.Point(day(0), 1.0)], start=day(0), end=day(2), flags=flags)
+            title="t", quantity="q", unit="m", points=[run.Point(day(0), 1.0)], start=day(0), end=day(2), flags=flags
+        )
         text = svg.paint(picture, "two")
         assert 'role="group"' in text
         assert re.search(r'<a href="/x/\?a=1&amp;b=2" aria-label="2 Mar: delivery">', text)

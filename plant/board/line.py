@@ -1,0 +1,144 @@
+"""The works as its line of water: what is sampled, in the order of the water, and what is dosed on the way there."""
+
+from __future__ import annotations
+
+import datetime as dt
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass
+
+from django.utils.safestring import SafeString, mark_safe
+
+from plant import clock, scene
+from plant.board import pictures, shown
+from plant.dosing.figures import DayDose
+from plant.readings.queries import Point
+from plant.scene import svg
+from plant.works import described, parameters
+from plant.works.stated import Stated
+
+
+@dataclass(frozen=True)
+class Value:
+    """The newest value of one parameter at a point. ``level`` where an open deviation speaks of it."""
+
+    label: str
+    words: str
+    unit: str
+    when: str
+    path: str
+    level: str = ""
+    doubtful: bool = False
+    corrected: bool = False
+
+
+@dataclass(frozen=True)
+class Dose:
+    """A dosing point with the strip of the last complete day. ``picture`` is None while it is not in service."""
+
+    code: str
+    name: str
+    product: str
+    state: str
+    path: str
+    level: str
+    picture: scene.Scene | None
+
+    @property
+    def strip(self) -> SafeString:
+        """The picture as markup."""
+        return mark_safe(svg.paint(self.picture, f"strip-{self.code}")) if self.picture else SafeString("")
+
+
+@dataclass(frozen=True)
+class Stop:
+    """A sample point, its newest values, and the doses on the way to it."""
+
+    code: str
+    name: str
+    stage: str
+    values: tuple[Value, ...]
+    doses: tuple[Dose, ...]
+
+
+def stops(
+    stated: Stated,
+    *,
+    now: dt.datetime,
+    newest: Mapping[tuple[str, str], Point],
+    doses: Iterable[DayDose],
+    levels: Mapping[tuple[str, str], str],
+    whisker: bool,
+    code: str,
+) -> list[Stop]:
+    """The line from source to supply.
+
+    ``levels`` gives the worst open deviation of (place, parameter), and of (place, "") for the place itself. A dosing
+    point stands on the way to the sample point that it is stated to act on; one that names none comes at the end.
+    """
+    works, calendar = stated.works(now), stated.calendar(now)
+    known = parameters.known(stated, now)
+    rows = {row.dosing_point: row for row in doses}
+    points = stated.sample_points(now)
+    places = {point.code for point in points}
+    by_place: dict[str, list[Dose]] = {}
+    for point in stated.dosing_points(now):
+        place = point.sample_point if point.sample_point in places else ""
+        by_place.setdefault(place or "", []).append(
+            _dose(stated, point, rows.get(point.code), now, levels.get((point.code, ""), ""), whisker, code)
+        )
+    order = list(known)
+    found = []
+    for sample_point in points:
+        here = sorted(
+            (point for (site, _), point in newest.items() if site == sample_point.code),
+            key=lambda point: order.index(point.parameter) if point.parameter in order else len(order),
+        )
+        values = tuple(_value(point, known.get(point.parameter), works, now, calendar, levels, code) for point in here)
+        doses_here = tuple(by_place.get(sample_point.code, ()))
+        found.append(Stop(sample_point.code, sample_point.name, sample_point.stage, values, doses_here))
+    if by_place.get(""):
+        found.append(Stop("", "Dosed elsewhere", "", (), tuple(by_place[""])))
+    return found
+
+
+def _value(
+    point: Point,
+    parameter: parameters.Parameter | None,
+    works: described.Works,
+    now: dt.datetime,
+    calendar: clock.Calendar,
+    levels: Mapping[tuple[str, str], str],
+    code: str,
+) -> Value:
+    written = shown.reading(point, parameter, works)
+    return Value(
+        label=parameter.label if parameter else point.parameter.replace("_", " "),
+        words=written.words,
+        unit=written.unit,
+        when=shown.moment(point.at, now, calendar),
+        path=f"/w/{code}/reading/{point.ref}/",
+        level=levels.get((point.site, point.parameter), ""),
+        doubtful=point.doubtful,
+        corrected=point.corrected,
+    )
+
+
+def _dose(
+    stated: Stated,
+    point: described.DosingPoint,
+    row: DayDose | None,
+    now: dt.datetime,
+    level: str,
+    whisker: bool,
+    code: str,
+) -> Dose:
+    state = stated.state("dosing_point", point.code, now)
+    picture = None
+    if row is not None and state == "in_service":
+        tolerance = pictures.tolerance_pct(stated, point.code, now)
+        picture = pictures.day_strip(row, name=point.name, code=code, tolerance=tolerance, whisker=whisker, width=268)
+    try:
+        product = stated.product(point.product, now).name
+    except LookupError:
+        product = point.product
+    return Dose(point.code, point.name, product, state, f"/w/{code}/dosing/{point.code}/", level, picture)

@@ -1,0 +1,170 @@
+"""What needs someone: open deviations as the board lists them, worst first, many from one cause as one."""
+
+from __future__ import annotations
+
+import datetime as dt
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass
+
+from plant import clock
+from plant.board import shown
+from plant.deviations.queries import DeviationView
+
+WORST_FIRST = {"regulatory": 0, "action": 1, "alert": 2, "target": 3}
+AS_ONE = ("missing", "suspicious_reading")
+"""Kinds of which many at once have one cause (a round not walked, a file of bad values)."""
+
+KINDS = {
+    "bound": "outside its limit",
+    "held_below": "too low for too long",
+    "held_above": "too high for too long",
+    "share_of_month": "too many of the month outside",
+    "running_mean": "running mean outside",
+    "rate_of_change": "changing too fast",
+    "stuck": "not moving",
+    "missing": "missing",
+    "dose_vs_design": "dose away from design",
+    "dose_vs_need": "dose away from need",
+    "certified_maximum": "above the certified maximum",
+    "drift": "dose drifting",
+    "stock_loss": "stock not explained",
+    "days_of_supply": "running out",
+    "holding": "more held than stated",
+    "lot_age": "lot too old",
+    "strength_low": "weaker than its certificate",
+    "inactivation_ratio": "inactivation too low",
+    "suspicious_reading": "a doubtful reading",
+}
+CAUSES = {
+    "feeder_drift": "the feeder is drifting",
+    "weak_product": "the product is weak",
+    "leak": "something leaks",
+    "raw_water_change": "the raw water has changed",
+    "wrong_reading": "a reading is wrong",
+    "stuck_sensor": "a sensor is stuck",
+    "meter_error": "the flow meter is wrong",
+    "unbooked_delivery": "a delivery was not booked",
+    "missing_readings": "readings are missing",
+    "vessel_empty": "the vessel is empty",
+    "aged_stock": "the stock is old",
+    "stale_design": "the design dose is out of date",
+    "process_change": "the process was changed",
+    "unknown": "not known",
+}
+
+
+@dataclass(frozen=True)
+class Thing:
+    """One line of the list."""
+
+    level: str
+    title: str
+    found: str
+    since: str
+    who: str
+    cause: str
+    path: str
+    parts: tuple[str, ...] = ()
+    telling_owed: bool = False
+
+
+def worst(levels: Iterable[str]) -> str:
+    """The worst of some levels; empty for none."""
+    return min(levels, key=lambda level: WORST_FIRST.get(level, 9), default="")
+
+
+def listed(
+    views: Iterable[DeviationView],
+    *,
+    code: str,
+    now: dt.datetime,
+    calendar: clock.Calendar,
+    names: Mapping[str, str],
+    labels: Mapping[str, str],
+    causes: bool,
+) -> list[Thing]:
+    """Open deviations, worst and oldest first. ``causes`` False leaves the likely causes out (operators do not see them)."""
+    ordered = sorted(views, key=lambda view: (WORST_FIRST.get(view.level, 9), view.since, view.ref))
+    things: list[Thing] = []
+    grouped: dict[tuple[str, str], list[DeviationView]] = {}
+    for view in ordered:
+        if view.kind in AS_ONE:
+            grouped.setdefault((view.kind, view.level), []).append(view)
+    for view in ordered:
+        many = grouped.get((view.kind, view.level), [view])
+        if len(many) > 1:
+            if view is many[0]:
+                things.append(_as_one(many, code, now, calendar, names, labels))
+            continue
+        things.append(_one(view, code, now, calendar, names, labels, causes))
+    return things
+
+
+def subject_words(view: DeviationView, names: Mapping[str, str], labels: Mapping[str, str]) -> str:
+    """What it is about: the parameter and the place, by their names."""
+    place = names.get(view.subject, view.subject)
+    parameter = labels.get(view.parameter, view.parameter.replace("_", " ")) if view.parameter else ""
+    return f"{parameter}, {place}" if parameter and place else parameter or place
+
+
+def _one(
+    view: DeviationView,
+    code: str,
+    now: dt.datetime,
+    calendar: clock.Calendar,
+    names: Mapping[str, str],
+    labels: Mapping[str, str],
+    causes: bool,
+) -> Thing:
+    likely = [CAUSES.get(cause, cause.replace("_", " ")) for cause in view.likely_causes]
+    found = ", ".join(part for part in (str(view.value or ""), f"limit {view.limit}" if view.limit else "") if part)
+    return Thing(
+        level=view.level,
+        title=f"{subject_words(view, names, labels)}: {KINDS.get(view.kind, view.kind.replace('_', ' '))}",
+        found=found,
+        since=shown.moment(view.since, now, calendar),
+        who=_who(view),
+        cause=likely[0] if likely and causes else "",
+        path=f"/w/{code}/deviations/{view.ref}/",
+        telling_owed=bool(view.tellings_owed),
+    )
+
+
+def _as_one(
+    many: list[DeviationView],
+    code: str,
+    now: dt.datetime,
+    calendar: clock.Calendar,
+    names: Mapping[str, str],
+    labels: Mapping[str, str],
+) -> Thing:
+    first = min(many, key=lambda view: view.since)
+    words = "values are missing" if first.kind == "missing" else "doubtful readings"
+    return Thing(
+        level=first.level,
+        title=f"{len(many)} {words}",
+        found="",
+        since=shown.moment(first.since, now, calendar),
+        who="nobody yet" if any(view.state == "raised" for view in many) else _who(first),
+        cause="",
+        path=f"/w/{code}/deviations/",
+        parts=tuple(subject_words(view, names, labels) for view in many),
+        telling_owed=any(view.tellings_owed for view in many),
+    )
+
+
+def _who(view: DeviationView) -> str:
+    """Who has it: whoever acted last, or nobody yet."""
+    if view.state == "raised":
+        return "nobody yet"
+    people = [event.by for event in view.events if getattr(event, "by", None)]
+    return str(people[-1]) if people else view.state
+
+
+def sentence(things: list[Thing], settled_at: str) -> str:
+    """The one sentence that answers "is anything wrong?"."""
+    if not things:
+        return f"Nothing needs anyone since {settled_at}." if settled_at else "Nothing needs anyone."
+    if len(things) == 1:
+        return "1 thing needs someone."
+    return f"{len(things)} things need someone."
