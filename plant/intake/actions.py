@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import datetime as dt
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 from django.db import transaction
@@ -72,10 +72,17 @@ def take(
             judging.note(book=book, key=key, days=days, now=now)
     if not appended.created:
         return Taken(appended.entry, created=False)
-    if not judge or len(days) > MOST_DAYS_AT_ONCE:
-        return Taken(appended.entry, True, (), not days, appended.rows, tuple(days))
-    findings, judged = judging.at_once(book=book, key=key, days=days, by=by, now=appended.entry.recorded_at)
-    return Taken(appended.entry, True, tuple(findings), judged, appended.rows, tuple(days))
+    taken = Taken(appended.entry, True, (), not days, appended.rows, tuple(days))
+    return judge_taken(book=book, taken=taken, by=by) if judge else taken
+
+
+def judge_taken(*, book: Book, taken: Taken, by: Any) -> Taken:
+    """The second half for a caller that took with ``judge`` False: judges the days of a new entry, if they are few."""
+    if not taken.created or not taken.days or len(taken.days) > MOST_DAYS_AT_ONCE:
+        return taken
+    now = taken.entry.recorded_at
+    findings, judged = judging.at_once(book=book, key=note_key(taken.entry), days=taken.days, by=by, now=now)
+    return replace(taken, findings=tuple(findings), judged=judged)
 
 
 def note_key(entry: Entry) -> str:

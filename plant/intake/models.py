@@ -1,0 +1,25 @@
+"""What a round is besides its readings: how it was closed."""
+
+from django.db import models
+
+from plant.ledger.models import Record
+
+
+class HandOver(Record):
+    """A shift's round, closed: what was taken, what stayed open, and what the next shift should know."""
+
+    day = models.DateField()
+    shift = models.CharField(max_length=40)
+    starts_at = models.DateTimeField()
+    closed_at = models.DateTimeField()
+    note = models.TextField(blank=True)
+    lines_due = models.PositiveSmallIntegerField(default=0)
+    lines_answered = models.PositiveSmallIntegerField(default=0)
+    lines_open = models.JSONField(default=list)
+
+    class Meta(Record.Meta):
+        abstract = False
+        indexes = [models.Index(fields=["book", "starts_at"], name="hand_over_by_shift")]
+
+    def __str__(self) -> str:
+        return f"{self.shift} {self.day}"

@@ -1,0 +1,14 @@
+from django.urls import path
+
+from plant.intake.views import delivering, entry, importing, reading, round_page
+
+app_name = "intake"
+urlpatterns = [
+    path("w/<slug:code>/round/", round_page.page, name="round"),
+    path("w/<slug:code>/entries/<str:client_id>", entry.put, name="entry"),
+    path("w/<slug:code>/reading/<str:ref>/", reading.page, name="reading"),
+    path("w/<slug:code>/delivery/", delivering.delivery, name="delivery"),
+    path("w/<slug:code>/transfer/", delivering.transfer, name="transfer"),
+    path("w/<slug:code>/movement/<str:kind>/<str:ref>/reverse/", delivering.reverse, name="reverse"),
+    path("w/<slug:code>/import/", importing.page, name="import"),
+]

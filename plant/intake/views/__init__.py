@@ -1,0 +1,1 @@
+"""The pages of the door: the round, a reading, deliveries and transfers, bringing in files."""

@@ -1,0 +1,86 @@
+"""The round's page. With script each line answers at once and is kept on the device; without, it is one plain form."""
+
+from __future__ import annotations
+
+import uuid
+from typing import Any
+
+from django.contrib import messages
+from django.http import HttpRequest, HttpResponse
+from django.shortcuts import redirect, render
+from django.views.decorators.http import require_http_methods
+
+from plant.intake import forms, rounds, rules, walk
+from plant.ledger import actions as ledger
+from plant.works import access
+
+
+@access.needs("round.enter")
+@require_http_methods(["GET", "HEAD", "POST"])
+def page(request: HttpRequest, at: access.At) -> HttpResponse:
+    """Shows the round that is on; takes what the plain form sends."""
+    walked = walk.walk(at.book, at.stated, at.now)
+    typed = forms.typed_lines(request.POST, walked) if request.method == "POST" else {}
+    if request.method != "POST":
+        return _show(request, at, walked, {}, uuid.uuid4().hex)
+    client_id = request.POST.get("client_id", "")
+    received: dict[str, Any] = {"kind": "round", "lines": list(typed.values()), "made_by": "form"}
+    if "close" in request.POST:
+        received["close"] = {"note": request.POST.get("note", ""), "open": forms.still_open(walked, typed)}
+    answers = dict(zip(typed, rounds.answers(at.book, at.stated, received["lines"], at.now), strict=True))
+    unsure = [key for key, found in answers.items() if found.asks and not typed[key].get("confirmed")]
+    problems: dict[str, str] = {}
+    general = ""
+    if not unsure:
+        try:
+            sent = rounds.take(
+                book=at.book, stated=at.stated, client_id=client_id, received=received, by=request.user, now=at.now)
+        except rounds.Unreadable as problem:
+            keys = list(typed)
+            problems = {keys[place]: text for place, text in problem.problems.items()}
+            general = problem.general
+        except ledger.ContentDiffers:
+            general = "This round has been sent before with other values. What you typed is below; send it again as a new one."
+            client_id = uuid.uuid4().hex
+        else:
+            return _taken(request, at, sent, len(typed))
+    else:
+        general = f"{len(unsure)} of the values want a second look. Nothing has been sent yet."
+    return _show(request, at, walked, typed, client_id, answers=answers, problems=problems, general=general, status=422)
+
+
+def _taken(request: HttpRequest, at: access.At, sent: rounds.Sent, count: int) -> HttpResponse:
+    values = f"{count} value{'s' if count != 1 else ''}"
+    messages.success(request, f"{values} in the book." if sent.taken.created else f"{values} had been sent already.")
+    for found in sent.taken.findings:
+        messages.warning(request, found.sentence or str(found))
+    return redirect("intake:round", code=at.code)
+
+
+def _show(
+    request: HttpRequest, at: access.At, walked: walk.Round, typed: dict[str, dict[str, Any]], client_id: str, *,
+    answers: dict[str, rules.Answer] | None = None, problems: dict[str, str] | None = None, general: str = "", status: int = 200,
+) -> HttpResponse:
+    rows = [
+        forms.row(number, line, typed.get(line.key, {}), (answers or {}).get(line.key), (problems or {}).get(line.key, ""))
+        for number, line in enumerate(walked.lines)
+    ]
+    calendar = at.stated.calendar(at.now)
+    context = {
+        "round": walked,
+        "rows": rows,
+        "client_id": client_id,
+        "general": general,
+        "note": request.POST.get("note", ""),
+        "not_taken": forms.NOT_TAKEN,
+        "shift_from": calendar.local(walked.shift.start),
+        "shift_to": calendar.local(walked.shift.end),
+        "settings": {
+            "works": at.code,
+            "zone": str(calendar.zone),
+            "shift": f"{walked.shift.day.isoformat()} {walked.shift.name}",
+            "person": request.user.get_username(),
+            "rules": {line.key: line.rules for line in walked.lines},
+        },
+    }
+    return render(request, "intake/round.html", context, status=status)
