@@ -105,9 +105,13 @@ def need(
 
 
 def needed_parameters(model: str, settings: Mapping[str, Any]) -> tuple[str, ...]:
-    """Every reading a model can use, required ones first. The demand of the last seven days is not a
-    reading.
+    """Every reading a model can use, required ones first.
+
+    ``demand_mg_per_L`` is no reading of the water: the caller works it out over seven days
+    (`need_models.DEMAND`).
     """
+    if model == "oxidant_demand":
+        return (need_models.DEMAND,) if settings.get("demand_from") else ()
     if model == "lime_soda":
         return (
             *("alkalinity", "pH", "temperature", "calcium", "magnesium", "hardness"),

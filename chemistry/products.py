@@ -69,7 +69,11 @@ def mass_ratio(from_formula: str, to_formula: str) -> float:
         if equivalents[0] and equivalents[1]:
             return abs(equivalents[0] / from_mass * to_mass / equivalents[1])
     mine, theirs = constants.composition(from_formula), constants.composition(to_formula)
+    # Available chlorine is an oxidising power: chloride or chlorite atoms don't make up for it.
+    chlorine_differs = (from_formula in AVAILABLE_CL2_MOL) != (to_formula in AVAILABLE_CL2_MOL)
     for element in _COUNTED_ELEMENTS:
+        if element == "Cl" and chlorine_differs:
+            continue
         if element in mine and element in theirs:
             return mine[element] / from_mass * to_mass / theirs[element]
     raise errors.ChemistryError(f"{from_formula} can't be stated as {to_formula}: they share nothing to count by")

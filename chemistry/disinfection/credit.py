@@ -56,7 +56,15 @@ def giardia_inactivation(
     segments: Sequence[Segment], *, disinfectant: str = "free chlorine", method: str = "conservative"
 ) -> float:
     """Logs of Giardia over all segments: 3 x sum of ratios, not capped and not rounded."""
-    return 3.0 * sum(segment_result(segment, disinfectant=disinfectant, method=method).ratio_to_3_log for segment in segments)
+    return giardia_log_from_ratios(
+        [segment_result(segment, disinfectant=disinfectant, method=method).ratio_to_3_log for segment in segments]
+    )
+
+
+def giardia_log_from_ratios(ratios: Sequence[float]) -> float:
+    """3 x the sum of the segments' CT / CT99.9 (40 CFR 141.172(b)(4)(iii), 141.534); ratios of 0 or more."""
+    errors.require("CT ratio", list(ratios), "", 0.0, 1e6, "40 CFR 141.172")
+    return 3.0 * float(sum(ratios))
 
 
 def inactivation_ratio(log_achieved: Values, log_required: Values) -> Values:

@@ -51,15 +51,17 @@ def virus_free_chlorine_log(ct_mg_min_l: Values, temperature_c: Values) -> Value
 
 
 def giardia_ozone_log(ct_mg_min_l: Values, temperature_c: Values) -> Values:
-    """Giardia logs by ozone: 1.0380 x 1.0741^T x CT (LT2-TOOLBOX, from memory); 0.5 to 25 °C; 3-log cells
-    read 2.82-3.12.
+    """Giardia logs by ozone: 1.0380 x 1.0741^T x CT (LT2-TOOLBOX, from memory); 0.5 to 25 °C.
+
+    3-log cells read 2.82 to 3.12, with the table's column "1 °C or less" taken at 0.5 °C.
     """
     return _exponential(1.0380, 1.0741, ct_mg_min_l, temperature_c, 25.0)
 
 
 def virus_ozone_log(ct_mg_min_l: Values, temperature_c: Values) -> Values:
-    """Virus logs by ozone: 2.1744 x 1.0726^T x CT (LT2-TOOLBOX, from memory); 0.5 to 25 °C; 4-log cells
-    read 3.70-4.42.
+    """Virus logs by ozone: 2.1744 x 1.0726^T x CT (LT2-TOOLBOX, from memory); 0.5 to 25 °C.
+
+    4-log cells read 3.70 to 4.42, with the table's column "1 °C or less" taken at 0.5 °C.
     """
     return _exponential(2.1744, 1.0726, ct_mg_min_l, temperature_c, 25.0)
 
