@@ -30,7 +30,7 @@ _SCALAR = SimpleNamespace(
     where=lambda condition, yes, no: yes if condition else no,
 )
 _ARRAY = SimpleNamespace(
-    exp=np.exp, sqrt=np.sqrt, least=np.minimum, most=np.maximum, largest=np.max, where=np.where
+    exp=np.exp, sqrt=np.sqrt, least=np.minimum, most=np.maximum, largest=lambda values: np.max(values, initial=0.0), where=np.where
 )  # fmt: skip
 
 Solved = balances.Solved
@@ -72,7 +72,7 @@ def solve(
     else:
         with np.errstate(all="ignore"):
             solved, step = problem.newton(start)
-        if not np.max(step) < _TOLERANCE:
+        if not np.max(step, initial=0.0) < _TOLERANCE:
             shape = np.broadcast_shapes(*(np.shape(value) for value in fields if value is not None))
             failed = np.broadcast_to(~(np.asarray(step) < _TOLERANCE), shape)
             solved = bracketing.mend(solved, failed, problem, _SCALAR)

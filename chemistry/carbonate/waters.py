@@ -5,7 +5,7 @@ from dataclasses import dataclass, fields, replace
 
 import numpy as np
 
-from chemistry import constants, errors
+from chemistry import constants, elementwise, errors
 from chemistry.carbonate import constants_of_equilibrium
 from chemistry.constants import Values
 
@@ -25,6 +25,7 @@ _HIGHEST_MG_L = {
     "free_chlorine_mg_l": 100.0,
 }  # fmt: skip
 _LIMIT_SOURCE = "limit of this model"
+_LEAST_CARBON_MMOL_L = 1e-9  # the solver works in logarithms: none at all is taken as this
 
 
 @dataclass(frozen=True, slots=True)
@@ -122,7 +123,7 @@ def totals(water: Water) -> "Totals":
         temperature_c=water.temperature_c,
         h=None if water.ph is None else exp(-_LN10 * water.ph),
         alkalinity=None if water.alkalinity_mg_l_caco3 is None else water.alkalinity_mg_l_caco3 * (1e-3 / CACO3_MG_MEQ),
-        carbon=None if water.dic_mmol_l is None else water.dic_mmol_l * 1e-3,
+        carbon=None if water.dic_mmol_l is None else elementwise.most(water.dic_mmol_l, _LEAST_CARBON_MMOL_L) * 1e-3,
         calcium=water.calcium_mg_l * (1e-3 / mass["calcium_mg_l"]),
         magnesium=water.magnesium_mg_l * (1e-3 / mass["magnesium_mg_l"]),
         sodium=water.sodium_mg_l * (1e-3 / mass["sodium_mg_l"]),
