@@ -109,9 +109,7 @@ def setting(settings: Settings, key: str, default: float | None = None) -> float
     return float(value)
 
 
-def solve(
-    model: Model, settings: Settings, readings: Readings, product: Product, sds: Mapping[str, float] | None
-) -> Need:
+def solve(model: Model, settings: Settings, readings: Readings, product: Product, sds: Mapping[str, float] | None) -> Need:
     """Run a model, state its dose in the product's basis and propagate the readings' uncertainties through
     it.
     """

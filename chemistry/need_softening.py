@@ -1,5 +1,7 @@
 """The need models that ask the softening and carbonate chemistry: lime_soda and target_ph."""
 
+from typing import Any
+
 from chemistry import carbonate, constants, errors, need_parts, softening
 from chemistry.carbonate import chemicals
 from chemistry.need_parts import Product, Readings, Settings, Step, Working
@@ -20,8 +22,8 @@ def lime_soda(settings: Settings, readings: Readings, product: Product) -> Worki
     if part not in _PART_FORMULA:
         raise errors.ChemistryError(f"part must be lime, soda_ash or caustic, not {part!r}")
     lacking = [name for name in ("alkalinity", "pH", "temperature") if not need_parts.has(readings, name)]
-    if lacking == ["pH"] and need_parts.has(readings, "carbon_dioxide"):
-        lacking = []
+    if "pH" in lacking and need_parts.has(readings, "carbon_dioxide"):
+        lacking = [name for name in lacking if name == "alkalinity"]
     calcium, magnesium, hardness_uses, steps = _hardness(readings, lacking)
     alkalinity = need_parts.reading(readings, "alkalinity")
     co2, co2_uses = _carbon_dioxide(readings, alkalinity, steps)
@@ -33,26 +35,27 @@ def lime_soda(settings: Settings, readings: Readings, product: Product) -> Worki
         cautions.append("without removing magnesium the target can't be reached: the dose takes all the calcium")
         steps.append(Step("softest without magnesium removal", "Mg", magnesium, "mg/L as CaCO3", "definition"))
         target = magnesium
-    dose_of = softening.caustic_dose if part == "caustic" else softening.lime_soda_dose
-    result = dose_of(
-        calcium_hardness_mg_l_caco3=calcium,
-        magnesium_hardness_mg_l_caco3=magnesium,
-        alkalinity_mg_l_caco3=alkalinity,
-        co2_mg_l=co2,
-        target_hardness_mg_l_caco3=target,
-        remove_magnesium=remove_magnesium,
-        excess_mg_l_caco3=None if excess is None else need_parts.setting(settings, "excess_mg_per_L_CaCO3"),
-    )
-    dose = {
-        "lime": lambda: result.lime_ca_oh_2_mg_l,
-        "soda_ash": lambda: result.soda_na2co3_mg_l,
-        "caustic": lambda: result.caustic_naoh_mg_l,
-    }[part]()
-    steps += _softening_steps(result, part, float(dose))
+    water: dict[str, Any] = {
+        "calcium_hardness_mg_l_caco3": calcium,
+        "magnesium_hardness_mg_l_caco3": magnesium,
+        "alkalinity_mg_l_caco3": alkalinity,
+        "co2_mg_l": co2,
+        "target_hardness_mg_l_caco3": target,
+        "remove_magnesium": remove_magnesium,
+        "excess_mg_l_caco3": None if excess is None else need_parts.setting(settings, "excess_mg_per_L_CaCO3"),
+    }
+    result: softening.CausticDose | softening.LimeSodaDose
+    if part == "caustic":
+        result = caustic = softening.caustic_dose(**water)
+        dose = float(caustic.caustic_naoh_mg_l)
+    else:
+        result = lime = softening.lime_soda_dose(**water)
+        dose = float(lime.lime_ca_oh_2_mg_l if part == "lime" else lime.soda_na2co3_mg_l)
+    steps += _softening_steps(result, part, dose)
     if result.below_practical_floor:
         cautions.append("softer than cold softening reaches in practice (about 35 calcium, 10 magnesium)")
     uses = tuple(dict.fromkeys((*hardness_uses, "alkalinity", *co2_uses)))
-    return Working(float(dose), _PART_FORMULA[part], uses, steps, cautions)
+    return Working(dose, _PART_FORMULA[part], uses, steps, cautions)
 
 
 def target_ph(settings: Settings, readings: Readings, product: Product) -> Working:
@@ -137,9 +140,9 @@ def _carbon_dioxide(readings: Readings, alkalinity: float, steps: list[Step]) ->
     return co2, uses
 
 
-def _softening_steps(result: object, part: str, dose: float) -> list[Step]:
-    removal = result.removal  # type: ignore[attr-defined]
-    excess = result.excess_meq_l * constants.CACO3_MG_MEQ  # type: ignore[attr-defined]
+def _softening_steps(result: softening.CausticDose | softening.LimeSodaDose, part: str, dose: float) -> list[Step]:
+    removal = result.removal
+    excess = result.excess_meq_l * constants.CACO3_MG_MEQ
     rows = [
         ("calcium carbonate hardness removed", "CaCH", removal.calcium_carbonate),
         ("magnesium carbonate hardness removed", "MgCH", removal.magnesium_carbonate),

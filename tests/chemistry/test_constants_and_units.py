@@ -7,7 +7,7 @@ import numpy as np
 import periodictable
 import pint
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from chemistry import constants, errors, units
@@ -181,6 +181,7 @@ def test_text_that_is_no_plain_number_is_refused(text):
         units.canonical_text(text, "mg/L", "iron")
 
 
+@settings(deadline=None)
 @given(
     number=st.decimals(min_value=Decimal("-1e6"), max_value=Decimal("1e9"), places=6),
     pair=st.sampled_from([(p, u) for p in PARAMETERS for u in units.accepted_for(p)]),
@@ -192,6 +193,7 @@ def test_text_and_float_paths_agree(number, pair):
     assert float(text) == pytest.approx(value, rel=1e-9, abs=1e-9)
 
 
+@settings(deadline=None)
 @given(
     value=st.floats(-1e9, 1e9),
     pair=st.sampled_from([(a, b) for a in UNITS for b in UNITS if UNITS[a].kind == UNITS[b].kind]),

@@ -5,7 +5,7 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from chemistry import densities, errors, units
@@ -90,6 +90,7 @@ def test_ninety_three_percent_acid_is_the_handbooks_not_the_equations():
     assert densities.density_kg_l("H2SO4", 93.0, 20.0) == pytest.approx(1.828, abs=0.001)
 
 
+@settings(deadline=None)
 @given(
     chemical=st.sampled_from(densities.known_chemicals()),
     a=st.floats(0, 1),

@@ -5,7 +5,7 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 import chemistry
@@ -146,6 +146,7 @@ def test_the_virus_form_is_near_the_table_and_labelled_unsure():
     assert "unsure" in regressions.virus_free_chlorine_log.__doc__
 
 
+@settings(deadline=None)
 @given(t=temperatures, ph=acidities, c=residuals, logs=st.floats(0.1, 3.0))
 def test_rounding_is_on_the_safe_side_of_interpolation(t, ph, c, logs):
     place = ("Giardia", "free chlorine", logs, t, ph, c)
@@ -158,6 +159,7 @@ def test_rounding_is_on_the_safe_side_of_interpolation(t, ph, c, logs):
     assert min(cells) * logs / 3 - 1e-9 <= between <= max(cells) * logs / 3 + 1e-9
 
 
+@settings(deadline=None)
 @given(
     pair=st.sampled_from(ct_tables.known_pairs()), logs=st.floats(0.05, 3.0), t=temperatures, ph=st.floats(6.0, 9.0),
     method=st.sampled_from(ct_tables.METHODS),
@@ -245,6 +247,7 @@ def test_a_works_that_owes_half_a_log_is_judged_on_half_a_log():
     assert disinfection.inactivation_ratio(0.4975, 0.5) < 1.0  # 0.995 is not 1.0
 
 
+@settings(deadline=None)
 @given(logs=st.floats(0.01, 8.0))
 def test_percent_and_logs_are_inverse(logs):
     assert disinfection.log_from_percent(disinfection.percent_from_log(logs)) == pytest.approx(logs, rel=1e-6)

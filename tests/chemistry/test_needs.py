@@ -3,7 +3,7 @@
 import math
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from chemistry import carbonate, constants, errors, needs, products, softening, sources
@@ -147,8 +147,7 @@ def test_what_softening_lacks_is_named(gone):
 
 def test_measured_carbon_dioxide_stands_in_for_ph():
     readings = {name: value for name, value in WATER.items() if name not in ("pH", "temperature")}
-    settings = {**SOFTEN}
-    answer = needs.need("lime_soda", settings, {**readings, "temperature": 12.0, "carbon_dioxide": 20.0}, product=LIME)
+    answer = needs.need("lime_soda", SOFTEN, {**readings, "carbon_dioxide": 20.0}, product=LIME)
     expected = (2 * 20.0 / M("CO2") + 140.0 / 50.043) * M("Ca(OH)2") / 2
     assert answer.dose_mg_l == pytest.approx(expected, rel=1e-4)
 
@@ -282,6 +281,7 @@ readings = st.fixed_dictionaries(
 )  # fmt: skip
 
 
+@settings(deadline=None)
 @given(model=st.sampled_from(sorted(SETTINGS)), water=readings)
 def test_every_model_answers_or_says_why_and_never_with_nan(model, water):
     answer = needs.need(model, SETTINGS[model], water, product=PRODUCTS[model])
@@ -315,7 +315,7 @@ def test_good_settings_have_no_fault_and_bad_ones_do(model):
 
 
 @pytest.mark.parametrize(
-    ("model", "settings"),
+    ("model", "stated"),
     [
         ("guess", {}),
         ("lime_soda", {**SOFTEN, "part": "potash"}),
@@ -331,8 +331,8 @@ def test_good_settings_have_no_fault_and_bad_ones_do(model):
         ("oxidant_demand", {**SETTINGS["oxidant_demand"], "demand_from": "last_7_days"}),
     ],
 )
-def test_bad_settings_are_told(model, settings):
-    assert needs.check_settings(model, settings)
+def test_bad_settings_are_told(model, stated):
+    assert needs.check_settings(model, stated)
 
 
 def test_needed_parameters_follow_the_settings():

@@ -2,7 +2,7 @@
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from chemistry import coagulants, errors, fluoride, oxidants, peroxide
@@ -20,6 +20,7 @@ def test_demands_add_up():
     np.testing.assert_allclose(many, [0.0, 0.42973], rtol=1e-4)
 
 
+@settings(deadline=None)
 @given(dose=st.floats(0.0, 100.0))
 def test_equivalent_oxidants_invert(dose):
     for other in oxidants.OXIDANT_ELECTRONS:
@@ -27,6 +28,7 @@ def test_equivalent_oxidants_invert(dose):
         assert oxidants.equivalent_mg_l(there, other, "Cl2") == pytest.approx(dose, rel=1e-12, abs=1e-300)
 
 
+@settings(deadline=None)
 @given(demand=amounts, residual=amounts)
 def test_dose_demand_and_residual_hang_together(demand, residual):
     dose = oxidants.dose_for_residual_mg_l(demand, residual)
@@ -43,6 +45,7 @@ def test_demand_over_days_is_weighted_by_flow():
         oxidants.flow_weighted_demand_mg_l([0.4], [0.5], [1.0])
 
 
+@settings(deadline=None)
 @given(
     start=st.floats(0.1, 10.0), k=st.floats(1e-4, 0.1), slow=st.floats(1e-5, 1e-4), share=st.floats(0, 1),
     minutes=st.floats(0.1, 60.0),
@@ -152,6 +155,7 @@ def test_sludge_adds_its_parts():
     assert exact == pytest.approx(8.8, rel=0.012)  # the equation's 0.44 is 0.444 rounded
 
 
+@settings(deadline=None)
 @given(target=st.floats(0.0, 2.0), natural=st.floats(0.0, 2.0))
 def test_fluoride_counts_what_nature_gives(target, natural):
     added = fluoride.fluoride_to_add_mg_l(target, natural)

@@ -5,7 +5,7 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 from scipy import integrate
 
@@ -94,6 +94,7 @@ def test_alum_on_its_bases():
     assert products.dose_in_basis_mg_l(20.0, "Al2(SO4)3.14H2O", {**product, "dose_basis": "active"}) == 20.0
 
 
+@settings(deadline=None)
 @given(strength=st.floats(1.0, 200.0), density=st.floats(1.0, 1.4))
 def test_strength_bases_round_trip(strength, density):
     for target in products.STRENGTH_BASES:
@@ -102,6 +103,7 @@ def test_strength_bases_round_trip(strength, density):
         assert back == pytest.approx(strength, rel=1e-12)
 
 
+@settings(deadline=None)
 @given(lots=st.lists(st.tuples(st.floats(1, 9000), st.floats(20, 160), st.floats(1.0, 1.3)), min_size=1, max_size=5))
 def test_mixing_keeps_mass_and_chlorine(lots):
     masses, strengths, densities = (list(column) for column in zip(*lots, strict=True))
@@ -183,6 +185,7 @@ def test_a_temperature_history_is_integrated_exactly():
     assert decay.hypochlorite_strength_after(120.0, temperatures, days) == pytest.approx(left, rel=1e-6)
 
 
+@settings(deadline=None)
 @given(start=st.floats(0.0, 200.0), temperature=st.floats(0, 40), a=st.floats(0, 60), b=st.floats(0, 60))
 def test_decay_runs_on_from_where_it_was(start, temperature, a, b):
     fresh = {"fresh_g_l": start, "extrapolate": True}
@@ -212,6 +215,7 @@ def test_peroxide_loses_one_percent_a_year_and_doubles_each_ten_degrees():
         decay.peroxide_strength_after(35.0, [20.0], [1.0, 2.0])
 
 
+@settings(deadline=None)
 @given(dose=st.floats(0.01, 500), volume=st.floats(0.01, 500), fraction=st.floats(0.01, 1.0))
 def test_dose_and_product_are_inverse(dose, volume, fraction):
     kilograms = feed.product_kg(dose, fraction, volume)

@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 import uncertainties
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 from uncertainties import umath
 
@@ -17,6 +17,7 @@ def dose(use, strength, volume):
     return use * strength / volume
 
 
+@settings(deadline=None)
 @given(use=positive, strength=positive, volume=positive, a=small, b=small, c=small)
 def test_a_dose_agrees_with_the_uncertainties_package(use, strength, volume, a, b, c):
     theirs = dose(*(uncertainties.ufloat(v, r * v) for v, r in ((use, a), (strength, b), (volume, c))))
@@ -33,6 +34,7 @@ def test_a_dose_agrees_with_the_uncertainties_package(use, strength, volume, a, 
     assert closed == pytest.approx(theirs.std_dev, rel=1e-9, abs=1e-15)
 
 
+@settings(deadline=None)
 @given(a=positive, b=positive, sd_a=st.floats(0.01, 5), sd_b=st.floats(0.01, 5), share=st.floats(0, 1))
 def test_sums_and_interpolation_agree(a, b, sd_a, sd_b, share):
     x, y = uncertainties.ufloat(a, sd_a), uncertainties.ufloat(b, sd_b)
