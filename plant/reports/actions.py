@@ -21,7 +21,7 @@ from plant.works import access
 from plant.works import queries as works
 
 PREPARED, CERTIFIED = "report.sign_prepared", "report.sign_certified"
-BY_PASSWORD = "Signed by entering the password again"
+GIVEN_AGAIN = "Signed by entering the password again"
 NAMED_AT_SHELL = "Named at the shell; no password was entered"
 
 
@@ -104,8 +104,8 @@ def certify_and_issue(
     if content.figures_hash(found) != prepared.figures_hash:
         raise NotPrepared("What was prepared cannot be computed again to the same figures: prepare the month again.")
     signed = (
-        content.Signed("Prepared by", prepared.prepared_name, prepared.prepared_licence, prepared.prepared_at, BY_PASSWORD),
-        content.Signed("Certified by", by.display_name, _licence(member), now, BY_PASSWORD),
+        content.Signed("Prepared by", prepared.prepared_name, prepared.prepared_licence, prepared.prepared_at, GIVEN_AGAIN),
+        content.Signed("Certified by", by.display_name, _licence(member), now, GIVEN_AGAIN),
     )
     return _issue(
         gathered, found, signed=signed, previous=previous, reason=reason, now=now, by=by, manner="signed",

@@ -7,7 +7,7 @@ import io
 from collections.abc import Iterator
 from dataclasses import dataclass
 
-from plant.reports.pdf.document import NOTICE, Document, Section, Table
+from plant.reports.pdf.document import NOTICE, Cell, Document, Section, Table
 
 CSV_HEADER = ("month", "issue", "section", "table", "row", "quantity", "unit", "value", "full_value", "text", "mark", "trail")
 _FORMULA = ("=", "+", "-", "@", "\t", "\r", "\n")
@@ -75,26 +75,37 @@ def safe(text: str) -> str:
     return f"'{text}" if text.startswith(_FORMULA) else text
 
 
+def rows(document: Document) -> Iterator[list[str]]:
+    """Under CSV_HEADER, one row a fact. ``value`` is the number as printed, ``full_value`` before rounding; words stand in
+    ``text`` only."""
+    issue = "draft" if document.draft else f"{document.number} revision {document.revision}"
+    for fact in facts(document):
+        number = number_of(Cell(fact.printed, fact.value))
+        full = "" if number is None else repr(fact.value)
+        text = fact.printed if number is None else ""
+        yield [
+            document.month, issue, fact.section, fact.table, fact.row, fact.quantity, fact.unit, number or "", full, text, fact.mark,
+            fact.trail,
+        ]
+    yield [document.month, issue, "notice", "", "", "", "", "", "", NOTICE, "", ""]
+
+
 def to_csv(document: Document) -> str:
-    """One row a fact. ``value`` is the number as printed, ``full_value`` before rounding; words stand in ``text`` only."""
+    """All facts as CSV. Words that a spreadsheet would take for a formula get a quote in front; numbers stay numbers."""
+    numbers = {CSV_HEADER.index("value"), CSV_HEADER.index("full_value")}
     out = io.StringIO()
     writer = csv.writer(out, lineterminator="\n")
     writer.writerow(CSV_HEADER)
-    issue = "draft" if document.draft else f"{document.number} revision {document.revision}"
-    for fact in facts(document):
-        number = plain_number(fact)
-        head = [document.month, issue, fact.section, fact.table, safe(fact.row), safe(fact.quantity), fact.unit]
-        full = "" if number is None or fact.value is None else repr(fact.value)
-        writer.writerow([*head, number or "", full, safe(fact.printed) if number is None else "", fact.mark, fact.trail])
-    writer.writerow([document.month, issue, "notice", "", "", "", "", "", "", NOTICE, "", ""])
+    for row in rows(document):
+        writer.writerow([text if position in numbers else safe(text) for position, text in enumerate(row)])
     return out.getvalue()
 
 
-def plain_number(fact: Fact) -> str | None:
+def number_of(cell: Cell) -> str | None:
     """The printed number with an ASCII minus sign; None for words, and for values below or above a bound."""
-    text = fact.printed.replace("−", "-")
-    if fact.value is None:
+    if cell.value is None:
         return None
+    text = cell.text.replace("−", "-")
     try:
         float(text)
     except ValueError:

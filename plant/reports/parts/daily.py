@@ -88,14 +88,13 @@ def _places(month: Month, series: list[tuple[str, str, str, list[Figure | None],
     """Decimals per column; used, its spread, design and need of one point share theirs."""
     show = month.measures
     out = []
-    shared: dict[str, int] = {}
+    of_point: dict[str, list[float | None]] = {}
     for _, code, field, figures, _ in series:
         if field in ("used_mg_l", "design_mg_l", "need_mg_l"):
-            known = [figure.value for figure in figures if figure is not None]
-            shared[code] = max(shared.get(code, 0), measures.decimals(known, figures=4, most=3))
+            of_point.setdefault(code, []).extend(figure.value for figure in figures if figure is not None)
     for unit, code, field, figures, _ in series:
         if code and field != "product_kg":
-            out.append(shared[code])
+            out.append(measures.decimals(of_point[code], figures=4, most=3))
         else:
             known = [show.shown(figure.value, unit) for figure in figures if figure is not None]
             out.append(measures.decimals(known, figures=4 if field == "product_kg" else 5, most=3))

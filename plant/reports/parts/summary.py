@@ -16,10 +16,12 @@ def section(month: Month) -> Section:
     """What was treated, what was dosed against design, what was outside, what is missing."""
     blocks: list[Block] = [Text(_water(month) + " " + _outside(month), "lead"), Text(_records(month))]
     if month.periods:
-        blocks += [_doses(month), chemicals.strips(month)]
+        blocks.append(_doses(month))
     lowest = _entry(month)
     if lowest is not None:
         blocks.append(lowest)
+    if month.periods:
+        blocks.append(chemicals.strips(month))
     return Section(KEY, TITLE, tuple(blocks))
 
 

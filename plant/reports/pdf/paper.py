@@ -9,7 +9,7 @@ from typing import Any
 
 from reportlab.lib.pagesizes import A4, LETTER
 from reportlab.lib.units import mm
-from reportlab.platypus import BaseDocTemplate, CondPageBreak, Flowable, Frame, KeepTogether, PageTemplate, Spacer
+from reportlab.platypus import BaseDocTemplate, CondPageBreak, Flowable, Frame, PageTemplate, Spacer
 
 from plant.reports.pdf import cover, faces, grid, ink, picture, words
 from plant.reports.pdf.document import NOTICE, Block, Document, Pairs, Picture, Section, Table
@@ -53,7 +53,7 @@ def render(document: Document) -> bytes:
 def _section(root: Element, section: Section, number: int, width: float) -> list[Flowable]:
     part = Element("Sect", root)
     story: list[Any] = [
-        CondPageBreak(_least_room(section)),
+        CondPageBreak(_least_room(section, width)),
         words.heading(part, f"{number}. {section.title}", "section", level=0, key=section.key, tag="H2"),
     ]
     for block in section.blocks:
@@ -61,11 +61,12 @@ def _section(root: Element, section: Section, number: int, width: float) -> list
     return story
 
 
-def _least_room(section: Section) -> float:
+def _least_room(section: Section, width: float) -> float:
     """What must be left on a page for a section to begin there, so that no heading stands alone at its foot."""
     first = section.blocks[0] if section.blocks else None
     if isinstance(first, Table) and first.rows:
-        return 58 * mm
+        laid = grid.grids(Element("Document"), first, width)[0]
+        return 22 * mm + _room_for(laid, width)
     return 62 * mm if isinstance(first, Picture) else 32 * mm
 
 
@@ -87,18 +88,21 @@ def _table(part: Element, table: Table, width: float) -> list[Flowable]:
     for laid in grid.grids(part, table, width):
         if table.caption:
             title = words.words(laid.element, laid.caption, "caption", tag="Caption")
-            height = laid.wrap(width, 0)[1]
-            if len(laid.rows) <= 8 and height < 60 * mm:
-                story.append(KeepTogether([title, laid]))
-            else:
-                # A month of days is one page: better begun on the next than torn near its head.
-                story += [CondPageBreak(max(40 * mm, min(height * 0.55, 110 * mm))), title, laid]
+            story += [CondPageBreak(_room_for(laid, width)), title, laid]
         else:
             story.append(laid)
     story += [words.words(part, note, "small") for note in table.notes]
     if table.notes:
         story.append(Spacer(1, 2))
     return story
+
+
+def _room_for(laid: grid.Grid, width: float) -> float:
+    """What must be left for a table to begin: a short one whole; of a month of days more than half, rather than torn near its head."""
+    height = laid.wrap(width, 0)[1]
+    if len(laid.rows) <= 8 and height < 60 * mm:
+        return height + 10 * mm
+    return max(40 * mm, min(height * 0.55, 110 * mm))
 
 
 def _running_lines(document: Document, canvas: TaggedCanvas, page: int, pages: int) -> None:

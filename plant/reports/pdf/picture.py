@@ -19,6 +19,7 @@ PAPER = {
 }
 SCALE = 0.62  # one pixel of a scene in points: text of 14 px comes to 8.7 pt
 GAP = 16.0
+WHOLE_ROWS = 3  # so many rows of scenes are not parted by a page
 
 
 def scenes(picture: Picture) -> list[tuple[str, scene.Scene]]:
@@ -43,6 +44,8 @@ def flowables(part: Element, picture: Picture, width: float) -> list[Flowable]:
     rows = [PictureRow(part, made[first:first + across], width, across) for first in range(0, len(made), across)]
     if not rows:
         return [*title, words.words(part, picture.alt)]
+    if len(rows) <= WHOLE_ROWS:
+        return [KeepTogether([*title, *rows])]
     return [KeepTogether([*title, rows[0]]), *rows[1:]]
 
 

@@ -25,8 +25,8 @@ STYLES = {
     "caution": style("caution", ink.BODY, face=faces.SEMIBOLD, spaceAfter=5),
     "title": style("title", ink.H1, face=faces.SEMIBOLD, spaceAfter=2),
     "subtitle": style("subtitle", 13, colour=ink.QUIET, spaceAfter=10),
-    "section": style("section", ink.H2, face=faces.SEMIBOLD, colour=ink.WATER, spaceBefore=14, spaceAfter=5, keepWithNext=1),
-    "caption": style("caption", ink.H3, face=faces.SEMIBOLD, spaceBefore=7, spaceAfter=3, keepWithNext=1),
+    "section": style("section", ink.H2, face=faces.SEMIBOLD, colour=ink.WATER, spaceBefore=14, spaceAfter=5),
+    "caption": style("caption", ink.H3, face=faces.SEMIBOLD, spaceBefore=7, spaceAfter=3),
     "notice": style("notice", 10, face=faces.SEMIBOLD),
 }
 
