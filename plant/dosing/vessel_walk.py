@@ -66,7 +66,7 @@ def walk(
     for pour in pours:
         poured.setdefault(pour.at, []).append(pour)
     tested = {test.at: test for test in tests}
-    for at, following in zip(times, [*times[1:], None], strict=True):
+    for at, following in zip(times, [*times[1:], None][: len(times)], strict=True):
         now = now.aged(at, decay)
         held_kg = _kg(position.before(at), now, in_kg) if at in poured else 0.0
         for pour in poured.get(at, ()):
