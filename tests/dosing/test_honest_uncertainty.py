@@ -33,10 +33,7 @@ def one_works(rng: random.Random) -> list[tuple[float, float, float]]:
     litres_h, m3_h = rng.uniform(8, 40), rng.uniform(200, 900)
     level, count, at = 6000.0, 0.0, -2.0
     dips, counts, loads, truth = [], [], [], []
-    times = [-2.0]
-    for half in range(2 * DAYS + 1):
-        times.append(12.0 * half + rng.uniform(-2, 2))
-    times.append(24.0 * DAYS + 6)
+    times = [-2.0, *(12.0 * half + rng.uniform(-2, 2) for half in range(2 * DAYS + 1)), 24.0 * DAYS + 6]
     for hours in sorted(times):
         passed = hours - at
         level -= litres_h * passed
