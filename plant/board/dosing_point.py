@@ -6,7 +6,7 @@ import datetime as dt
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from plant import clock
+from plant import clock, scene
 from plant.board import shown, things
 from plant.deviations import queries as deviations
 from plant.dosing.figures import DayDose
@@ -158,7 +158,7 @@ def _deviations(
             shown.moment(view.since, now, calendar),
             "deviation",
             f"{view.level}: {things.KINDS.get(view.kind, view.kind.replace('_', ' '))}, {view.state.replace('_', ' ')}",
-            view.level if view.level in things.WORST_FIRST and view.level != "target" else "quiet",
+            view.level if view.level in scene.ROLES else "quiet",
             f"/w/{code}/deviations/{view.ref}/",
         )
         for view in deviations.between(book, rows[0].day, rows[-1].day)

@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+import dataclasses
 import datetime as dt
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 
+from django.urls import reverse
 from django.utils.safestring import SafeString, mark_safe
 
 from plant import clock, scene
@@ -41,6 +43,7 @@ class Dose:
     state: str
     path: str
     level: str
+    weak: bool
     picture: scene.Scene | None
 
     @property
@@ -51,11 +54,14 @@ class Dose:
 
 @dataclass(frozen=True)
 class Stop:
-    """A sample point, its newest values, and the doses on the way to it."""
+    """A sample point, its newest values, and the doses on the way to it. ``when`` is the time that the values share; a
+    value taken at another time says its own.
+    """
 
     code: str
     name: str
     stage: str
+    when: str
     values: tuple[Value, ...]
     doses: tuple[Dose, ...]
 
@@ -95,9 +101,12 @@ def stops(
         )
         values = tuple(_value(point, known.get(point.parameter), works, now, calendar, levels, code) for point in here)
         doses_here = tuple(by_place.get(sample_point.code, ()))
-        found.append(Stop(sample_point.code, sample_point.name, sample_point.stage, values, doses_here))
+        when = max(here, key=lambda point: point.at) if here else None
+        shared = shown.moment(when.at, now, calendar) if when else ""
+        values = tuple(dataclasses.replace(value, when="" if value.when == shared else value.when) for value in values)
+        found.append(Stop(sample_point.code, sample_point.name, sample_point.stage, shared, values, doses_here))
     if by_place.get(""):
-        found.append(Stop("", "Dosed elsewhere", "", (), tuple(by_place[""])))
+        found.append(Stop("", "Dosed elsewhere", "", "", (), tuple(by_place[""])))
     return found
 
 
@@ -134,6 +143,7 @@ def _dose(
 ) -> Dose:
     state = stated.state("dosing_point", point.code, now)
     picture = None
+    weak = row is not None and row.weak
     if row is not None and state == "in_service":
         tolerance = pictures.tolerance_pct(stated, point.code, now)
         picture = pictures.day_strip(row, name=point.name, code=code, tolerance=tolerance, whisker=whisker, width=268)
@@ -141,4 +151,4 @@ def _dose(
         product = stated.product(point.product, now).name
     except LookupError:
         product = point.product
-    return Dose(point.code, point.name, product, state, f"/w/{code}/dosing/{point.code}/", level, picture)
+    return Dose(point.code, point.name, product, state, reverse("board:dosing_point", args=[code, point.code]), level, weak, picture)

@@ -16,6 +16,7 @@ from plant.works import access, parameters
 from plant.works import queries as works
 from plant.works.stated import NotStated, Stated
 
+ENDS = ("closed", "corrected_away")
 NEWEST_DAYS = 3
 """A value older than this is not "newest" any more: the line leaves it out, and what is due shows as missing."""
 
@@ -69,9 +70,9 @@ def board(at: access.At) -> Board:
         calendar=calendar,
         names=names(stated, now),
         labels=labels,
-        causes=not operator,
     )
-    absent = missing.missing(stated, points, now)
+    raised = {view.subject for view in open_now if view.kind == "missing"}
+    absent = [one for one in missing.missing(stated, points, now) if one.site not in raised]
     return Board(
         sentence=things.sentence(listed, _settled_at(at, today) if not listed else ""),
         things=listed,
@@ -119,10 +120,14 @@ def _missing_words(one: missing.Missing, stated: Stated, now: dt.datetime, label
 
 
 def _settled_at(at: access.At, today: dt.date) -> str:
-    """When the last open deviation was closed, within thirty days; empty where none was."""
-    calendar = at.stated.calendar(at.now)
-    closed = [event.at for view in deviations.between(at.book, today - dt.timedelta(days=30), today) for event in view.events]
-    return shown.moment(max(closed), at.now, calendar) if closed else ""
+    """When the last deviation of the last thirty days was closed or corrected away; empty where none was."""
+    closed = [
+        event.recorded_at
+        for view in deviations.between(at.book, today - dt.timedelta(days=30), today)
+        for event in view.events
+        if event.kind in ENDS
+    ]
+    return shown.moment(max(closed), at.now, at.stated.calendar(at.now)) if closed else ""
 
 
 @dataclass(frozen=True)
@@ -156,4 +161,4 @@ def of_person(books: Iterable[Book], username: str, now: dt.datetime) -> list[Wo
         out.append(
             WorksLine(book.code, name, member.role if member else "", words, things.worst(one.level for one in open_now))
         )
-    return sorted(out, key=lambda one: (things.WORST_FIRST.get(one.level, 9), one.name))
+    return sorted(out, key=lambda one: (deviations.WORST_FIRST.get(one.level, 9), one.name))

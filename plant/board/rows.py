@@ -153,8 +153,7 @@ def readings(
                 "at": Cell(point.at, when),
                 "site": names.get(point.site, point.site),
                 "parameter": parameter.label if parameter else point.parameter.replace("_", " "),
-                "value": Cell(point.value, written.words, f"/w/{code}/reading/{point.ref}/"),
-                "unit": written.unit,
+                "value": Cell(point.value, str(written), f"/w/{code}/reading/{point.ref}/"),
                 "remarks": "; ".join(_reading_remarks(point)),
                 "corrected": point.corrected,
             }

@@ -53,7 +53,7 @@ class StockTable(tables.Table):
     strength = Shown(verbose_name="Strength now")
     days = Shown(verbose_name="Days of supply")
     order_by = Shown(verbose_name="Order by")
-    remarks = tables.Column(orderable=False, attrs=WORDS)
+    remarks = tables.Column(orderable=False, attrs=WORDS, default="")
 
     class Meta:
         template_name = TEMPLATE
@@ -71,7 +71,7 @@ class DoseTable(tables.Table):
     design = Shown(verbose_name="Design")
     need = Shown(verbose_name="Need")
     ratio = Shown(verbose_name="Used ÷ design")
-    remarks = tables.Column(orderable=False, attrs=WORDS)
+    remarks = tables.Column(orderable=False, attrs=WORDS, default="")
 
     class Meta:
         template_name = TEMPLATE
@@ -80,16 +80,15 @@ class DoseTable(tables.Table):
 
 
 class ReadingTable(tables.Table):
-    """One row a reading, corrections in the place of what they correct."""
+    """One row a reading, corrections in the place of what they correct. On a phone each row folds into two lines."""
 
-    at = Shown(verbose_name="Taken", attrs={"td": {"class": "nowrap"}})
-    site = tables.Column()
-    parameter = tables.Column()
-    value = Shown(verbose_name="Value")
-    unit = tables.Column(orderable=False)
-    remarks = tables.Column(orderable=False, attrs=WORDS)
+    at = Shown(verbose_name="Taken", attrs={"td": {"class": "nowrap fold-when"}})
+    site = tables.Column(attrs={"td": {"class": "fold-where"}})
+    parameter = tables.Column(attrs={"td": {"class": "fold-what"}})
+    value = Shown(verbose_name="Value", attrs={"td": {"class": "num fold-value"}, "th": {"class": "num"}})
+    remarks = tables.Column(orderable=False, attrs=WORDS, default="")
 
     class Meta:
         template_name = TEMPLATE
-        attrs = {"class": "tight"}
+        attrs = {"class": "tight folds"}
         row_attrs = {"class": lambda record: "corrected" if record["corrected"] else ""}

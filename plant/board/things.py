@@ -8,9 +8,8 @@ from dataclasses import dataclass
 
 from plant import clock
 from plant.board import shown
-from plant.deviations.queries import DeviationView
+from plant.deviations.queries import WORST_FIRST, DeviationView
 
-WORST_FIRST = {"regulatory": 0, "action": 1, "alert": 2, "target": 3}
 AS_ONE = ("missing", "suspicious_reading")
 """Kinds of which many at once have one cause (a round not walked, a file of bad values)."""
 
@@ -55,7 +54,7 @@ CAUSES = {
 
 @dataclass(frozen=True)
 class Thing:
-    """One line of the list."""
+    """One line of the list. ``telling`` says who must be told by when; ``waits``: a correction needs a second person."""
 
     level: str
     title: str
@@ -65,7 +64,8 @@ class Thing:
     cause: str
     path: str
     parts: tuple[str, ...] = ()
-    telling_owed: bool = False
+    telling: str = ""
+    waits: bool = False
 
 
 def worst(levels: Iterable[str]) -> str:
@@ -81,9 +81,8 @@ def listed(
     calendar: clock.Calendar,
     names: Mapping[str, str],
     labels: Mapping[str, str],
-    causes: bool,
 ) -> list[Thing]:
-    """Open deviations, worst and oldest first. ``causes`` False leaves the likely causes out (operators do not see them)."""
+    """Open deviations, worst and oldest first. The likeliest cause stands there in words; how likely it is does not."""
     ordered = sorted(views, key=lambda view: (WORST_FIRST.get(view.level, 9), view.since, view.ref))
     things: list[Thing] = []
     grouped: dict[tuple[str, str], list[DeviationView]] = {}
@@ -96,7 +95,7 @@ def listed(
             if view is many[0]:
                 things.append(_as_one(many, code, now, calendar, names, labels))
             continue
-        things.append(_one(view, code, now, calendar, names, labels, causes))
+        things.append(_one(view, code, now, calendar, names, labels))
     return things
 
 
@@ -114,19 +113,20 @@ def _one(
     calendar: clock.Calendar,
     names: Mapping[str, str],
     labels: Mapping[str, str],
-    causes: bool,
 ) -> Thing:
-    likely = [CAUSES.get(cause, cause.replace("_", " ")) for cause in view.likely_causes]
-    found = ", ".join(part for part in (str(view.value or ""), f"limit {view.limit}" if view.limit else "") if part)
+    likely = [CAUSES.get(cause, cause.replace("_", " ")) for cause in view.likely_causes if cause != "unknown"]
+    measured = ", limit ".join(part for part in (view.value, view.limit) if part)
+    found = "; ".join(part for part in (measured, view.sentence) if part)
     return Thing(
         level=view.level,
         title=f"{subject_words(view, names, labels)}: {KINDS.get(view.kind, view.kind.replace('_', ' '))}",
         found=found,
         since=shown.moment(view.since, now, calendar),
         who=_who(view),
-        cause=likely[0] if likely and causes else "",
+        cause=likely[0] if likely else "",
         path=f"/w/{code}/deviations/{view.ref}/",
-        telling_owed=bool(view.tellings_owed),
+        telling=_telling([view], now, calendar),
+        waits=view.awaiting_approval,
     )
 
 
@@ -148,17 +148,28 @@ def _as_one(
         who="nobody yet" if any(view.state == "raised" for view in many) else _who(first),
         cause="",
         path=f"/w/{code}/deviations/",
-        parts=tuple(subject_words(view, names, labels) for view in many),
-        telling_owed=any(view.tellings_owed for view in many),
+        parts=tuple(": ".join(part for part in (subject_words(view, names, labels), view.sentence) if part) for view in many),
+        telling=_telling(many, now, calendar),
+        waits=any(view.awaiting_approval for view in many),
     )
 
 
 def _who(view: DeviationView) -> str:
-    """Who has it: whoever acted last, or nobody yet."""
+    """Who has it: whoever took it on, or nobody yet."""
     if view.state == "raised":
         return "nobody yet"
-    people = [event.by for event in view.events if getattr(event, "by", None)]
-    return str(people[-1]) if people else view.state
+    return view.acknowledged_by or next((event.by for event in reversed(view.events) if event.by), "nobody yet")
+
+
+def _telling(views: Iterable[DeviationView], now: dt.datetime, calendar: clock.Calendar) -> str:
+    """The telling that is due first."""
+    owed = sorted((one for view in views for one in view.tellings_owed), key=lambda one: one.due)
+    if not owed:
+        return ""
+    first = owed[0]
+    telephone = f", telephone {first.telephone}" if first.telephone else ""
+    late = " (overdue)" if first.due < now else ""
+    return f"Tell {first.who} by {shown.moment(first.due, now, calendar)}{late}{telephone}."
 
 
 def sentence(things: list[Thing], settled_at: str) -> str:

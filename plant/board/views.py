@@ -210,7 +210,7 @@ def readings_list(request: HttpRequest, at: access.At) -> HttpResponse:
         ),
         empty_text="No reading in these days fits what is asked for.",
     )
-    RequestConfig(request, paginate={"per_page": 100}).configure(table)
+    RequestConfig(request, paginate={"per_page": 50}).configure(table)
     context = {"at": at, "form": form, "table": table, "count": shown.count(len(found), "reading")}
     return render(request, "board/readings.html", context)
 

@@ -76,8 +76,6 @@ def dose_strip(
             for tip in (left, end):
                 shapes.append(scene.Line(tip, SCALE_Y - 6, tip, SCALE_Y + 6, stroke="water", width=2))
         fill = "card" if weak else "water"
-        if weak:
-            shapes.append(scene.Text(x0, 12, "weak day", "quiet"))
         shapes.append(scene.Circle(x, SCALE_Y, 7, fill=fill, stroke="water", width=2.5))
     return scene.Scene(width, HEIGHT, title, summary, (*shapes, *right))
 

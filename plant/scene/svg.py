@@ -6,6 +6,7 @@ Roles become classes (``f-water``, ``s-edge``); the style sheet gives them the c
 from __future__ import annotations
 
 import json
+import re
 from html import escape
 
 from plant import scene
@@ -13,6 +14,7 @@ from plant import scene
 
 def paint(picture: scene.Scene, ident: str) -> str:
     """The picture as one ``svg`` element. ``ident`` must be unique in its page: title and summary are found by it."""
+    ident = re.sub(r"[^\w-]", "_", ident)
     # A link inside a picture can only be reached where the picture is not one image to a reader.
     role = "group" if any(isinstance(one, scene.Group) and one.href for one in picture.shapes) else "img"
     cursor = ""

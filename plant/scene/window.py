@@ -23,9 +23,11 @@ class Window:
 
 def order_window(*, title: str, rows: Sequence[Window], today: dt.date, days: int = 42, width: float = 760) -> scene.Scene:
     """A bar for each product on one calendar line that starts today. A window that has passed is said in words."""
-    label_w = min(240.0, width * 0.36)
-    x0, x1 = label_w, width - 8
-    height = HEAD_H + ROW_H * len(rows) + 6
+    # Where there is no room beside the bars, the names stand over them.
+    narrow = width < 600
+    row_h = ROW_H + (22.0 if narrow else 0.0)
+    x0, x1 = (0.0 if narrow else 240.0), width - 8
+    height = HEAD_H + row_h * len(rows) + 6
 
     def x(day: dt.date) -> float:
         return x0 + (x1 - x0) * min(max((day - today).days, 0), days) / days
@@ -40,8 +42,8 @@ def order_window(*, title: str, rows: Sequence[Window], today: dt.date, days: in
             shapes.append(scene.Text(x(day), 14, words, "quiet", anchor=anchor))
     said = []
     for index, row in enumerate(rows):
-        y = HEAD_H + index * ROW_H + 6
-        shapes.append(scene.Text(0, y + 15, row.name))
+        y = HEAD_H + index * row_h + 6 + (22 if narrow else 0)
+        shapes.append(scene.Text(0, y - 6 if narrow else y + 15, row.name))
         said.append(f"{row.name}: {words_of(row, today)}")
         if row.last is None:
             shapes.append(scene.Text(x0 + 8, y + 15, "not known", "quiet"))
