@@ -308,9 +308,7 @@ KESTREL = Plan(
 def incidents(days: int) -> list[Incident]:
     """The demo's dozen and a half, told from the end of its history, so that the last full month has its share."""
 
-    def ago(
-        what: str, cause: str, subject: str, back: float, length: float, size: float, words: str
-    ) -> Incident:
+    def ago(what: str, cause: str, subject: str, back: float, length: float, size: float, words: str) -> Incident:
         return Incident(what, cause, subject, days - back, days - back + length, size, words)
 
     return [
@@ -327,7 +325,7 @@ def incidents(days: int) -> list[Incident]:
         ago("wrong_booking", "", "FERRIC-BULK", 64, 30, 0.1, "a figure lost when booking"),
         ago("weak_lot", "weak_product", "HYPO-BULK", 46, 20, 0.86, "certificate and test disagree"),
         ago("second_thoughts", "", "ENTRY:hardness", 43, 1, 1.1, "typed twice"),
-        ago("feeder_stop", "unknown", "HYPO-POST", 39.2, 0.27, 0.28, "air in the suction line of the pump"),
+        ago("feeder_stop", "unknown", "HYPO-POST", 39.2, 0.27, 0.68, "air in the suction line of the pump"),
         ago("stuck", "stuck_sensor", "FERRIC-BULK:level", 36, 3.5, 0, "float of the gauge hangs"),
         ago("wrong_reading", "wrong_reading", "ENTRY:pH", 33, 1, 100, "a decimal point lost"),
         ago("unbooked_delivery", "unbooked_delivery", "NAOH-BULK", 36, 30, 3, "paper left in the driver's cab"),

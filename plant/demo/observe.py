@@ -8,13 +8,14 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 
 from chemistry import vessels
-from plant.demo.clockwork import HOUR, Grid
+from plant.demo.clockwork import Grid
 from plant.demo.effects import Effects
 from plant.demo.plan import Block, Incident, Line, Plan
 from plant.demo.tanks import FeedHistory, Held, Load, Move
 
 MINUTES_A_LINE = 0.8
 WALK_STARTS_MIN, WALK_STARTS_MAX = 3, 11
+_OVER = dt.timedelta(minutes=50)
 
 
 @dataclass(frozen=True)
@@ -70,18 +71,25 @@ class Book:
     loads: list[Booked] = field(default_factory=list)
     moves: list[Moved] = field(default_factory=list)
 
+    def until(self, end: dt.datetime) -> Book:
+        """What had happened, and was over, by a moment."""
+        return Book(
+            [item for item in self.rounds if item.at + _OVER < end],
+            sorted((item for item in self.extra if item.written < end), key=lambda item: item.at),
+            [item for item in self.loads if item.at + _OVER < end],
+            [item for item in self.moves if item.at + _OVER < end],
+        )
 
-def rounds_of(plan: Plan, grid: Grid, until: dt.datetime, rng: np.random.Generator) -> list[tuple[dt.datetime, str, int]]:
-    """(start of the walk, shift, operating day) of every round that was over by ``until``."""
+
+def rounds_of(plan: Plan, grid: Grid, rng: np.random.Generator) -> list[tuple[dt.datetime, str, int]]:
+    """(start of the walk, shift, operating day) of every round, the one that closes the last day included."""
     out = []
-    length = dt.timedelta(minutes=(len(plan.lines) + 12) * MINUTES_A_LINE)
     for day in range(grid.days + 1):
         for name, starts in plan.shifts:
             late = dt.timedelta(minutes=int(rng.integers(WALK_STARTS_MIN, WALK_STARTS_MAX)))
             local = dt.datetime.combine(grid.date(day), starts, grid.calendar.zone)
             at = local.astimezone(dt.UTC) + late
-            if at + length < until and grid.hour_of(at + length) < grid.hours - 1:
-                out.append((at, name, day))
+            out.append((at, name, day))
     return out
 
 
@@ -102,19 +110,16 @@ def write_rounds(
     truth: dict[tuple[str, str], np.ndarray],
     histories: list[FeedHistory],
     effect: Effects,
-    until: dt.datetime,
     rng: np.random.Generator,
 ) -> list[Round]:
     """All rounds: each line read at its minute of the walk."""
-    starts = rounds_of(plan, grid, until, rng)
+    starts = rounds_of(plan, grid, rng)
     first_shift = plan.shifts[0][0]
     held = {code: item for history in histories for code, item in history.held.items()}
     rounds = [Round(at, shift, [], at + dt.timedelta(minutes=35)) for at, shift, _ in starts]
     for place, line in enumerate(plan.lines):
         offset = dt.timedelta(minutes=round(place * MINUTES_A_LINE))
-        chosen = [
-            index for index, (_, shift, day) in enumerate(starts) if due(line, grid.date(day), shift == first_shift)
-        ]
+        chosen = [index for index, (_, shift, day) in enumerate(starts) if due(line, grid.date(day), shift == first_shift)]
         if not chosen:
             continue
         moments = [starts[index][0] + offset for index in chosen]
@@ -224,19 +229,15 @@ def _change_meter(grid: Grid, plan: Plan, rounds: list[Round], start: float, inc
                 old = replace(row, parameter="totaliser_reset", note=note)
                 item.rows[index : index + 1] = [old, replace(row, text=f"{incident.size:.0f}")]
             else:
-                item.rows[index] = replace(
-                    row, text=f"{(float(row.text) - base + incident.size) % 10**digits:.0f}"
-                )
+                item.rows[index] = replace(row, text=f"{(float(row.text) - base + incident.size) % 10**digits:.0f}")
 
 
-def write_changes(grid: Grid, plan: Plan, histories: list[FeedHistory], until: dt.datetime) -> list[Round]:
+def write_changes(grid: Grid, histories: list[FeedHistory]) -> list[Round]:
     """Containers changed on a scale: the old one weighed just before, then the new one."""
     out = []
     for history in histories:
         for change in history.changes:
             at = grid.moment(change.hour)
-            if at + HOUR / 2 >= until:
-                continue
             before = at - dt.timedelta(minutes=1)
             rows = [
                 Row(change.vessel, "weight", before, f"{change.old_gross_kg:.1f}", "kg"),
@@ -261,7 +262,7 @@ def write_low_chlorine(
     return out
 
 
-def write_loads(grid: Grid, histories: list[FeedHistory], until: dt.datetime) -> list[Booked]:
+def write_loads(grid: Grid, histories: list[FeedHistory]) -> list[Booked]:
     """Loads as booked: on the spot, late, wrong at first, or never."""
     out = []
     for history in histories:
@@ -275,18 +276,16 @@ def write_loads(grid: Grid, histories: list[FeedHistory], until: dt.datetime) ->
                 written_at = at + dt.timedelta(days=size, hours=1) if size else None
             if load.incident and what == "wrong_booking":
                 first = round(load.kg * load.incident.size)
-            if at + HOUR < until:
-                out.append(Booked(load, at, written_at, load.kg, first))
+            out.append(Booked(load, at, written_at, load.kg, first))
     return sorted(out, key=lambda item: item.at)
 
 
-def write_moves(grid: Grid, histories: list[FeedHistory], until: dt.datetime, rng: np.random.Generator) -> list[Moved]:
+def write_moves(grid: Grid, histories: list[FeedHistory], rng: np.random.Generator) -> list[Moved]:
     """Transfers as booked: read off the day tank's sight glass."""
     out = []
     for history in histories:
         density = float(history.feed.product.get("density_kg_per_L", 1.0))
         for move in history.moves:
             at = grid.moment(move.hour)
-            if at + HOUR < until:
-                out.append(Moved(move, at, round(move.kg / density + rng.normal(0, 1.0), 0)))
+            out.append(Moved(move, at, round(move.kg / density + rng.normal(0, 1.0), 0)))
     return sorted(out, key=lambda item: item.at)

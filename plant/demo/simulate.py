@@ -51,7 +51,9 @@ class Simulated:
         """(from when, dosing point, mg/L) of every design dose, in order."""
         out = []
         for history in self.histories:
-            out += [(self.grid.calendar.start_of(self.grid.date(day)), history.feed.code, dose) for day, dose in history.designs]
+            out += [
+                (self.grid.calendar.start_of(self.grid.date(day)), history.feed.code, dose) for day, dose in history.designs
+            ]
         return sorted(out)
 
     def true_days(self) -> list[TrueDay]:
@@ -103,19 +105,18 @@ def simulate(
     closing = grid.calendar.start_of(last + dt.timedelta(days=1)) + dt.timedelta(hours=2)
     end = min(until, closing) if until else closing
     book = observe.Book(
-        rounds=observe.write_rounds(plan, grid, truth, histories, effect, end, rng),
-        extra=observe.write_changes(grid, plan, histories, end),
-        loads=observe.write_loads(grid, histories, end),
-        moves=observe.write_moves(grid, histories, end, rng),
+        rounds=observe.write_rounds(plan, grid, truth, histories, effect, rng),
+        extra=observe.write_changes(grid, histories),
+        loads=observe.write_loads(grid, histories),
+        moves=observe.write_moves(grid, histories, rng),
     )
     for item in chosen:
         if item.what == "feeder_stop" and item.end - item.start < 1:
             site = next(feed.point["sample_point"] for feed in plan.feeds if feed.code == item.subject)
             begin, finish = grid.hour_of_day(item.start), grid.hour_of_day(item.end)
             checks = observe.write_low_chlorine(grid, truth, site, begin, finish, rng)
-            book.extra += [check for check in checks if check.written < end]
-    book.extra.sort(key=lambda item: item.at)
-    return Simulated(plan, seed, grid, end, chosen, histories, truth, raw.flow_ml_h, wanted, book)
+            book.extra += checks
+    return Simulated(plan, seed, grid, end, chosen, histories, truth, raw.flow_ml_h, wanted, book.until(end))
 
 
 def _wanted(plan: Plan, raw: water.RawWater) -> dict[str, np.ndarray]:

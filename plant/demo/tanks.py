@@ -80,6 +80,11 @@ class FeedHistory:
     changes: list[Change] = field(default_factory=list)
     designs: list[tuple[int, float]] = field(default_factory=list)
 
+    @property
+    def nominal_fraction(self) -> float:
+        """The active fraction of the product as stated."""
+        return float(products.fraction_of_product(self.feed.product))
+
     def dose_mg_l(self, flow_ml_h: np.ndarray) -> np.ndarray:
         """The dose really given in each hour, mg/L in the dose basis."""
         return self.active_kg / np.maximum(flow_ml_h, 1e-9)

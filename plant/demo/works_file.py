@@ -22,12 +22,8 @@ class Raw(str):
 def blocks(plan: Plan) -> dict[str, list[Block]]:
     """All blocks of a plan but its design doses."""
     vessels = [block for feed in plan.feeds for block in (feed.tank, feed.day_tank) if block]
-    points = [
-        feed.point | {"product": feed.product["code"], "vessels": [feed.measured["code"]]} for feed in plan.feeds
-    ]
-    lines: list[Block] = [
-        {"site": line.site, "parameter": line.parameter, "due": _due(line.due)} for line in plan.lines
-    ]
+    points = [feed.point | {"product": feed.product["code"], "vessels": [feed.measured["code"]]} for feed in plan.feeds]
+    lines: list[Block] = [{"site": line.site, "parameter": line.parameter, "due": _due(line.due)} for line in plan.lines]
     limits = [
         {key: Raw(value) if key in ("low", "high", "limit") else value for key, value in block.items()}
         for block in plan.blocks.get("limit", [])
@@ -93,15 +89,16 @@ def text(plan: Plan, history: Simulated | None = None) -> str:
         "operating_day_starts": f"{plan.day_starts:%H:%M}",
         "units": "si",
     }
-    parts = ["# An invented works; nothing in it is a real one's.", _block("[works]", head)]
+    parts = ["# An invented works; nothing in it is a real one's.", written("[works]", head)]
     for kind in _KINDS:
-        parts += [_block(f"[[{kind}]]", block) for block in found.get(kind, [])]
-    parts += [_block("[report]", block) for block in found.get("report", [])]
+        parts += [written(f"[[{kind}]]", block) for block in found.get(kind, [])]
+    parts += [written("[report]", block) for block in found.get("report", [])]
     return "\n\n".join(parts) + "\n"
 
 
-def _block(head: str, block: Block) -> str:
-    return "\n".join([head, *(f"{key} = {value(item)}" for key, item in block.items())])
+def written(head: str, keys: Block) -> str:
+    """One block as it stands in the file."""
+    return "\n".join([head, *(f"{key} = {value(item)}" for key, item in keys.items())])
 
 
 def value(item: Any) -> str:
