@@ -1,5 +1,4 @@
-"""Coagulants: alkalinity taken, sludge made, metal content. mg/L of the pure compound named; floats or
-arrays.
+"""Coagulants: alkalinity taken, sludge made, metal content. mg/L of the pure compound named; floats or arrays.
 
 Reactions run to the hydroxide: Al2(SO4)3 + 6 HCO3 = 2 Al(OH)3 + 3 SO4 + 6 CO2 and their like (definition).
 Coagulants are acid, stain and corrode, and with hypochlorite or chlorite give off chlorine or chlorine
@@ -37,8 +36,7 @@ RATIOS_NTU = (0.7, 2.2)  # mg/L suspended solids per NTU, from memory
 
 
 def alkalinity_used_mg_l(coagulant: str, dose_mg_l: Values, *, oxidised_by_chlorine: bool = False) -> Values:
-    """Alkalinity taken in mg/L as CaCO3: 0.505 per mg of dry alum (14 H2O), 0.926 per mg FeCl3, 0.751 per
-    mg Fe2(SO4)3.
+    """Alkalinity taken in mg/L as CaCO3: 0.505 per mg of dry alum (14 H2O), 0.926 per mg FeCl3, 0.751 per mg Fe2(SO4)3.
 
     Ferrous sulfate takes 0.36 per mg, 0.54 when chlorine oxidises it. Dose 0 to 2000 mg/L; names in
     COAGULANTS.
@@ -54,9 +52,7 @@ def alkalinity_used_mg_l(coagulant: str, dose_mg_l: Values, *, oxidised_by_chlor
 
 
 def alkalinity_left_mg_l(coagulant: str, dose_mg_l: Values, alkalinity_mg_l_caco3: Values) -> Values:
-    """Alkalinity after a dose; refused below 0, where the pH falls and the metal stays in solution: add
-    alkali first.
-    """
+    """Alkalinity after a dose; refused below 0, where the pH falls and the metal stays in solution: add alkali first."""
     left = alkalinity_mg_l_caco3 - alkalinity_used_mg_l(coagulant, dose_mg_l)
     errors.require("alkalinity left", left, "mg/L as CaCO3", 0.0, 10000.0, "alkalinity the coagulant takes")
     return left
@@ -87,8 +83,7 @@ def sludge_mg_l(
     suspended_solids_mg_l: Values = 0.0,
     additives_mg_l: Values = 0.0,
 ) -> Values:
-    """Dry solids in mg/L (kg per ML): 2.0 Ca + 2.6 Mg (removed, as CaCO3) + 0.44 alum + 1.9 Fe + SS +
-    additives.
+    """Dry solids in mg/L (kg per ML): 2.0 Ca + 2.6 Mg (removed, as CaCO3) + 0.44 alum + 1.9 Fe + SS + additives.
 
     LANG-1985, second-hand. Alum as dry alum, iron as Fe. An estimate: weigh the sludge.
     """

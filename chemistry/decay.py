@@ -97,9 +97,7 @@ def chlorate_formed_g_l(strength_lost_g_l: Values) -> Values:
 def hypochlorite_range_remarks(
     strength_g_l: float, temperatures_c: Sequence[float], *, excess_naoh_mol_l: float = EXCESS_NAOH_MOL_L
 ) -> tuple[str, ...]:
-    """What makes a computed loss an estimate: storage outside 15 to 55 °C, or product outside 0.7 to 3
-    mol/L OCl.
-    """
+    """What makes a computed loss an estimate: storage outside 15 to 55 °C, or product outside 0.7 to 3 mol/L OCl."""
     remarks = []
     if any(not TEMPERATURE_RANGE_C[0] <= t <= TEMPERATURE_RANGE_C[1] for t in temperatures_c):
         remarks.append("storage outside 15 to 55 °C: loss extrapolated")

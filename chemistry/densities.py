@@ -63,8 +63,7 @@ def density_kg_l(chemical: str, weight_pct: Values, temperature_c: Values) -> Va
 
 
 def hypochlorite_density_kg_l(available_chlorine_g_l: Values, excess_naoh_pct: Values = 0.3) -> Values:
-    """Density of sodium hypochlorite in kg/L, about 20 °C, from available chlorine (g/L, 0 to 160) and
-    excess NaOH (wt %).
+    """Density of sodium hypochlorite in kg/L, about 20 °C, from available chlorine (g/L, 0 to 160) and excess NaOH (wt %).
 
     SG = 1 + 0.001308 c + 0.015 NaOH %: a line through an industry page's 120 g/L (1.157, 1.160 and 1.168 at
     0, 0.2 and 0.73 % caustic; opened); it gives 1.081 at 61.7 g/L where label strengths imply 1.081
@@ -76,9 +75,7 @@ def hypochlorite_density_kg_l(available_chlorine_g_l: Values, excess_naoh_pct: V
 
 
 def density_from_sg_kg_l(specific_gravity: Values, reference_kg_l: float = WATER_60F_KG_L) -> Values:
-    """Density in kg/L from a specific gravity; the reference is water at 60 °F unless another density is
-    given.
-    """
+    """Density in kg/L from a specific gravity; the reference is water at 60 °F unless another density is given."""
     return specific_gravity * reference_kg_l
 
 

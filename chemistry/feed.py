@@ -1,5 +1,4 @@
-"""Feeding arithmetic: mass, dose and flow; pump settings and draw-down; drums, cylinders, bags and days of
-supply.
+"""Feeding arithmetic: mass, dose and flow; pump settings and draw-down; drums, cylinders, bags and days of supply.
 
 mg/L x ML = kg (definition). ``active_fraction`` is kg on the dose basis per kg product
 (`chemistry.products`). Floats or arrays. Sources: ABC-TABLES for the operator forms; the rest follows from
@@ -46,9 +45,7 @@ def volume_treated_ml(product_kg: Values, active_fraction: Values, dose_mg_l: Va
 
 
 def mass_lb(dose_mg_l: Values, volume_us_mgal: Values, active_fraction: Values = 1.0) -> Values:
-    """The same in pounds and million US gallons: mg/L x MG x 8.3454 / active fraction (ABC-TABLES use
-    8.34).
-    """
+    """The same in pounds and million US gallons: mg/L x MG x 8.3454 / active fraction (ABC-TABLES use 8.34)."""
     _positive("active fraction", active_fraction, "lb/lb")
     return dose_mg_l * volume_us_mgal * LB_PER_US_MGAL_PER_MG_L / active_fraction
 
@@ -78,9 +75,7 @@ def drawdown_ml_min(volume_ml: Values, seconds: Values) -> Values:
 
 
 def stroke_pct(wanted: Values, maximum: Values) -> Values:
-    """Stroke or speed in % for a wanted feed, same unit as the feeder's maximum; above 100 % is refused
-    (ABC-TABLES).
-    """
+    """Stroke or speed in % for a wanted feed, same unit as the feeder's maximum; above 100 % is refused (ABC-TABLES)."""
     _positive("feeder maximum", maximum, "")
     setting = wanted / maximum * 100.0
     errors.require("feeder setting", setting, "%", 0.0, 100.0, "the feeder can't give more than its maximum")
@@ -94,9 +89,7 @@ def feed_from_setting(setting_pct: Values, maximum: Values) -> Values:
 
 
 def cylinder_net_kg(gross_kg: Values, tare_kg: Values) -> Values:
-    """Gas left in a cylinder or container: gross less its own stamped tare. Pressure tells nothing about
-    contents.
-    """
+    """Gas left in a cylinder or container: gross less its own stamped tare. Pressure tells nothing about contents."""
     _positive("tare", tare_kg, "kg")
     errors.require("net weight", gross_kg - tare_kg, "kg", 0.0, np.inf, "a cylinder weighs its tare or more")
     return gross_kg - tare_kg
@@ -148,17 +141,13 @@ def solution_strength_pct(dry_kg: Values, water_kg: Values, purity: Values = 1.0
 
 
 def threshold_solution_kg(threshold_kg: Values, weight_fraction: Values) -> Values:
-    """Solution that holds a threshold quantity counted as the pure substance (40 CFR 68.115, as EPA
-    explains it).
-    """
+    """Solution that holds a threshold quantity counted as the pure substance (40 CFR 68.115, as EPA explains it)."""
     errors.require("weight fraction", weight_fraction, "kg/kg", 1e-9, 1.0, "40 CFR 68.115")
     return threshold_kg / weight_fraction
 
 
 def fluoride_additive_lb_per_us_mgal(net_fluoride_mg_l: Values, purity: Values, available_fluoride: Values) -> Values:
-    """Pounds of additive per million US gallons for a net fluoride dose: 8.3454 C / (purity x fluoride
-    content).
-    """
+    """Pounds of additive per million US gallons for a net fluoride dose: 8.3454 C / (purity x fluoride content)."""
     return mass_lb(net_fluoride_mg_l, 1.0, purity * available_fluoride)
 
 
@@ -173,9 +162,7 @@ def density_kg_l_from_lb_per_us_gal(lb_per_us_gal: Values) -> Values:
 
 
 def caco3_equivalent_mg_l(dose_mg_l: Values, formula: str) -> Values:
-    """Alkalinity added (+) or taken (-), mg/L as CaCO3, by a dose of a pure alkali or acid (equivalents per
-    mole).
-    """
+    """Alkalinity added (+) or taken (-), mg/L as CaCO3, by a dose of a pure alkali or acid (equivalents per mole)."""
     if formula not in products.ALKALINITY_EQ_MOL:
         known = ", ".join(products.ALKALINITY_EQ_MOL)
         raise errors.ChemistryError(f"no alkalinity equivalents for {formula!r}; known: {known}")

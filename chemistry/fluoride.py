@@ -52,8 +52,6 @@ def fluoride_added_mg_l(additive_mg_l: Values, additive: str, purity: Values = 1
 
 
 def saturator_l_per_ml(fluoride_mg_l: Values, saturated_mg_l_f: float = SATURATED_NAF_MG_L_F) -> Values:
-    """Litres of saturated NaF solution per ML of water (the same number as US gal per US Mgal): 1e6 F /
-    18,000.
-    """
+    """Litres of saturated NaF solution per ML of water (the same number as US gal per US Mgal): 1e6 F / 18,000."""
     errors.require("fluoride", fluoride_mg_l, "mg/L", 0.0, _HIGHEST_MG_L, _SOURCE)
     return 1e6 * fluoride_mg_l / saturated_mg_l_f

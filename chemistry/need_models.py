@@ -15,9 +15,7 @@ _FE_MN_LIMIT_MG_L = 1.0  # polyphosphate suits Fe + Mn up to this; WIS-NR-811.56
 
 
 def oxidant_demand(settings: Settings, readings: Readings, product: Product) -> Working:
-    """Dose = demand + target residual, both in the residual's basis (chlorine as Cl2, peroxide as H2O2);
-    MD0160.
-    """
+    """Dose = demand + target residual, both in the residual's basis (chlorine as Cl2, peroxide as H2O2); MD0160."""
     target = need_parts.setting(settings, "target_residual_mg_per_L", 0.0)
     uses: tuple[str, ...] = ()
     if settings.get("demand_from") == "last_7_days":
@@ -52,9 +50,7 @@ def residual_basis(product: Product) -> str:
 
 
 def ion_exchange_salt(settings: Settings, readings: Readings, product: Product) -> Working:
-    """Salt per litre of blended water: hardness removed x salt per regeneration / capacity per
-    regeneration.
-    """
+    """Salt per litre of blended water: hardness removed x salt per regeneration / capacity per regeneration."""
     resin_m3 = need_parts.setting(settings, "resin_m3")
     capacity = need_parts.setting(settings, "capacity_kg_CaCO3_per_m3")
     salt = need_parts.setting(settings, "salt_kg_per_m3")
@@ -157,9 +153,7 @@ def oxidise(settings: Settings, readings: Readings, product: Product) -> Working
 
 
 def sequestrant(settings: Settings, readings: Readings, product: Product) -> Working:
-    """Base dose plus the works' own mg per mg of iron and manganese, in the product's dose basis (common
-    practice).
-    """
+    """Base dose plus the works' own mg per mg of iron and manganese, in the product's dose basis (common practice)."""
     base = need_parts.setting(settings, "base_mg_per_L", 0.0)
     dose, uses = base, []
     steps = [Step("base dose as stated", "b", base, "mg/L", "common-practice")]

@@ -25,9 +25,7 @@ OTHER_READING_SD = (0.0, 0.05)
 
 
 class Step(NamedTuple):
-    """One line of the working: words, formula, value, unit and the key of its source in
-    `chemistry.sources`.
-    """
+    """One line of the working: words, formula, value, unit and the key of its source in `chemistry.sources`."""
 
     words: str
     formula: str
@@ -56,9 +54,7 @@ class Need:
 
 @dataclass
 class Working:
-    """A model's answer while it is being worked out: mg/L of ``formula`` ('' when already in the dose
-    basis).
-    """
+    """A model's answer while it is being worked out: mg/L of ``formula`` ('' when already in the dose basis)."""
 
     dose_mg_l: float
     formula: str = ""
@@ -110,9 +106,7 @@ def setting(settings: Settings, key: str, default: float | None = None) -> float
 
 
 def solve(model: Model, settings: Settings, readings: Readings, product: Product, sds: Mapping[str, float] | None) -> Need:
-    """Run a model, state its dose in the product's basis and propagate the readings' uncertainties through
-    it.
-    """
+    """Run a model, state its dose in the product's basis and propagate the readings' uncertainties through it."""
     try:
         working = model(settings, readings, product)
         dose = in_basis(working, product)

@@ -15,9 +15,7 @@ _PART_FORMULA = {"lime": "Ca(OH)2", "soda_ash": "Na2CO3", "caustic": "NaOH"}
 
 
 def lime_soda(settings: Settings, readings: Readings, product: Product) -> Working:
-    """One chemical of lime-soda (or caustic) softening to a target hardness; see
-    `softening.lime_soda_dose`.
-    """
+    """One chemical of lime-soda (or caustic) softening to a target hardness; see `softening.lime_soda_dose`."""
     part = settings.get("part", "lime")
     if part not in _PART_FORMULA:
         raise errors.ChemistryError(f"part must be lime, soda_ash or caustic, not {part!r}")
@@ -96,9 +94,7 @@ def target_ph(settings: Settings, readings: Readings, product: Product) -> Worki
 
 
 def _hardness(readings: Readings, lacking: list[str]) -> tuple[float, float, tuple[str, ...], list[Step]]:
-    """Calcium and magnesium hardness (mg/L as CaCO3) from whichever two of calcium, magnesium and total are
-    there.
-    """
+    """Calcium and magnesium hardness (mg/L as CaCO3) from whichever two of calcium, magnesium and total are there."""
     calcium, calcium_name = _as_caco3(readings, "calcium", _CA_TO_CACO3)
     magnesium, magnesium_name = _as_caco3(readings, "magnesium", _MG_TO_CACO3)
     total = float(readings["hardness"]) if need_parts.has(readings, "hardness") else None

@@ -88,8 +88,7 @@ def need(
     product: Mapping[str, Any],
     sds: Mapping[str, float] | None = None,
 ) -> Need:
-    """The dose a water needs of a product, with its uncertainty, readings used and working, or the reason
-    why not.
+    """The dose a water needs of a product, with its uncertainty, readings used and working, or the reason why not.
 
     ``readings``: canonical values by parameter (for ``demand_from = "last_7_days"`` also
     ``demand_mg_per_L``). ``product``: chemical, strength, strength_basis, density_kg_per_L, strength_as,

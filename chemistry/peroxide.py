@@ -59,8 +59,7 @@ def chlorine_to_quench_mg_l(peroxide_mg_l: Values) -> Values:
 
 
 def dose_with_ozone_mg_l(ozone_mg_l: Values, ratio_mg_mg: Values = PEROXIDE_PER_OZONE) -> Values:
-    """Peroxide (mg/L) to go with ozone (mg/L): 0.354 mg/mg by 2 O3 + H2O2; a works sets its own, usually
-    0.3 to 0.6.
+    """Peroxide (mg/L) to go with ozone (mg/L): 0.354 mg/mg by 2 O3 + H2O2; a works sets its own, usually 0.3 to 0.6.
 
     Ratios outside 0.1 to 1.0 are refused: more peroxide only eats radicals.
     """

@@ -135,9 +135,7 @@ def active_fraction(
 
 
 def counted_formula(strength_basis: str, chemical: str, strength_as: str | None = None) -> str:
-    """The formula a strength counts: Cl2 for the chlorine bases, else ``strength_as`` or the chemical
-    itself.
-    """
+    """The formula a strength counts: Cl2 for the chlorine bases, else ``strength_as`` or the chemical itself."""
     if strength_basis in CHLORINE_BASES:
         if constants.is_formula(chemical) and chemical not in AVAILABLE_CL2_MOL:
             raise errors.ChemistryError(f"{chemical} has no available chlorine")
@@ -159,9 +157,7 @@ def fraction_of_product(product: Mapping[str, Any], dose_basis: str | None = Non
 
 
 def dose_in_basis_mg_l(dose_mg_l: Values, of_formula: str, product: Mapping[str, Any]) -> Values:
-    """mg/L in the product's own dose basis that carry ``dose_mg_l`` of a pure substance (``Cl2``,
-    ``Ca(OH)2`` ...).
-    """
+    """mg/L in the product's own dose basis that carry ``dose_mg_l`` of a pure substance (``Cl2``, ``Ca(OH)2`` ...)."""
     basis = product["dose_basis"]
     if basis == "product":
         return dose_mg_l / fraction_of_product(product, of_formula)
@@ -189,8 +185,7 @@ def mix_lots(
     densities_kg_l: Sequence[float | None],
     strength_basis: str,
 ) -> tuple[float, float, float | None]:
-    """(kg, strength, density) of lots poured together: active mass adds up, volumes too (common practice,
-    no source).
+    """(kg, strength, density) of lots poured together: active mass adds up, volumes too (common practice, no source).
 
     All strengths on one basis. Without a density for every lot the mixture has none, and a strength per
     volume is refused.

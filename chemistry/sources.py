@@ -1,5 +1,4 @@
-"""Where every formula comes from: key -> citation. Functions and steps name the key, screens print the
-citation.
+"""Where every formula comes from: key -> citation. Functions and steps name the key, screens print the citation.
 
 A citation ends with how far it was seen: "opened" (page, abstract or data file read), "second-hand" (read
 where another page quotes it), "from memory" (nobody opened it), or "definition".

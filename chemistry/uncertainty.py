@@ -15,11 +15,8 @@ from chemistry import errors
 Values = Any  # a float or a numpy array
 
 
-def of_function(
-    function: Callable[..., Values], values: Mapping[str, Values], sds: Mapping[str, Values]
-) -> Values:
-    """Standard uncertainty of ``function(**values)`` from those of its inputs (``sds``; an input left out
-    is exact).
+def of_function(function: Callable[..., Values], values: Mapping[str, Values], sds: Mapping[str, Values]) -> Values:
+    """Standard uncertainty of ``function(**values)`` from those of its inputs (``sds``; an input left out is exact).
 
     Where the function refuses a shifted input (OutOfRange at the edge of a table), the shift inward is used
     alone; where it refuses both, ChemistryError.
@@ -44,9 +41,7 @@ def relative_of_product(relative_sds: Sequence[Values]) -> Values:
 
 
 def of_interpolation(share_to_second: Values, sd_first: Values, sd_second: Values) -> Values:
-    """Standard uncertainty of a value read off the straight line between two readings, at a share 0 to 1 of
-    the way.
-    """
+    """Standard uncertainty of a value read off the straight line between two readings, at a share 0 to 1 of the way."""
     errors.require("share", share_to_second, "", 0.0, 1.0, "interpolation")
     return of_sum([(1.0 - share_to_second) * sd_first, share_to_second * sd_second])
 
@@ -54,9 +49,7 @@ def of_interpolation(share_to_second: Values, sd_first: Values, sd_second: Value
 def of_dose_mg_l(
     *, dose_mg_l: Values, use_relative_sd: Values, strength_relative_sd: Values, volume_relative_sd: Values
 ) -> Values:
-    """Standard uncertainty of dose = use x strength / volume, in mg/L, from relative ones (fractions, not
-    %).
-    """
+    """Standard uncertainty of dose = use x strength / volume, in mg/L, from relative ones (fractions, not %)."""
     return dose_mg_l * relative_of_product([use_relative_sd, strength_relative_sd, volume_relative_sd])
 
 
@@ -65,9 +58,7 @@ def of_volume_l(slope_l_per_m: Values, level_sd_m: Values) -> Values:
     return slope_l_per_m * level_sd_m
 
 
-def _half_difference(
-    function: Callable[..., Values], values: Mapping[str, Values], name: str, sd: Values
-) -> Values:
+def _half_difference(function: Callable[..., Values], values: Mapping[str, Values], name: str, sd: Values) -> Values:
     results: list[Values] = []
     for sign in (1.0, -1.0):
         shifted = {**values, name: values[name] + sign * sd}

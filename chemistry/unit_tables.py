@@ -1,6 +1,4 @@
-"""Spellings, factors and parameters that `chemistry.units` converts between. Sources: see
-`chemistry.units`.
-"""
+"""Spellings, factors and parameters that `chemistry.units` converts between. Sources: see `chemistry.units`."""
 
 from dataclasses import dataclass
 from fractions import Fraction
@@ -10,9 +8,7 @@ from chemistry import constants
 
 @dataclass(frozen=True)
 class Unit:
-    """value in the kind's base unit = value * factor + offset; ``exact`` when a definition fixes the
-    factor.
-    """
+    """value in the kind's base unit = value * factor + offset; ``exact`` when a definition fixes the factor."""
 
     kind: str
     factor: Fraction = Fraction(1)

@@ -93,8 +93,7 @@ def canonical(value: Values, unit: str, parameter: str, canonical_unit: str | No
 
 
 def canonical_text(text: str, unit: str, parameter: str, canonical_unit: str | None = None) -> str:
-    """The decimal text of a reading in its canonical unit, e.g. ``("62.50", "µg/L", "iron")`` ->
-    ``"0.06250"``.
+    """The decimal text of a reading in its canonical unit, e.g. ``("62.50", "µg/L", "iron")`` -> ``"0.06250"``.
 
     Exact to the last digit, trailing zeros kept, when the factor is exact and ends; otherwise rounded half
     to even at 12 significant digits. Raises ChemistryError for text that isn't one plain decimal number.
@@ -119,9 +118,7 @@ def canonical_text(text: str, unit: str, parameter: str, canonical_unit: str | N
 
 
 def basis_remark(unit: str, parameter: str, canonical_unit: str | None = None) -> str:
-    """What a person should be told about the unit taken, '' when nothing (a missing basis, FNU as NTU, MPN
-    as CFU).
-    """
+    """What a person should be told about the unit taken, '' when nothing (a missing basis, FNU as NTU, MPN as CFU)."""
     return _step(unit, parameter, canonical_unit).remark
 
 

@@ -125,9 +125,7 @@ def net_mass_kg(shape: Shape, gross_kg: Values) -> Values:
 
 
 def contents_kg(shape: Shape, reading: Values, density_kg_l: float) -> Values:
-    """Product in kg from what the vessel shows: a level in m times density in kg/L, or a gross weight on a
-    scale.
-    """
+    """Product in kg from what the vessel shows: a level in m times density in kg/L, or a gross weight on a scale."""
     if shape.get("shape") == "scale":
         return net_mass_kg(shape, reading)
     errors.require("density", density_kg_l, "kg/L", 0.5, 2.5, "liquids and slurries a works doses")
@@ -135,9 +133,7 @@ def contents_kg(shape: Shape, reading: Values, density_kg_l: float) -> Values:
 
 
 def check_shape(shape: Shape) -> None:
-    """Raise ChemistryError when a stated shape can't be used: unknown kind, missing, zero or impossible
-    measures.
-    """
+    """Raise ChemistryError when a stated shape can't be used: unknown kind, missing, zero or impossible measures."""
     if shape.get("shape") == "scale":
         tare = shape.get("tare_kg")
         if tare is not None and not 0 <= float(tare) < float("inf"):

@@ -24,9 +24,7 @@ _ABOVE_ZERO = float(np.nextafter(0.0, 1.0))
 
 
 def theoretical_time_min(volume_m3: Values, peak_flow_m3_h: Values) -> Values:
-    """Volume at the minimum operating level over peak hourly flow, in min (EPA-816-R-03-004 ch. 4, from
-    memory).
-    """
+    """Volume at the minimum operating level over peak hourly flow, in min (EPA-816-R-03-004 ch. 4, from memory)."""
     errors.require("volume", volume_m3, "m3", _ABOVE_ZERO, 1e7, "contact time")
     errors.require("peak hourly flow", peak_flow_m3_h, "m3/h", _ABOVE_ZERO, 1e7, "contact time")
     return volume_m3 / peak_flow_m3_h * 60.0
@@ -46,9 +44,7 @@ def pipe_volume_m3(inside_diameter_m: Values, length_m: Values) -> Values:
 
 
 def ct_mg_min_l(residual_mg_l: Values, time_min: Values) -> Values:
-    """CT = C x T, mg min/L; residual at the end of the segment, both during peak hourly flow (40 CFR
-    141.720(a)(1)).
-    """
+    """CT = C x T, mg min/L; residual at the end of the segment, both during peak hourly flow (40 CFR 141.720(a)(1))."""
     errors.require("residual", residual_mg_l, "mg/L", 0.0, 100.0, "CT")
     errors.require("contact time", time_min, "min", 0.0, 1e6, "CT")
     return residual_mg_l * time_min

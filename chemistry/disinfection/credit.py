@@ -68,9 +68,7 @@ def giardia_log_from_ratios(ratios: Sequence[float]) -> float:
 
 
 def inactivation_ratio(log_achieved: Values, log_required: Values) -> Values:
-    """Logs achieved over logs required: for a works that must do L logs, CT / (CT99.9 L / 3), not CT /
-    CT99.9.
-    """
+    """Logs achieved over logs required: for a works that must do L logs, CT / (CT99.9 L / 3), not CT / CT99.9."""
     errors.require("logs achieved", log_achieved, "log", 0.0, 1e6, "inactivation ratio")
     errors.require("logs required", log_required, "log", 1e-6, 10.0, "inactivation ratio")
     return log_achieved / log_required
@@ -79,17 +77,13 @@ def inactivation_ratio(log_achieved: Values, log_required: Values) -> Values:
 def cryptosporidium_credit(
     cts_mg_min_l: Sequence[float], disinfectant: str, temperature_c: float, *, method: str = "interpolate"
 ) -> float:
-    """Logs of Cryptosporidium for the summed CT of all segments at one temperature, capped at the table's 3
-    log.
-    """
+    """Logs of Cryptosporidium for the summed CT of all segments at one temperature, capped at the table's 3 log."""
     total = float(np.sum(np.asarray(cts_mg_min_l, dtype=float)))
     return float(ct_tables.log_from_ct("Cryptosporidium", disinfectant, total, temperature_c, method=method))
 
 
 def log_from_percent(percent: Values) -> Values:
-    """Logs from % inactivated, 0 to below 100: -log10(1 - p/100); 99.9 % is 3 (definition; 40 CFR
-    141.72(b)(1)).
-    """
+    """Logs from % inactivated, 0 to below 100: -log10(1 - p/100); 99.9 % is 3 (definition; 40 CFR 141.72(b)(1))."""
     errors.require("inactivation", percent, "%", 0.0, float(np.nextafter(100.0, 0.0)), "log inactivation")
     return -np.log10(1.0 - percent / 100.0)
 

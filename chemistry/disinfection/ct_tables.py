@@ -120,9 +120,7 @@ def cells_behind(
     *,
     method: str = "conservative",
 ) -> tuple[Cell, ...]:
-    """The tabulated cells an answer of :func:`required_ct_mg_min_l` rests on, with table and evidence, for
-    print.
-    """
+    """The tabulated cells an answer of :func:`required_ct_mg_min_l` rests on, with table and evidence, for print."""
     table = _table(organism, disinfectant)
     (logs, *places), _ = _arguments(table, log_inactivation, temperature_c, ph, residual_mg_l, method)
     temperature, acidity, residual = (float(place) for place in places)
@@ -157,9 +155,7 @@ def _ct_by_log(table: _Table, places: list[np.ndarray]) -> np.ndarray:
 def _arguments(
     table: _Table, logs: Values, temperature_c: Values, ph: Values, residual_mg_l: Values, method: str
 ) -> tuple[list[np.ndarray], bool]:
-    """Logs, and the (fractional) places along each axis, broadcast together; and whether all inputs were
-    scalars.
-    """
+    """Logs, and the (fractional) places along each axis, broadcast together; and whether all inputs were scalars."""
     if method not in METHODS:
         raise errors.ChemistryError(f"method must be {' or '.join(METHODS)}, not {method!r}")
     errors.require("log inactivation", logs, "log", 1e-6, float(table.logs[-1]), "CT table")
@@ -186,9 +182,7 @@ def _arguments(
 
 
 def _place(axis: np.ndarray, value: Values, method: str, *, down: bool) -> np.ndarray:
-    """Where values fall along an axis, as a fractional index; whole when rounded down or up to a tabulated
-    one.
-    """
+    """Where values fall along an axis, as a fractional index; whole when rounded down or up to a tabulated one."""
     place: np.ndarray = np.interp(np.asarray(value, dtype=float), axis, np.arange(len(axis), dtype=float))
     if method != "interpolate":
         place = np.floor(place + _TIE) if down else np.ceil(place - _TIE)

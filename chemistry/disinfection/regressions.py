@@ -1,6 +1,4 @@
-"""Closed forms of required CT and of log inactivation, each with its range, source and how it stands to the
-tables.
-"""
+"""Closed forms of required CT and of log inactivation, each with its range, source and how it stands to the tables."""
 
 from typing import Any
 
@@ -13,8 +11,7 @@ _TOOLBOX = "LT2ESWTR Toolbox"
 
 
 def giardia_free_chlorine_ct(log_inactivation: Values, temperature_c: Values, ph: Values, residual_mg_l: Values) -> Values:
-    """CT for Giardia by free chlorine, two-branch regression (Smith, Clark et al. 1995; EPA-816-R-03-004;
-    from memory).
+    """CT for Giardia by free chlorine, two-branch regression (Smith, Clark et al. 1995; EPA-816-R-03-004; from memory).
 
     T < 12.5: CT = 0.353 I (12.006 + e^(2.46 - 0.073 T + 0.125 C + 0.389 pH)); from 12.5 on: CT = 0.361 I
     (-2.261 + e^(2.69 - 0.065 T + 0.111 C + 0.361 pH)). Range 0.5 to 25 °C, pH 6 to 9, C 0.4 to 3.0, I to 3.
@@ -67,8 +64,7 @@ def virus_ozone_log(ct_mg_min_l: Values, temperature_c: Values) -> Values:
 
 
 def cryptosporidium_chlorine_dioxide_log(ct_mg_min_l: Values, temperature_c: Values) -> Values:
-    """Cryptosporidium logs by ClO2: 0.001506 x 1.09116^T x CT (40 CFR 141.720(b)(1) note, from memory); 0.5
-    to 30 °C.
+    """Cryptosporidium logs by ClO2: 0.001506 x 1.09116^T x CT (40 CFR 141.720(b)(1) note, from memory); 0.5 to 30 °C.
 
     All 77 table cells within 1.1 % or one unit. The law lets a system use it between tabulated values (from
     memory).
@@ -77,8 +73,7 @@ def cryptosporidium_chlorine_dioxide_log(ct_mg_min_l: Values, temperature_c: Val
 
 
 def cryptosporidium_ozone_log(ct_mg_min_l: Values, temperature_c: Values) -> Values:
-    """Cryptosporidium logs by ozone: 0.0397 x 1.09757^T x CT (40 CFR 141.720(b)(2) note, from memory); 0.5
-    to 30 °C.
+    """Cryptosporidium logs by ozone: 0.0397 x 1.09757^T x CT (40 CFR 141.720(b)(2) note, from memory); 0.5 to 30 °C.
 
     All 77 table cells within one unit in the last place.
     """

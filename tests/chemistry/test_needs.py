@@ -195,9 +195,9 @@ def test_quench_by_peroxide_and_of_peroxide():
     assert third.dose_mg_l == pytest.approx(2.0 * M("NaHSO3") / M("H2O2"), rel=1e-6)
     below = needs.need("quench", {"of": "chlorine", "target_mg_per_L": 2.0}, {"free_chlorine": 1.1}, product=bisulfite)
     assert below.dose_mg_l == 0.0
-    for settings, chemical in (({"of": "ozone"}, bisulfite), ({"of": "chlorine"}, LIME), ({"of": "peroxide"}, LIME)):
+    for stated, chemical in (({"of": "ozone"}, bisulfite), ({"of": "chlorine"}, LIME), ({"of": "peroxide"}, LIME)):
         readings = {"free_chlorine": 1.0, "hydrogen_peroxide": 1.0}
-        assert needs.need("quench", settings, readings, product=chemical).reason
+        assert needs.need("quench", stated, readings, product=chemical).reason
 
 
 def test_oxidise_takes_stoichiometry_or_the_works_own_ratio():
