@@ -25,11 +25,11 @@ _HIGH: dict[str, str] = {
     "total_chlorine": "Reduce or stop the dose by the works' own procedure, and look for a feeder set too high.",
     "pH": "Look whether an alkali feeder is set too high or siphons. Stop it if it can't be held.",
     "fluoride": "Stop the fluoride feeder and close its valve. Read again before it is started.",
-    "turbidity": "Look at the filter, its flow and the coagulant dose. Take the filter out of supply if the works' procedure says so.",
+    "turbidity": "Look at the filter, its flow and the coagulant dose. Take the filter out if the works' procedure says so.",
     "hydrogen_peroxide": "Reduce or stop the dose, and look at the quenching that follows it.",
     "iron": "Look at the oxidant dose and the filters.",
     "manganese": "Look at the oxidant dose, the pH and the filters.",
-    "total_coliform": "Hold the sample sheet. Repeat samples are taken by the works' own plan; the residual there is read at once.",
+    "total_coliform": "Read the residual there at once. Repeat samples are taken by the works' own plan.",
     "e_coli": "This is urgent: the person named below is told at once. Repeat samples are taken by the works' own plan.",
     "level": "Stop filling and close the fill valve. Look at the overflow and the bund.",
 }
@@ -50,7 +50,12 @@ CAUTIONS: dict[str, str] = {
     "ozone": "Ozone harms the lungs: if you smell it, leave the room and call. Do not enter on the alarm.",
     "chlorine_dioxide": "Chlorine dioxide gas is poisonous and can explode: if you smell it, leave and call.",
 }
-_CAUTION_OF = {"total_chlorine": "free_chlorine", "combined_chlorine": "free_chlorine", "alkalinity": "pH", "p_alkalinity": "pH"}
+_CAUTION_OF = {
+    "total_chlorine": "free_chlorine",
+    "combined_chlorine": "free_chlorine",
+    "alkalinity": "pH",
+    "p_alkalinity": "pH",
+}
 
 
 def what_to_do(parameter: str, side: str, level: str) -> str:

@@ -23,7 +23,14 @@ class NotReadable(ValueError):
 
 
 def correct(
-    *, book: Book, stated: Stated, reading: models.Reading, typed: dict[str, str], reason: str, by: Any, now: dt.datetime,
+    *,
+    book: Book,
+    stated: Stated,
+    reading: models.Reading,
+    typed: dict[str, str],
+    reason: str,
+    by: Any,
+    now: dt.datetime,
     client_id: str,
 ) -> actions.Taken:
     """Puts a new value, unit, time or note in the place of a reading.
@@ -32,23 +39,48 @@ def correct(
     readings.AlreadyCorrected, readings.ReasonMissing.
     """
     here = ground.Ground(
-        stated, stated.calendar(now), history=records.history_of(book),
-        spelling=ground.Spelling(decimal=numbers.POINT if stated.works(now).units == "us" else numbers.EITHER))
+        stated,
+        stated.calendar(now),
+        history=records.history_of(book),
+        spelling=ground.Spelling(decimal=numbers.POINT if stated.works(now).units == "us" else numbers.EITHER),
+    )
     found = lines.read_line(
         lines.Typed(
-            site=reading.site, timestamp=typed.get("timestamp", ""), parameter=reading.parameter,
-            value=typed.get("value", ""), unit=typed.get("unit", ""), note=typed.get("note", ""),
-            method=typed.get("method", reading.method), sample=reading.sample, statistic=reading.statistic),
-        here, line=1)
+            site=reading.site,
+            timestamp=typed.get("timestamp", ""),
+            parameter=reading.parameter,
+            value=typed.get("value", ""),
+            unit=typed.get("unit", ""),
+            note=typed.get("note", ""),
+            method=typed.get("method", reading.method),
+            sample=reading.sample,
+            statistic=reading.statistic,
+        ),
+        here,
+        line=1,
+    )
     if isinstance(found, lines.Refusal):
         raise NotReadable(f"read {found.read}; expected {found.expected}")
     received = {"corrects": reading.ref, "typed": typed, "reason": reason}
     return _change(
-        book, client_id, "correction", received, lambda: readings.correction(old=reading, new=found.reading, reason=reason), by, now)
+        book,
+        client_id,
+        "correction",
+        received,
+        lambda: readings.correction(old=reading, new=found.reading, reason=reason),
+        by,
+        now,
+    )
 
 
 def void(
-    *, book: Book, reading: models.Reading, reason: str, by: Any, now: dt.datetime, client_id: str,
+    *,
+    book: Book,
+    reading: models.Reading,
+    reason: str,
+    by: Any,
+    now: dt.datetime,
+    client_id: str,
 ) -> actions.Taken:
     """Says that a reading never was. Raises readings.AlreadyCorrected, readings.ReasonMissing."""
     received = {"voids": reading.ref, "reason": reason}
@@ -56,17 +88,35 @@ def void(
 
 
 def settle(
-    *, book: Book, reading: models.Reading, decision: str, reason: str, by: Any, now: dt.datetime, client_id: str,
+    *,
+    book: Book,
+    reading: models.Reading,
+    decision: str,
+    reason: str,
+    by: Any,
+    now: dt.datetime,
+    client_id: str,
 ) -> actions.Taken:
     """Says whether a doubtful reading stands. Raises readings.AlreadyCorrected, ReasonMissing, NothingToSettle."""
     received = {"settles": reading.ref, "decision": decision, "reason": reason}
     return _change(
-        book, client_id, "settlement", received,
-        lambda: readings.settlement(book=book, reading=reading, decision=decision, reason=reason), by, now)
+        book,
+        client_id,
+        "settlement",
+        received,
+        lambda: readings.settlement(book=book, reading=reading, decision=decision, reason=reason),
+        by,
+        now,
+    )
 
 
 def reverse(
-    *, book: Book, movement: stock_models.Delivery | stock_models.Transfer, reason: str, by: Any, now: dt.datetime,
+    *,
+    book: Book,
+    movement: stock_models.Delivery | stock_models.Transfer,
+    reason: str,
+    by: Any,
+    now: dt.datetime,
     client_id: str,
 ) -> actions.Taken:
     """Takes a delivery or transfer out of the reckoning. Raises stock.AlreadyReversed, stock.ReasonMissing."""
@@ -75,14 +125,19 @@ def reverse(
 
 
 def _change(
-    book: Book, client_id: str, kind: str, received: Any, rows: Any, by: Any, now: dt.datetime,
+    book: Book,
+    client_id: str,
+    kind: str,
+    received: Any,
+    rows: Any,
+    by: Any,
+    now: dt.datetime,
 ) -> actions.Taken:
     """Makes the rows and appends them while the book is held, so that of two people the second sees the first."""
     with transaction.atomic():
         works_actions.hold(book)
         made: Sequence[Row] = rows()
         taken = actions.take(
-            book=book, client_id=client_id, kind=kind, received=received, rows=made, by=by, now=now, judge=False)
+            book=book, client_id=client_id, kind=kind, received=received, rows=made, by=by, now=now, judge=False
+        )
     return actions.judge_taken(book=book, taken=taken, by=by)
-
-

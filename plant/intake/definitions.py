@@ -36,7 +36,13 @@ CHOICES: dict[str, tuple[str, ...]] = {
 
 
 def definition(
-    stated: Stated, at: dt.datetime, site: str, parameter: str, recent: list[Point], *, known: parameters.Parameter,
+    stated: Stated,
+    at: dt.datetime,
+    site: str,
+    parameter: str,
+    recent: list[Point],
+    *,
+    known: parameters.Parameter,
 ) -> dict[str, Any]:
     """The rules for one value due at a site. ``recent`` are the series' newest readings, oldest first."""
     kept = parameters.unit_at(stated, at, site, parameter)
@@ -148,7 +154,8 @@ def _limits(stated: Stated, at: dt.datetime, site: str, known: parameters.Parame
     kept = parameters.unit_at(stated, at, site, known.name)
     rounds = any(value.get("round_to_limit") for _, value in stated.in_force("works", at))
     found = [
-        _limit(limit, known, kept, rounds=rounds) for limit in stated.limits(at)
+        _limit(limit, known, kept, rounds=rounds)
+        for limit in stated.limits(at)
         if limit.kind == "bound" and limit.subject == site and limit.parameter == known.name
     ]
     return sorted((item for item in found if item is not None), key=lambda item: LEVELS.index(item["level"]))
@@ -168,7 +175,9 @@ def _limit(limit: described.Limit, known: parameters.Parameter, kept: str, *, ro
             except errors.ChemistryError:
                 return None
             said.append(f"{words} {text}{' ' + shown if shown else ''}")
-    level = {"target": "Target", "alert": "Alert limit", "action": "Action limit", "regulatory": "Regulatory limit"}[limit.level]
+    level = {"target": "Target", "alert": "Alert limit", "action": "Action limit", "regulatory": "Regulatory limit"}[
+        limit.level
+    ]
     tell = [
         f"{item['who']}, within {_text(item['within_hours'])} h" if item.get("within_hours") is not None else str(item["who"])
         for item in limit.tell
@@ -179,9 +188,7 @@ def _limit(limit: described.Limit, known: parameters.Parameter, kept: str, *, ro
         **bounds,
         "digits": max(_decimals(text) for text in bounds.values() if text is not None) if rounds else None,
         "says": f"{level}: {' and '.join(said)}.",
-        "do": {
-            side: advice.what_to_do(known.name, side, limit.level) for side, _ in _SIDES
-        },
+        "do": {side: advice.what_to_do(known.name, side, limit.level) for side, _ in _SIDES},
         "caution": advice.caution(known.name),
         "call": "; ".join(tell),
     }

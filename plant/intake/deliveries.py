@@ -34,14 +34,17 @@ MOST_STRENGTH = {
 """Above this a strength was written in another basis (weight %: by definition; solutions of chlorine: common practice)."""
 
 
-def read(cells: dict[str, str], ground: grounds.Ground) -> models.Delivery:
-    """An unsaved delivery from the cells of one line. Raises cells.Unreadable."""
+def read(cells: dict[str, str], ground: grounds.Ground, *, already_in: bool = False) -> models.Delivery:
+    """An unsaved delivery from the cells of one line. Raises cells.Unreadable.
+
+    ``already_in`` says that it has gone in, whatever the vessel should hold: then another product is marked, not refused.
+    """
     line = Cells(cells, ground)
     moment = line.moment("timestamp")
     vessel = line.code("vessel", "vessel", moment.at)
     product = line.code("product", "product", moment.at)
     holds = str((ground.value("vessel", vessel, moment.at) or {})["product"])
-    if product != holds:
+    if product != holds and not already_in:
         raise Unreadable("product", f"product {product!r} into {vessel}", f"{holds}, which is what {vessel} holds")
     delivery = models.Delivery(
         taken_at=moment.at,
@@ -64,6 +67,8 @@ def read(cells: dict[str, str], ground: grounds.Ground) -> models.Delivery:
         marks=[],
     )
     _check(delivery, ground)
+    if product != holds:
+        delivery.marks = [*delivery.marks, marks.WRONG_PRODUCT]
     return delivery
 
 

@@ -80,7 +80,8 @@ def problems(book: Book, stated: Stated, delivery: models.Delivery, at: dt.datet
         dip = stated.calendar(at).local(space.dip_at).strftime("%d %b %H:%M") if space.dip_at else "no dip"
         found.append(
             f"The load is {litres:,.0f} L; there is room for {max(space.room_l, 0):,.0f} L up to {vessel.max_fill_pct:g} % "
-            f"(by the dip of {dip}). Do not connect; take a fresh dip, or have part of the load taken back.")
+            f"(by the dip of {dip}). Do not connect; take a fresh dip, or have part of the load taken back."
+        )
     elif litres is not None and space.most_l is not None and litres > space.most_l:
         found.append(f"The load is {litres:,.0f} L, the whole vessel may hold {space.most_l:,.0f} L. Do not connect.")
     return found

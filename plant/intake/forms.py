@@ -85,6 +85,16 @@ def row(number: int, line: walk.Line, typed: Mapping[str, Any], found: rules.Ans
         limit = next(item for item in line.rules["as"]["kept"]["limits"] if item["code"] == found.limit)
         side = found.side
     return Row(
-        number, line, str(typed.get("value", "")), str(typed.get("unit", line.rules["unit"])), str(typed.get("clock", "")),
-        str(typed.get("not_taken", "")), str(typed.get("note", "")), bool(typed.get("confirmed")), error,
-        texts[found.doubt] if found is not None and found.doubt else "", limit, limit["do"][side] if limit else "")
+        number,
+        line,
+        str(typed.get("value", "")),
+        str(typed.get("unit", line.rules["unit"])),
+        str(typed.get("clock", "")),
+        str(typed.get("not_taken", "")),
+        str(typed.get("note", "")),
+        bool(typed.get("confirmed")),
+        error,
+        texts[found.doubt] if found is not None and found.doubt else "",
+        limit,
+        limit["do"][side] if limit else "",
+    )

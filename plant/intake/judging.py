@@ -8,6 +8,7 @@ from collections.abc import Iterable, Sequence
 from typing import Any
 
 from plant import clock
+from plant.deviations import actions as deviations
 from plant.jobs import actions as jobs
 from plant.ledger import queries as books
 from plant.ledger.models import Book, Row
@@ -58,8 +59,6 @@ def at_once(*, book: Book, key: str, days: Sequence[dt.date], by: Any, now: dt.d
     if not days:
         return [], True
     try:
-        from plant.deviations import actions as deviations
-
         found = deviations.judge(book=book, days=list(days), now=now, by=by)
     except Exception:  # no rule may make the server refuse an observation
         logger.exception("judging failed; the note stays", extra={"book": book.code, "key": key})
@@ -77,6 +76,4 @@ def settle(keys: Iterable[str], *, now: dt.datetime) -> None:
 
 def run(*, now: dt.datetime, book: str, days: Sequence[str], **extra: Any) -> None:
     """The job: judges what was noted. Twice changes nothing."""
-    from plant.deviations import actions as deviations
-
     deviations.judge(book=books.book(book), days=[dt.date.fromisoformat(day) for day in days], now=now, by=None)

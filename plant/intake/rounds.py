@@ -45,12 +45,20 @@ class Sent:
 
 
 def take(
-    *, book: Book, stated: Stated, client_id: str, received: Any, by: Any, now: dt.datetime, attested: str = "session",
+    *,
+    book: Book,
+    stated: Stated,
+    client_id: str,
+    received: Any,
+    by: Any,
+    now: dt.datetime,
+    attested: str = "session",
 ) -> Sent:
     """Takes a round or a line into the book. Raises Unreadable, ledger.ContentDiffers."""
     kind, sent, close, device = _shape(client_id, received)
     here = ground.Ground(
-        stated, stated.calendar(now), spelling=ground.Spelling(decimal=_decimal(stated, now)), history=records.history_of(book))
+        stated, stated.calendar(now), spelling=ground.Spelling(decimal=_decimal(stated, now)), history=records.history_of(book)
+    )
     understood = _understood(sent, here, by, now)
     with transaction.atomic():
         works_actions.hold(book)
@@ -59,8 +67,17 @@ def take(
         rows: list[Row] = [one.reading for one, new in zip(understood, fresh, strict=True) if new]
         rows += [_closing(stated, sent, close, now)] if close is not None else []
         taken = actions.take(
-            book=book, client_id=client_id, kind=kind, received=received, rows=rows, by=by, now=now, device=device,
-            attested=attested, judge=False)
+            book=book,
+            client_id=client_id,
+            kind=kind,
+            received=received,
+            rows=rows,
+            by=by,
+            now=now,
+            device=device,
+            attested=attested,
+            judge=False,
+        )
     refs = iter([row.ref for row in taken.rows if isinstance(row, Reading)])
     named = tuple(next(refs, "") if new else "" for new in fresh)
     return Sent(actions.judge_taken(book=book, taken=taken, by=by), named if taken.created else ())
@@ -116,9 +133,16 @@ def _line(line: dict[str, Any], place: int, here: ground.Ground, by: Any, now: d
     if line.get("confirmed") is True and value:
         note = f"{note}; {CONFIRMED}" if note else CONFIRMED
     typed = lines.Typed(
-        site=_text(line, "site", 80), timestamp=taken_at(line, here, now).isoformat(), parameter=_text(line, "parameter", 80),
-        value=value, unit=_text(line, "unit", 24), by=str(getattr(by, "display_name", "") or by or "")[:80], note=note,
-        sample=_text(line, "sample", 40), method=_text(line, "method", 60))
+        site=_text(line, "site", 80),
+        timestamp=taken_at(line, here, now).isoformat(),
+        parameter=_text(line, "parameter", 80),
+        value=value,
+        unit=_text(line, "unit", 24),
+        by=str(getattr(by, "display_name", "") or by or "")[:80],
+        note=note,
+        sample=_text(line, "sample", 40),
+        method=_text(line, "method", 60),
+    )
     found = lines.read_line(typed, here, line=place + 1)
     if isinstance(found, lines.Refusal):
         raise Unreadable(general=f"read {found.read}; expected {found.expected}")
@@ -159,8 +183,15 @@ def _closing(stated: Stated, sent: list[dict[str, Any]], close: dict[str, Any], 
     due = shifts.due_now(stated, calendar, shifts.expected(stated, now), now)
     still_open = [str(key)[:120] for key in close.get("open", []) if isinstance(key, str)][:MOST_LINES]
     return models.HandOver(
-        day=shift.day, shift=shift.name, starts_at=shift.start, closed_at=now, note=_text(close, "note", 4000),
-        lines_due=len(due), lines_answered=max(len(due) - len(still_open), 0), lines_open=still_open)
+        day=shift.day,
+        shift=shift.name,
+        starts_at=shift.start,
+        closed_at=now,
+        note=_text(close, "note", 4000),
+        lines_due=len(due),
+        lines_answered=max(len(due) - len(still_open), 0),
+        lines_open=still_open,
+    )
 
 
 def _text(line: Mapping[str, Any], name: str, most: int) -> str:

@@ -53,7 +53,8 @@ def answer(definition: Definition, typed: str, unit: str, at_s: int = 0) -> Answ
     value = Fraction(plain) * Fraction(scale["scale"]) + Fraction(scale["offset"])
     rules = definition["as"][scale["as"]]
     return Answer(
-        READ, plain, qualifier, _doubt(rules, value, qualifier, pointed=pointed, at_s=at_s), *_limit(rules, value, qualifier))
+        READ, plain, qualifier, _doubt(rules, value, qualifier, pointed=pointed, at_s=at_s), *_limit(rules, value, qualifier)
+    )
 
 
 def parse(typed: str, *, commas: bool) -> tuple[str, str, bool] | None:

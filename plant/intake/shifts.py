@@ -79,7 +79,10 @@ def due_now(stated: Stated, calendar: clock.Calendar, lines: Iterable[RoundLine]
 
 
 def left_open(
-    stated: Stated, calendar: clock.Calendar, lines: Iterable[RoundLine], taken: Mapping[tuple[str, str], Sequence[dt.datetime]],
+    stated: Stated,
+    calendar: clock.Calendar,
+    lines: Iterable[RoundLine],
+    taken: Mapping[tuple[str, str], Sequence[dt.datetime]],
     before: Span,
 ) -> list[RoundLine]:
     """What was due by the end of the last shift and has not come."""

@@ -81,7 +81,11 @@ def walk(book: Book, stated: Stated, now: dt.datetime) -> Round:
         shift,
         before,
         walked,
-        tuple(f"{sites.get(line.site, line.site)}: {known[line.parameter].label}" for line in open_lines if line.parameter in known),
+        tuple(
+            f"{sites.get(line.site, line.site)}: {known[line.parameter].label}"
+            for line in open_lines
+            if line.parameter in known
+        ),
         hand_over(book, before),
         hand_over(book, shift),
     )
@@ -111,8 +115,12 @@ def rules_of(book: Book, stated: Stated, now: dt.datetime, site: str, parameter:
 def _seen(book: Book, lines: Sequence[RoundLine], now: dt.datetime) -> dict[tuple[str, str], list[Point]]:
     wanted = {(line.site, line.parameter) for line in lines}
     found = readings.points(
-        book, start=now - LOOK_BACK, end=now + AHEAD, sites={site for site, _ in wanted} or [],
-        parameters={parameter for _, parameter in wanted} | {"volume"})
+        book,
+        start=now - LOOK_BACK,
+        end=now + AHEAD,
+        sites={site for site, _ in wanted} or [],
+        parameters={parameter for _, parameter in wanted} | {"volume"},
+    )
     out: dict[tuple[str, str], list[Point]] = defaultdict(list)
     for point in found:
         out[point.site, point.parameter].append(point)
@@ -123,8 +131,15 @@ def _seen(book: Book, lines: Sequence[RoundLine], now: dt.datetime) -> dict[tupl
 
 
 def _line(
-    book: Book, stated: Stated, calendar: clock.Calendar, line: RoundLine, seen: Mapping[tuple[str, str], Sequence[Point]],
-    due: Mapping[str, Any], known: parameters.Parameter, sites: Mapping[str, str], now: dt.datetime,
+    book: Book,
+    stated: Stated,
+    calendar: clock.Calendar,
+    line: RoundLine,
+    seen: Mapping[tuple[str, str], Sequence[Point]],
+    due: Mapping[str, Any],
+    known: parameters.Parameter,
+    sites: Mapping[str, str],
+    now: dt.datetime,
 ) -> Line:
     points = list(seen.get((line.site, line.parameter), ()))
     usable = [point for point in points if point.usable and point.statistic == "reading"]
@@ -137,9 +152,17 @@ def _line(
     if low is not None and high is not None and parameters.METER not in known.sites:
         usual = f"{shown(low, known.decimals)} to {shown(high, known.decimals)}"
     return Line(
-        f"{line.site}:{line.parameter}", line.site, sites.get(line.site, line.site), line.parameter, known.label, last,
-        calendar.local(last.at) if last else None, usual,
-        definitions.definition(stated, now, line.site, line.parameter, own, known=known), taken)
+        f"{line.site}:{line.parameter}",
+        line.site,
+        sites.get(line.site, line.site),
+        line.parameter,
+        known.label,
+        last,
+        calendar.local(last.at) if last else None,
+        usual,
+        definitions.definition(stated, now, line.site, line.parameter, own, known=known),
+        taken,
+    )
 
 
 def shown(value: Any, decimals: int) -> str:

@@ -27,14 +27,14 @@ def put(request: HttpRequest, at: access.At, client_id: str) -> JsonResponse:
     except ValueError:
         return JsonResponse({"general": "not JSON"}, status=400)
     try:
-        sent = rounds.take(
-            book=at.book, stated=at.stated, client_id=client_id, received=received, by=request.user, now=at.now)
+        sent = rounds.take(book=at.book, stated=at.stated, client_id=client_id, received=received, by=request.user, now=at.now)
     except rounds.Unreadable as problem:
         problems = {str(place): text for place, text in problem.problems.items()}
         return JsonResponse({"general": problem.general, "lines": problems}, status=422)
     except ledger.ContentDiffers:
         return JsonResponse(
-            {"general": "another content has been sent under this id already; what is here is kept on this device"}, status=409)
+            {"general": "another content has been sent under this id already; what is here is kept on this device"}, status=409
+        )
     return JsonResponse(answer(sent), status=201 if sent.taken.created else 200)
 
 

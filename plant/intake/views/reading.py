@@ -36,7 +36,10 @@ def page(request: HttpRequest, at: access.At, ref: str) -> HttpResponse:
         said = f"{problem}. What you typed is below; look at what holds now before you send it again."
         return _show(request, at, problem.newer, problem=said, typed=request.POST, status=409)
     except (
-        corrections.NotReadable, readings.ReasonMissing, readings.NothingToSettle, ledger.ContentDiffers,
+        corrections.NotReadable,
+        readings.ReasonMissing,
+        readings.NothingToSettle,
+        ledger.ContentDiffers,
     ) as problem:
         return _show(request, at, found, problem=str(problem), typed=request.POST, status=422)
     messages.success(request, {"correct": "Corrected.", "void": "Voided.", "settle": "Settled."}[act])
@@ -46,7 +49,11 @@ def page(request: HttpRequest, at: access.At, ref: str) -> HttpResponse:
 def _do(request: HttpRequest, at: access.At, found: models.Reading, act: str) -> str:
     posted = request.POST
     given: dict[str, Any] = {
-        "book": at.book, "reading": found, "reason": posted.get("reason", ""), "by": request.user, "now": at.now,
+        "book": at.book,
+        "reading": found,
+        "reason": posted.get("reason", ""),
+        "by": request.user,
+        "now": at.now,
         "client_id": posted.get("client_id") or uuid.uuid4().hex,
     }
     if act == "correct":
@@ -80,14 +87,25 @@ def _allowed(at: access.At, found: models.Reading, person: Any) -> set[str]:
 
 
 def _show(
-    request: HttpRequest, at: access.At, found: models.Reading, *, problem: str = "", typed: Any = None, status: int = 200,
+    request: HttpRequest,
+    at: access.At,
+    found: models.Reading,
+    *,
+    problem: str = "",
+    typed: Any = None,
+    status: int = 200,
 ) -> HttpResponse:
     calendar = at.stated.calendar(at.now)
     chain = queries.history(found)
     newest = chain[-1]
     known = parameters.known(at.stated, max(found.taken_at, at.now)).get(found.parameter)
-    settled = {row.reading_id: row for row in models.Settlement.objects.filter(reading__in=chain).as_known()
-               .select_related("entry__recorded_by").order_by("seq", "line")}
+    settled = {
+        row.reading_id: row
+        for row in models.Settlement.objects.filter(reading__in=chain)
+        .as_known()
+        .select_related("entry__recorded_by")
+        .order_by("seq", "line")
+    }
     local = calendar.local(newest.taken_at)
     context = {
         "found": found,
@@ -95,16 +113,24 @@ def _show(
         "is_newest": newest.pk == found.pk,
         "label": known.label if known else found.parameter,
         "steps": [
-            {"row": row, "settled": settled.get(row.pk), "doubts": marks.in_words(row.marks),
-             "taken_at": calendar.local(row.taken_at), "recorded_at": calendar.local(row.entry.recorded_at)}
+            {
+                "row": row,
+                "settled": settled.get(row.pk),
+                "doubts": marks.in_words(row.marks),
+                "taken_at": calendar.local(row.taken_at),
+                "recorded_at": calendar.local(row.entry.recorded_at),
+            }
             for row in reversed(chain)
         ],
         "rivals": queries.rivals(at.book, newest) if marks.CONFLICT in newest.marks else [],
         "allowed": _allowed(at, newest, request.user) if not newest.voided else set(),
         "doubtful": bool(newest.marks) and newest.pk not in settled,
         "problem": problem,
-        "typed": typed or {
-            "value": newest.typed, "unit": newest.typed_unit, "note": newest.note,
+        "typed": typed
+        or {
+            "value": newest.typed,
+            "unit": newest.typed_unit,
+            "note": newest.note,
             "timestamp": f"{local:%Y-%m-%d}" if newest.date_only else f"{local:%Y-%m-%dT%H:%M}",
         },
         "units": _units(newest),

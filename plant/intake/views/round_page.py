@@ -10,9 +10,13 @@ from django.http import HttpRequest, HttpResponse
 from django.shortcuts import redirect, render
 from django.views.decorators.http import require_http_methods
 
+from plant.deviations import queries as deviations
 from plant.intake import forms, rounds, rules, walk
 from plant.ledger import actions as ledger
 from plant.works import access
+
+MOST_OPEN = 6
+LEVELS = ("regulatory", "action", "alert", "target")
 
 
 @access.needs("round.enter")
@@ -34,7 +38,8 @@ def page(request: HttpRequest, at: access.At) -> HttpResponse:
     if not unsure:
         try:
             sent = rounds.take(
-                book=at.book, stated=at.stated, client_id=client_id, received=received, by=request.user, now=at.now)
+                book=at.book, stated=at.stated, client_id=client_id, received=received, by=request.user, now=at.now
+            )
         except rounds.Unreadable as problem:
             keys = list(typed)
             problems = {keys[place]: text for place, text in problem.problems.items()}
@@ -58,26 +63,39 @@ def _taken(request: HttpRequest, at: access.At, sent: rounds.Sent, count: int) -
 
 
 def _show(
-    request: HttpRequest, at: access.At, walked: walk.Round, typed: dict[str, dict[str, Any]], client_id: str, *,
-    answers: dict[str, rules.Answer] | None = None, problems: dict[str, str] | None = None, general: str = "", status: int = 200,
+    request: HttpRequest,
+    at: access.At,
+    walked: walk.Round,
+    typed: dict[str, dict[str, Any]],
+    client_id: str,
+    *,
+    answers: dict[str, rules.Answer] | None = None,
+    problems: dict[str, str] | None = None,
+    general: str = "",
+    status: int = 200,
 ) -> HttpResponse:
     rows = [
         forms.row(number, line, typed.get(line.key, {}), (answers or {}).get(line.key), (problems or {}).get(line.key, ""))
         for number, line in enumerate(walked.lines)
     ]
     calendar = at.stated.calendar(at.now)
+    open_ones = sorted(deviations.open_ones(at.book), key=lambda view: (LEVELS.index(view.level), view.since))
     context = {
         "round": walked,
         "rows": rows,
         "client_id": client_id,
         "general": general,
+        "open_deviations": open_ones[:MOST_OPEN],
+        "more_open": max(len(open_ones) - MOST_OPEN, 0),
         "note": request.POST.get("note", ""),
         "not_taken": forms.NOT_TAKEN,
         "shift_from": calendar.local(walked.shift.start),
         "shift_to": calendar.local(walked.shift.end),
+        "closed_at": calendar.local(walked.closed.closed_at) if walked.closed else None,
         "settings": {
             "works": at.code,
             "zone": str(calendar.zone),
+            "now_ms": int(at.now.timestamp() * 1000),
             "shift": f"{walked.shift.day.isoformat()} {walked.shift.name}",
             "person": request.user.get_username(),
             "rules": {line.key: line.rules for line in walked.lines},

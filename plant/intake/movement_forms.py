@@ -1,0 +1,109 @@
+"""The forms for one delivery and one transfer. What they hold is read like a line of a file."""
+
+from __future__ import annotations
+
+import datetime as dt
+from typing import Any
+
+from django import forms
+
+from plant.intake import deliveries
+from plant.works import kinds
+from plant.works.stated import Stated
+
+_BASES = {
+    "": "as the product is stated",
+    "g_per_L_available_chlorine": "g/L available chlorine",
+    "trade_pct": "trade %",
+    "weight_pct_available_chlorine": "weight % available chlorine",
+    "weight_pct": "weight %",
+}
+
+
+def _moment() -> forms.CharField:
+    return forms.CharField(label="When", widget=forms.TextInput(attrs={"type": "datetime-local"}), max_length=40)
+
+
+def _number(label: str, *, required: bool = False, hint: str = "") -> forms.CharField:
+    widget = forms.TextInput(attrs={"inputmode": "decimal", "autocomplete": "off"})
+    return forms.CharField(label=label, required=required, widget=widget, max_length=40, help_text=hint)
+
+
+def _vessels(stated: Stated, at: dt.datetime) -> list[tuple[str, str]]:
+    return [("", "choose"), *((item.code, f"{item.name} ({item.code}), holds {item.product}") for item in stated.vessels(at))]
+
+
+class _Movement(forms.Form):
+    """What both have in common: cells by the names of the file's columns."""
+
+    columns: tuple[str, ...] = ()
+
+    def __init__(self, *args: Any, stated: Stated, at: dt.datetime, **kwargs: Any) -> None:
+        super().__init__(*args, **kwargs)
+        self._prepare(stated, at)
+
+    def _prepare(self, stated: Stated, at: dt.datetime) -> None:
+        raise NotImplementedError
+
+    def cells(self) -> dict[str, str]:
+        """The line a file would have. Only for a valid form."""
+        out = {name: str(self.cleaned_data.get(name) or "") for name in self.columns}
+        return out | {"timestamp": self.cleaned_data["timestamp"]}
+
+    def refuse(self, column: str, said: str) -> None:
+        """Puts a refusal under the field it belongs to."""
+        self.add_error(column if column in self.fields else None, said)
+
+
+class DeliveryForm(_Movement):
+    """A load into one vessel."""
+
+    columns = (*deliveries.REQUIRED, *deliveries.OPTIONAL)
+
+    timestamp = _moment()
+    vessel = forms.ChoiceField(label="Into")
+    product = forms.ChoiceField(label="Product, as the papers and the label say")
+    quantity = _number("Quantity", required=True)
+    unit = forms.ChoiceField(label="Unit", choices=[(name, name) for name in deliveries.UNITS])
+    lot = forms.CharField(label="Lot", required=False, max_length=60)
+    strength = _number("Strength on the certificate")
+    strength_basis = forms.ChoiceField(
+        label="Basis of the strength", required=False, choices=[(name, _BASES[name]) for name in ("", *kinds.STRENGTH_BASES)]
+    )
+    density_kg_per_L = _number("Density, kg/L")
+    manufactured_on = forms.DateField(
+        label="Made on", required=False, widget=forms.DateInput(attrs={"type": "date"}, format="%Y-%m-%d")
+    )
+    supplier = forms.CharField(label="Supplier", required=False, max_length=80)
+    document = forms.CharField(label="Delivery note", required=False, max_length=120)
+    cost = _number("Cost")
+    currency = forms.CharField(label="Currency", required=False, max_length=8)
+    second_person = forms.CharField(label="Second person at the fill point", required=False, max_length=80)
+    checked = forms.BooleanField(
+        label="We have done these checks",
+        required=False,
+        error_messages={"required": "Do the checks before connecting, then tick this."},
+    )
+
+    def _prepare(self, stated: Stated, at: dt.datetime) -> None:
+        self.fields["vessel"].choices = _vessels(stated, at)  # type: ignore[attr-defined]  # a ChoiceField
+        products = [(item.code, f"{item.name} ({item.code})") for item in stated.products(at)]
+        self.fields["product"].choices = [("", "choose"), *products]  # type: ignore[attr-defined]
+
+
+class TransferForm(_Movement):
+    """Product from one vessel into another."""
+
+    columns = ("from_vessel", "to_vessel", "quantity", "unit", "carrier_water_L", "note")
+
+    timestamp = _moment()
+    from_vessel = forms.ChoiceField(label="From")
+    to_vessel = forms.ChoiceField(label="Into")
+    quantity = _number("Quantity of product", required=True)
+    unit = forms.ChoiceField(label="Unit", choices=[(name, name) for name in deliveries.UNITS], initial="L")
+    carrier_water_L = _number("Dilution water added, L", hint="Counted apart: 200 L of a 1:4 make-up are 40 L of product.")
+    note = forms.CharField(label="Note", required=False, widget=forms.Textarea(attrs={"rows": 2}), max_length=1000)
+
+    def _prepare(self, stated: Stated, at: dt.datetime) -> None:
+        for name in ("from_vessel", "to_vessel"):
+            self.fields[name].choices = _vessels(stated, at)  # type: ignore[attr-defined]  # a ChoiceField

@@ -1,0 +1,171 @@
+"""Deliveries and transfers at the works, and taking one out of the reckoning again."""
+
+from __future__ import annotations
+
+import datetime as dt
+import uuid
+from typing import Any
+
+from django.contrib import messages
+from django.core.exceptions import PermissionDenied
+from django.http import Http404, HttpRequest, HttpResponse
+from django.shortcuts import redirect, render
+from django.views.decorators.http import require_http_methods
+
+from plant.intake import advice, cells, corrections, filling, movement_forms, receiving
+from plant.ledger import actions as ledger
+from plant.stock import actions as stock_actions
+from plant.stock import models
+from plant.stock import queries as stock
+from plant.works import access
+
+RECENT = dt.timedelta(days=35)
+_TWICE = "This has been sent before with other values; nothing was added. Look at the list below."
+
+
+@access.needs("delivery.enter")
+@require_http_methods(["GET", "HEAD", "POST"])
+def delivery(request: HttpRequest, at: access.At) -> HttpResponse:
+    """The checks before connecting, the form, and the loads of the last weeks."""
+    form = movement_forms.DeliveryForm(
+        request.POST or None,
+        stated=at.stated,
+        at=at.now,
+        initial={"timestamp": _local(at), "vessel": request.GET.get("vessel")},
+    )
+    refused: list[str] = []
+    if request.method == "POST":
+        already_in = "already_in" in request.POST
+        form.fields["checked"].required = not already_in
+        if form.is_valid():
+            try:
+                taken = receiving.deliver(
+                    book=at.book,
+                    stated=at.stated,
+                    cells=form.cells(),
+                    second_person=form.cleaned_data["second_person"],
+                    already_in=already_in,
+                    by=request.user,
+                    now=at.now,
+                    client_id=_client_id(request),
+                )
+            except cells.Unreadable as problem:
+                form.refuse(problem.column, f"Read {problem.read}; expected {problem.expected}.")
+            except receiving.NotToBeConnected as problem:
+                refused = problem.problems
+            except ledger.ContentDiffers:
+                form.refuse("", _TWICE)
+            else:
+                return _done(request, at, taken, "intake:delivery")
+    context = {
+        "form": form,
+        "cautions": advice.DELIVERY,
+        "refused": refused,
+        "already": advice.ALREADY_UNLOADED,
+        "room": _rooms(at),
+        "recent": _recent(at, stock.deliveries(at.book, start=at.now - RECENT, end=at.now + dt.timedelta(days=1))),
+        "client_id": _client_id(request),
+    }
+    return render(request, "intake/delivery.html", context, status=_status(form, refused))
+
+
+@access.needs("delivery.enter")
+@require_http_methods(["GET", "HEAD", "POST"])
+def transfer(request: HttpRequest, at: access.At) -> HttpResponse:
+    """The form for a transfer, and those of the last weeks."""
+    form = movement_forms.TransferForm(request.POST or None, stated=at.stated, at=at.now, initial={"timestamp": _local(at)})
+    if request.method == "POST" and form.is_valid():
+        try:
+            taken = receiving.move(
+                book=at.book, stated=at.stated, cells=form.cells(), by=request.user, now=at.now, client_id=_client_id(request)
+            )
+        except cells.Unreadable as problem:
+            form.refuse(problem.column, f"Read {problem.read}; expected {problem.expected}.")
+        except ledger.ContentDiffers:
+            form.refuse("", _TWICE)
+        else:
+            return _done(request, at, taken, "intake:transfer")
+    context = {
+        "form": form,
+        "recent": _recent(at, stock.transfers(at.book, start=at.now - RECENT, end=at.now + dt.timedelta(days=1))),
+        "client_id": _client_id(request),
+    }
+    return render(request, "intake/transfer.html", context, status=_status(form, []))
+
+
+@access.needs("delivery.enter")
+@require_http_methods(["GET", "HEAD", "POST"])
+def reverse(request: HttpRequest, at: access.At, kind: str, ref: str) -> HttpResponse:
+    """Takes a delivery or transfer out of the reckoning; operators their own, supervisors any."""
+    model: Any = {"delivery": models.Delivery, "transfer": models.Transfer}.get(kind)
+    seq, _, line = ref.partition(".")
+    found = (
+        model.objects.filter(book=at.book, seq=int(seq), line=int(line)).select_related("entry__recorded_by").first()
+        if model is not None and seq.isdigit() and line.isdigit()
+        else None
+    )
+    if found is None:
+        raise Http404("There is no such delivery or transfer.")
+    if not at.member.may("record.correct") and found.entry.recorded_by_id != request.user.pk:
+        raise PermissionDenied("This needs the right “record.correct”: somebody else has entered it.")
+    problem = ""
+    if request.method == "POST":
+        try:
+            corrections.reverse(
+                book=at.book,
+                movement=found,
+                reason=request.POST.get("reason", ""),
+                by=request.user,
+                now=at.now,
+                client_id=_client_id(request),
+            )
+        except (stock_actions.AlreadyReversed, stock_actions.ReasonMissing, ledger.ContentDiffers) as refusal:
+            problem = str(refusal)
+        else:
+            messages.success(request, "Reversed. Enter it again where it belongs.")
+            return redirect(f"intake:{kind}", code=at.code)
+    context = {
+        "found": found,
+        "kind": kind,
+        "problem": problem,
+        "reason": request.POST.get("reason", ""),
+        "taken_at": at.stated.calendar(at.now).local(found.taken_at),
+        "client_id": _client_id(request),
+    }
+    return render(request, "intake/reverse.html", context, status=422 if problem else 200)
+
+
+def _done(request: HttpRequest, at: access.At, taken: Any, where: str) -> HttpResponse:
+    if not taken.created:
+        messages.info(request, "This had been sent already; nothing was added.")
+    else:
+        messages.success(request, "In the book.")
+    for found in taken.findings:
+        messages.warning(request, found.sentence or str(found))
+    return redirect(where, code=at.code)
+
+
+def _status(form: movement_forms.DeliveryForm | movement_forms.TransferForm, refused: list[str]) -> int:
+    return 422 if refused or (form.is_bound and form.errors) else 200
+
+
+def _client_id(request: HttpRequest) -> str:
+    return request.POST.get("client_id") or uuid.uuid4().hex
+
+
+def _local(at: access.At) -> str:
+    return f"{at.stated.calendar(at.now).local(at.now):%Y-%m-%dT%H:%M}"
+
+
+def _rooms(at: access.At) -> list[dict[str, Any]]:
+    calendar = at.stated.calendar(at.now)
+    out = []
+    for vessel in at.stated.vessels(at.now):
+        space = filling.room(at.book, at.stated, vessel, at.now)
+        out.append({"vessel": vessel, "room": space, "dip_at": calendar.local(space.dip_at) if space.dip_at else None})
+    return out
+
+
+def _recent(at: access.At, rows: Any) -> list[dict[str, Any]]:
+    calendar = at.stated.calendar(at.now)
+    return [{"row": row, "at": calendar.local(row.taken_at)} for row in reversed(rows)]
