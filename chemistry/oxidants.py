@@ -1,4 +1,5 @@
-"""Oxidants and what they oxidise: ratios by electrons, demand, residual over time, chloramine ratio, dechlorination.
+"""Oxidants and what they oxidise: ratios by electrons, demand, residual over time, chloramine ratio,
+dechlorination.
 
 mg A per mg B = (M_A / n_A) / (M_B / n_B), with n electrons per mole (definition; molar masses CIAAW-2021).
 Iron and manganese count the dissolved part; sulfide is as S, nitrite and ammonia as N, chlorine as Cl2.
@@ -43,7 +44,7 @@ MONOCHLORAMINE_RATIO = constants.molar_mass("Cl2") / constants.molar_mass("N")  
 BREAKPOINT_RATIO = 1.5 * MONOCHLORAMINE_RATIO  # 7.59: 2 NH3 + 3 Cl2 = N2 + 6 HCl
 BREAKPOINT_PRACTICE_RATIO = (10.0, 15.0)  # Applications of Environmental Calculations, ch. 4; opened
 
-# Dechlorinating agents: moles of Cl2 one mole takes, and the field figure in mg per mg Cl2
+# Dechlorinating chemicals: moles of Cl2 one mole takes, and the field figure in mg per mg Cl2
 # (AWWA-DECHLORINATION; None: no field figure opened). Thiosulfate ranges from 1/4 mol (to sulfate) to 2 mol
 # (to tetrathionate) per mole of chlorine.
 DECHLORINATING: dict[str, tuple[float, float | None]] = {
@@ -72,7 +73,9 @@ def oxidant_per_reductant_mg_mg(oxidant: str, reductant: str, *, oxidant_electro
 
 
 def equivalent_mg_l(dose_mg_l: Values, from_oxidant: str, to_oxidant: str) -> Values:
-    """The dose of another oxidant that takes the same electrons (chlorine to permanganate, ozone to peroxide ...)."""
+    """The dose of another oxidant that takes the same electrons (chlorine to permanganate, ozone to
+    peroxide ...).
+    """
     errors.require("dose", dose_mg_l, "mg/L", 0.0, 1e6, _SOURCE)
     per = constants.molar_mass(from_oxidant) / _electrons(from_oxidant)
     return dose_mg_l / per * constants.molar_mass(to_oxidant) / _electrons(to_oxidant)
@@ -88,7 +91,8 @@ def demand_mg_l(
     ammonia_mg_l_n: Values = 0.0,
     sulfide_to_sulfate: bool = True,
 ) -> Values:
-    """Stoichiometric demand in mg/L of the oxidant, summed over what is given (each 0 to 1000 mg/L; float or array).
+    """Stoichiometric demand in mg/L of the oxidant, summed over what is given (each 0 to 1000 mg/L; float
+    or array).
 
     Ammonia counts for chlorine only (breakpoint, 7.59 mg/mg N; 10 to 15 in practice); other oxidants leave
     it. Iron(III) already oxidised, organics and pH limits (manganese by chlorine is slow below pH 9) are
@@ -118,7 +122,9 @@ def dose_for_residual_mg_l(demand_mg_l: Values, target_residual_mg_l: Values) ->
 
 
 def observed_demand_mg_l(dose_mg_l: Values, residual_mg_l: Values) -> Values:
-    """Demand seen = dose - residual; a residual above the dose is refused (a wrong reading or another source)."""
+    """Demand seen = dose - residual; a residual above the dose is refused (a wrong reading or another
+    source).
+    """
     demand = dose_mg_l - residual_mg_l
     errors.require("demand", demand, "mg/L", 0.0, np.inf, "dose less residual can't be below 0")
     return demand
@@ -133,7 +139,9 @@ def expected_residual_mg_l(dose_mg_l: Values, demand_mg_l: Values) -> Values:
 
 
 def flow_weighted_demand_mg_l(doses_mg_l: Values, residuals_mg_l: Values, volumes_ml: Values) -> Values:
-    """Demand over several days, each day weighted by its volume (ML); days given as equal-length sequences."""
+    """Demand over several days, each day weighted by its volume (ML); days given as equal-length
+    sequences.
+    """
     volumes = np.asarray(volumes_ml, dtype=float)
     errors.require("volume", volumes, "ML", 0.0, np.inf, _SOURCE)
     if volumes.sum() <= 0:
@@ -181,21 +189,21 @@ def chlorine_to_nitrogen_stage(chlorine_mg_l: float, ammonia_mg_l_n: float) -> s
     return "breakpoint" if chlorine_mg_l < BREAKPOINT_RATIO * ammonia_mg_l_n else "free chlorine"
 
 
-def dechlorination_mg_l(agent: str, chlorine_mg_l: Values, *, field: bool = False) -> Values:
-    """mg/L of a dechlorinating agent (formulas in DECHLORINATING) for so much chlorine.
+def dechlorination_mg_l(chemical: str, chlorine_mg_l: Values, *, field: bool = False) -> Values:
+    """mg/L of a dechlorinating chemical (formulas in DECHLORINATING) for so much chlorine.
 
     By stoichiometry, or ``field`` by the figures of the AWWA pipeline guide, about 10 % higher (1.9 for
     thiosulfate at pH 7, against 0.56 to 4.46 in theory). A large overdose takes oxygen and lowers pH.
     """
-    if agent not in DECHLORINATING:
-        raise errors.ChemistryError(f"no dechlorinating agent {agent!r}; known: {', '.join(DECHLORINATING)}")
+    if chemical not in DECHLORINATING:
+        raise errors.ChemistryError(f"no dechlorinating chemical {chemical!r}; known: {', '.join(DECHLORINATING)}")
     errors.require("chlorine", chlorine_mg_l, "mg/L", 0.0, 10000.0, _SOURCE)
-    chlorine_mol, field_ratio = DECHLORINATING[agent]
+    chlorine_mol, field_ratio = DECHLORINATING[chemical]
     if field:
         if field_ratio is None:
-            raise errors.ChemistryError(f"no field figure for {agent}")
+            raise errors.ChemistryError(f"no field figure for {chemical}")
         return chlorine_mg_l * field_ratio
-    return chlorine_mg_l * constants.molar_mass(agent) / constants.molar_mass("Cl2") / chlorine_mol
+    return chlorine_mg_l * constants.molar_mass(chemical) / constants.molar_mass("Cl2") / chlorine_mol
 
 
 def hocl_fraction(ph: Values, temperature_c: Values) -> Values:
@@ -211,7 +219,9 @@ def hocl_fraction(ph: Values, temperature_c: Values) -> Values:
 
 
 def alkalinity_used_mg_l(chlorine_mg_l: Values, *, reduced: bool) -> Values:
-    """Alkalinity (mg/L CaCO3) taken by chlorine gas: 0.71 per mg while HOCl stands, 1.41 once it is reduced."""
+    """Alkalinity (mg/L CaCO3) taken by chlorine gas: 0.71 per mg while HOCl stands, 1.41 once it is
+    reduced.
+    """
     return chlorine_mg_l * (ALKALINITY_PER_CL2_REDUCED if reduced else ALKALINITY_PER_CL2_STANDING)
 
 

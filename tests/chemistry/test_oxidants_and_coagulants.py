@@ -64,8 +64,8 @@ def test_the_breakpoint_curve_has_three_stages():
 
 
 def test_field_figures_of_dechlorination_are_a_tenth_above_theory():
-    for agent in ("NaHSO3", "Na2S2O5", "Na2SO3"):
-        ratio = oxidants.dechlorination_mg_l(agent, 1.0, field=True) / oxidants.dechlorination_mg_l(agent, 1.0)
+    for chemical in ("NaHSO3", "Na2S2O5", "Na2SO3"):
+        ratio = oxidants.dechlorination_mg_l(chemical, 1.0, field=True) / oxidants.dechlorination_mg_l(chemical, 1.0)
         assert ratio == pytest.approx(1.10, abs=0.01)
     with pytest.raises(errors.ChemistryError):
         oxidants.dechlorination_mg_l("SO2", 1.0, field=True)
