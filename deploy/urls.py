@@ -10,5 +10,6 @@ from deploy import health
 urlpatterns = [
     path("healthz", health.alive, name="alive"),
     path("readyz", health.ready, name="ready"),
+    path("", include("deploy.jobs_page")),
     *(path("", include(f"{app}.urls")) for app in settings.PLANT_APPS if importlib.util.find_spec(f"{app}.urls") is not None),
 ]

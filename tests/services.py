@@ -303,6 +303,17 @@ def pytest_runtest_makereport(item: pytest.Item) -> Iterator[None]:
 
 
 def pytest_terminal_summary(terminalreporter: Any) -> None:
+    measured = [
+        value
+        for reports in terminalreporter.stats.values()
+        for report in reports
+        for name, value in getattr(report, "user_properties", ())
+        if name == "figure" and getattr(report, "when", "") == "call"
+    ]
+    if measured:
+        terminalreporter.section("MEASURED")
+        for line in measured:
+            terminalreporter.line(line)
     left_out = [
         report
         for report in terminalreporter.stats.get("skipped", [])
@@ -313,6 +324,12 @@ def pytest_terminal_summary(terminalreporter: Any) -> None:
         for report in left_out:
             reason = report.longrepr[2] if isinstance(report.longrepr, tuple) else report.longrepr
             terminalreporter.line(f"{report.nodeid}: {reason}")
+
+
+@pytest.fixture
+def figure(record_property: Callable[[str, object], None]) -> Callable[[str], None]:
+    """Call it with a line that says what was measured; the lines of all tests are shown at the end."""
+    return lambda line: record_property("figure", line)
 
 
 @pytest.fixture(scope="session")

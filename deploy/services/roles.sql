@@ -33,7 +33,7 @@ BEGIN
         'ledger_book',
         'accounts_person', 'accounts_person_groups', 'accounts_person_user_permissions',
         'django_session', 'axes_accessattempt', 'axes_accessattemptexpiration', 'axes_accessfailurelog', 'axes_accesslog',
-        'jobs_job',
+        'jobs_job', 'jobs_turn',
         'dosing_daystate'
     ] LOOP
         IF to_regclass(name) IS NOT NULL THEN

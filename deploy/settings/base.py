@@ -58,6 +58,7 @@ INSTALLED_APPS = [
     "csp",
     "axes",
     *PLANT_APPS,
+    "deploy",
 ]
 
 MIDDLEWARE = [
@@ -205,15 +206,15 @@ CELERY_TASK_IGNORE_RESULT = True
 CELERY_TASK_ACKS_LATE = True
 CELERY_TASK_REJECT_ON_WORKER_LOST = True
 CELERY_WORKER_PREFETCH_MULTIPLIER = 1
-CELERY_TASK_SOFT_TIME_LIMIT = 240
-CELERY_TASK_TIME_LIMIT = 300
+# Each kind of job has its own, shorter limit (plant.jobs.registry); this one is for a process that hangs altogether.
+CELERY_TASK_TIME_LIMIT = 32 * 60
 CELERY_ACCEPT_CONTENT = ["json"]
 CELERY_TASK_SERIALIZER = "json"
 CELERY_TIMEZONE = "UTC"
 CELERY_BROKER_CONNECTION_RETRY_ON_STARTUP = True
 CELERY_BROKER_TRANSPORT_OPTIONS = {
     # Longer than the hard time limit, or a running task would be handed out a second time.
-    "visibility_timeout": 900,
+    "visibility_timeout": 3600,
     # The defaults look for messages of dead workers only every hundred seconds.
     "unacked_restore_interval": 5,
     "unacked_restore_throttle": 1,
