@@ -151,4 +151,5 @@ def _dose(
         product = stated.product(point.product, now).name
     except LookupError:
         product = point.product
-    return Dose(point.code, point.name, product, state, reverse("board:dosing_point", args=[code, point.code]), level, weak, picture)
+    path = reverse("board:dosing_point", args=[code, point.code])
+    return Dose(point.code, point.name, product, state, path, level, weak, picture)
