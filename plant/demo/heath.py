@@ -8,17 +8,22 @@ import numpy as np
 
 from plant.demo import effects
 from plant.demo.kestrel import KESTREL
-from plant.demo.plan import Feed, Incident, Line, Plan, Season
+from plant.demo.plan import Block, Feed, Incident, Line, Plan, Season
 
 _HYPO, _CAUSTIC, _PEROXIDE = (
     next(feed for feed in KESTREL.feeds if feed.code == code) for code in ("HYPO-POST", "NAOH-PH", "PEROX-PRE")
 )
 
+_STANDING: Block = {
+    "code": "HYPO-BULK", "name": "Hypochlorite tank", "product": "HYPO", "role": "bulk", "shape": "vertical_cylinder",
+    "level_sd_m": 0.003, "heel_L": 60, "max_fill_pct": 92,
+}  # fmt: skip
 
-def _small(feed: Feed, tank: dict[str, object], load_kg: float, **changes: object) -> Feed:
+
+def _small(feed: Feed, tank: Block, load_kg: float, **changes: object) -> Feed:
     return replace(
         feed,
-        tank=feed.tank | tank,
+        tank=tank if "code" in tank else feed.tank | tank,
         load_kg=load_kg,
         product=feed.product | {"load_kg": load_kg},
         point=feed.point | {"meter": "FT-TREATED"},
@@ -36,13 +41,13 @@ HEATH = replace(
     target_ph=7.9,
     coagulant_curve=(),
     feeds=(
-        _small(_HYPO, {"diameter_m": 1.0, "height_m": 1.8}, 800, day_tank=None),
+        _small(_HYPO, _STANDING | {"diameter_m": 1.0, "height_m": 1.8}, 800, day_tank=None),
         replace(
-            _small(_CAUSTIC, {"diameter_m": 1.3, "length_m": 2.2}, 2400),
+            _small(_CAUSTIC, {"diameter_m": 1.3, "height_m": 2.6}, 2400),
             point=_CAUSTIC.point | {"need": {"model": "target_ph", "target_ph": 7.9}},
         ),
         _small(
-            replace(_PEROXIDE, tank={}),
+            _PEROXIDE,
             {
                 "code": "PEROX-TANK",
                 "name": "Peroxide tank on a scale",

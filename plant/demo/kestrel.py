@@ -30,11 +30,11 @@ _PEROXIDE = Feed(
         "code": "PEROX", "name": "Hydrogen peroxide 35 %", "chemical": "H2O2", "strength": 35.0,
         "strength_basis": "weight_pct", "density_kg_per_L": 1.13, "strength_sd_pct": 0.7, "dose_basis": "H2O2",
         "certified_maximum_mg_per_L": 8.6, "shelf_life_days": 365, "storage_temperature_C": 17.0,
-        "lead_time_days": 5, "load_kg": 2000, "reserve_days": 9, "no_delivery_days": _NO_WEEKEND,
+        "lead_time_days": 5, "load_kg": 1600, "reserve_days": 6, "no_delivery_days": _NO_WEEKEND,
     },
     tank={
         "code": "PEROX-TANK", "name": "Peroxide tank", "product": "PEROX", "role": "bulk",
-        "shape": "vertical_cylinder", "diameter_m": 1.2, "height_m": 3.0, "level_sd_m": 0.002, "heel_L": 100,
+        "shape": "vertical_cylinder", "diameter_m": 0.9, "height_m": 4.0, "level_sd_m": 0.002, "heel_L": 100,
         "max_fill_pct": 90, "containment": "BUND-C",
     },
     point={
@@ -42,7 +42,7 @@ _PEROXIDE = Feed(
         "sample_point": "SETTLED",
         "need": {"model": "oxidant_demand", "demand_from": "last_7_days", "target_residual_mg_per_L": 0.25},
     },
-    design_mg_l=0.0, load_kg=2000, opening_share=0.55,
+    design_mg_l=0.0, load_kg=1600, opening_share=0.55,
 )  # fmt: skip
 _COAGULANT = Feed(
     wants="coagulant",
@@ -50,11 +50,11 @@ _COAGULANT = Feed(
         "code": "FERRIC", "name": "Ferric chloride solution", "chemical": "FeCl3", "strength": 13.8,
         "strength_basis": "weight_pct", "strength_as": "Fe", "density_kg_per_L": 1.42, "strength_sd_pct": 0.8,
         "dose_basis": "Fe", "certified_maximum_mg_per_L": 250.0, "shelf_life_days": 365, "lead_time_days": 6,
-        "load_kg": 9000, "reserve_days": 10, "no_delivery_days": _NO_WEEKEND,
+        "load_kg": 7000, "reserve_days": 8, "no_delivery_days": _NO_WEEKEND,
     },
     tank={
         "code": "FERRIC-BULK", "name": "Ferric bulk tank", "product": "FERRIC", "role": "bulk",
-        "shape": "vertical_cylinder", "diameter_m": 2.0, "height_m": 4.0, "level_sd_m": 0.003, "heel_L": 400,
+        "shape": "vertical_cylinder", "diameter_m": 1.5, "height_m": 5.2, "level_sd_m": 0.002, "heel_L": 250,
         "max_fill_pct": 92, "containment": "BUND-A",
     },
     point={
@@ -65,7 +65,7 @@ _COAGULANT = Feed(
             "points": [[0.2, 1.9], [3.0, 2.4], [8.0, 3.1], [20.0, 4.4], [60.0, 7.0]],
         },
     },
-    design_mg_l=0.0, load_kg=9000, opening_share=0.5,
+    design_mg_l=0.0, load_kg=7000, opening_share=0.5,
 )  # fmt: skip
 _LIME = Feed(
     wants="lime",
@@ -92,19 +92,19 @@ _CAUSTIC = Feed(
     product={
         "code": "NAOH", "name": "Caustic soda 25 %", "chemical": "NaOH", "strength": 25.0,
         "strength_basis": "weight_pct", "density_kg_per_L": 1.273, "strength_sd_pct": 0.7, "dose_basis": "NaOH",
-        "certified_maximum_mg_per_L": 200.0, "shelf_life_days": 365, "lead_time_days": 5, "load_kg": 5000,
-        "reserve_days": 9, "no_delivery_days": _NO_WEEKEND,
+        "certified_maximum_mg_per_L": 200.0, "shelf_life_days": 365, "lead_time_days": 5, "load_kg": 4000,
+        "reserve_days": 7, "no_delivery_days": _NO_WEEKEND,
     },
     tank={
         "code": "NAOH-BULK", "name": "Caustic bulk tank", "product": "NAOH", "role": "bulk",
-        "shape": "horizontal_cylinder", "diameter_m": 1.7, "length_m": 3.4, "heads": "elliptical_2_1",
-        "level_sd_m": 0.003, "heel_L": 250, "max_fill_pct": 92, "containment": "BUND-B",
+        "shape": "vertical_cylinder", "diameter_m": 1.25, "height_m": 4.8,
+        "level_sd_m": 0.002, "heel_L": 180, "max_fill_pct": 92, "containment": "BUND-B",
     },
     point={
         "code": "NAOH-PH", "name": "Caustic to final pH", "meter": "FT-TREATED", "before": "FILTERED",
         "sample_point": "ENTRY", "need": {"model": "target_ph", "target_ph": 8.2},
     },
-    design_mg_l=0.0, load_kg=5000, opening_share=0.6,
+    design_mg_l=0.0, load_kg=4000, opening_share=0.6,
 )  # fmt: skip
 _HYPO = Feed(
     wants="chlorine",
@@ -117,7 +117,8 @@ _HYPO = Feed(
     },
     tank={
         "code": "HYPO-BULK", "name": "Hypochlorite bulk tank", "product": "HYPO", "role": "bulk",
-        "shape": "vertical_cylinder", "diameter_m": 1.6, "height_m": 2.6, "level_sd_m": 0.003, "heel_L": 150,
+        "shape": "horizontal_cylinder", "diameter_m": 1.5, "length_m": 2.4, "heads": "elliptical_2_1",
+        "level_sd_m": 0.003, "heel_L": 150,
         "max_fill_pct": 92, "containment": "BUND-B",
     },
     day_tank={
@@ -201,6 +202,7 @@ _LINES = (
     Line("FILTERED", "fluoride", "mg/L", 2, 0.01, due="day"),
     Line("HYPO-DAY", "level", "m", 3),
     Line("HYPO-BULK", "level", "m", 3, due="day"),
+    Line("HYPO-BULK", "strength", "g/L", 1, 1.2, due="week"),
     Line("HYPO-POST", "feeder_setting", "L/h", 2),
     Line("NAOH-BULK", "level", "m", 3),
     Line("POLYP-IBC", "weight", "kg", 1),

@@ -47,6 +47,10 @@ class Simulated:
     wanted: dict[str, np.ndarray]
     book: observe.Book
 
+    def flow_of(self, feed: Feed) -> np.ndarray:
+        """ML in each hour of the water a feed goes into."""
+        return self.flow_ml_h * share_of_flow(self.plan, feed)
+
     def designs(self) -> list[tuple[dt.datetime, str, float]]:
         """(from when, dosing point, mg/L) of every design dose, in order."""
         out = []
@@ -58,9 +62,9 @@ class Simulated:
 
     def true_days(self) -> list[TrueDay]:
         """What really happened, day by day and dosing point by dosing point."""
-        volume = self.grid.daily(self.flow_ml_h)
         out = []
         for history in self.histories:
+            volume = self.grid.daily(self.flow_of(history.feed))
             product, active = self.grid.daily(history.product_kg), self.grid.daily(history.active_kg)
             wanted = self.grid.daily(self.wanted[history.feed.wants]) / np.diff(self.grid.day_edges)
             out += [
@@ -119,6 +123,15 @@ def simulate(
     return Simulated(plan, seed, grid, end, chosen, histories, truth, raw.flow_ml_h, wanted, book.until(end))
 
 
+RAW_SHARE = 1.032
+"""Raw water per treated water: what the filters' backwash takes."""
+
+
+def share_of_flow(plan: Plan, feed: Feed) -> float:
+    """The flow a feed goes into, as a share of the treated water."""
+    return RAW_SHARE if feed.point["meter"] == plan.raw_meter else 1.0
+
+
 def _wanted(plan: Plan, raw: water.RawWater) -> dict[str, np.ndarray]:
     """The dose each feed's water asks for, hour by hour, in the feed's dose basis."""
     curve = np.array(plan.coagulant_curve or ((0.0, 0.0), (1.0, 0.0)))
@@ -149,9 +162,10 @@ def _feeds(
     histories, doses = [], {}
     for number, feed in enumerate(plan.feeds):
         rng = np.random.default_rng([seed, 7919, number])
-        history = tanks.run(feed, grid, raw.flow_ml_h, wanted[feed.wants], raw.store_temperature, effect, rng)
+        flow = raw.flow_ml_h * share_of_flow(plan, feed)
+        history = tanks.run(feed, grid, flow, wanted[feed.wants], raw.store_temperature, effect, rng)
         histories.append(history)
-        doses[feed.wants] = history.dose_mg_l(raw.flow_ml_h)
+        doses[feed.wants] = history.dose_mg_l(flow)
     return histories, doses
 
 
@@ -213,7 +227,7 @@ def _truth(
         ("NETWORK", "total_coliform"): np.zeros(grid.hours),
         ("NETWORK", "e_coli"): np.zeros(grid.hours),
     }
-    for meter, share, offset in ((plan.treated_meter, 1.0, 4_183_220.0), (plan.raw_meter, 1.032, 9_561_870.0)):
+    for meter, share, offset in ((plan.treated_meter, 1.0, 4_183_220.0), (plan.raw_meter, RAW_SHARE, 9_561_870.0)):
         if meter:
             flow = raw.flow_ml_h * 1000 * share * effect.meter.get(meter, 1.0)
             out[meter, "totaliser"] = offset + np.concatenate([[0.0], np.cumsum(flow)])[: grid.hours + 1]
@@ -252,6 +266,9 @@ def _feed_truth(
         out[feed.code, "feeder_setting"] = history.setting_kg_ml * flow_ml_h.mean()
     else:
         out[feed.code, "feeder_setting"] = 45 * history.setting_kg_ml / np.mean(history.setting_kg_ml)
+    if feed.product["strength_basis"] == "g_per_L_available_chlorine":
+        for code, held in history.held.items():
+            out[code, "strength"] = held.fraction * float(feed.product["density_kg_per_L"]) * 1000
     meter = feed.point.get("feed_meter")
     if meter:
         rng = np.random.default_rng([len(meter), grid.hours])
