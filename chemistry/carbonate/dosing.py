@@ -85,7 +85,8 @@ def dose_between(water: waters.Water, chemical: str, target_ph: Values, activity
     h = 10.0 ** (-target_ph)
 
     def at(moles: Values) -> Values:
-        found = equilibrium.solve(replace(_added(before, effect, moles), alkalinity=None, h=h), activity)
+        totals = replace(_added(before, effect, moles), alkalinity=None, h=h)
+        found = equilibrium.solve(totals, activity, tight=True)
         # What the alkalinity is at the target pH less what the dose has made it: nearly linear in the dose.
         return found.alkalinity - before.alkalinity - effect.alkalinity * moles
 
@@ -121,7 +122,7 @@ def carbon_totals(water: waters.Water, activity: str) -> waters.Totals:
     found = waters.totals(water)
     if found.h is None:
         return found
-    solved = equilibrium.solve(found, activity)
+    solved = equilibrium.solve(found, activity, tight=True)
     return found.with_carbon_system(
         alkalinity=found.alkalinity if found.alkalinity is not None else solved.alkalinity,
         carbon=found.carbon if found.carbon is not None else solved.carbon,

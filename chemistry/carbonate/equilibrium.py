@@ -2,9 +2,9 @@
 
 The unknowns are the activity h of H+ and the concentration c of free CO3, found by Newton's method in their
 logarithms with limited steps on the balances of module balances. Free sulfate and ionic strength are renewed
-in each step, the latter by a secant. Waters that have not settled after the allowed steps are solved again by
-bracketing the pH. The species are those of phreeqc.dat for these elements (key PHREEQC-DAT), without CaHSO4+
-and (CO2)2; the activity of water is 1.
+in each step. Waters that have not settled after the allowed steps are solved again by bracketing the pH. The
+species are those of phreeqc.dat for these elements (key PHREEQC-DAT), without CaHSO4+ and (CO2)2; the
+activity of water is 1.
 """
 
 import math
@@ -17,9 +17,11 @@ from chemistry import errors
 from chemistry.carbonate import apparent, balances, bracketing, constants_of_equilibrium
 from chemistry.constants import Values
 
-_TOLERANCE = 2e-8  # of the last step; the error left is about a tenth of it
+_TOLERANCE = 1e-7  # of the last step, relative: 4e-8 in an index
+_TIGHT = 1e-10  # where a search runs on top
 _MOST_STEPS = 40
 _TINY = 1e-300
+_PAIRED = 60.0  # a first guess at how sulfate binds calcium and magnesium, L/mol
 
 _SCALAR = SimpleNamespace(
     exp=math.exp,
@@ -44,17 +46,20 @@ def solve(
     brucite: bool = False,
     co2_activity: Values = None,
     start: Values = None,
+    tight: bool = False,
 ) -> balances.Solved:
     """Speciate ``totals`` (see waters.Totals); returns balances.Solved.
 
     Which two of h, alkalinity and carbon stand in ``totals`` decides what is found. With ``calcite`` or
     ``brucite`` the water is brought to equilibrium with that solid (dissolving or forming it): calcium,
     magnesium, carbon and alkalinity in the result are what stays dissolved. ``co2_activity`` (mol/kg) takes
-    the place of carbon for a water in equilibrium with a gas. ``start`` is an earlier Solved to begin from.
+    the place of carbon for a water in equilibrium with a gas. ``start`` is an earlier Solved to begin from; ``tight`` asks
+    for 1e-10 instead of 1e-7.
     Raises ChemistryError where no answer exists between pH 3 and 13, OutOfRange where the ionic strength
     passes 0.5 mol/L.
     """
     activities.require_model(model)
+    tolerance = _TIGHT if tight else _TOLERANCE
     fields = [getattr(totals, name) for name in totals.__slots__]
     fields.append(co2_activity)
     scalar = not any(isinstance(value, np.ndarray) for value in fields)
@@ -63,18 +68,18 @@ def solve(
     problem = Problem(xp, constants, apparent.OF_MODEL[model], totals, calcite, brucite, co2_activity)
     if scalar:
         try:
-            solved, step = problem.newton(start)
-            settled = step < _TOLERANCE
+            solved, step = problem.newton(start, tolerance)
+            settled = step < tolerance
         except (ZeroDivisionError, OverflowError, ValueError):
             settled = False
         if not settled:
             solved = bracketing.bracketed(problem)
     else:
         with np.errstate(all="ignore"):
-            solved, step = problem.newton(start)
-        if not np.max(step, initial=0.0) < _TOLERANCE:
+            solved, step = problem.newton(start, tolerance)
+        if not np.max(step, initial=0.0) < tolerance:
             shape = np.broadcast_shapes(*(np.shape(value) for value in fields if value is not None))
-            failed = np.broadcast_to(~(np.asarray(step) < _TOLERANCE), shape)
+            failed = np.broadcast_to(~(np.asarray(step) < tolerance), shape)
             solved = bracketing.mend(solved, failed, problem, _SCALAR)
     errors.require("ionic strength", solved.ionic_strength, "mol/L", 0.0, 0.5, "Davies 1962")
     if not problem.fixed_h:
@@ -126,13 +131,11 @@ class Problem:
         """balances.State of this problem."""
         return balances.evaluate(ap, self.t, h, c, s, self.calcite, self.brucite, not self.fixed_h)
 
-    def newton(self, start: Values) -> tuple[balances.Solved, Values]:
+    def newton(self, start: Values, tolerance: float = _TOLERANCE) -> tuple[balances.Solved, Values]:
         """Return (Solved, size of the last step)."""
         xp, t = self.xp, self.t
-        h, c, s, ionic = self._start(start)
-        ap = self.apparent(xp, self.k, ionic)
-        last_ionic = last_miss = None
-        for turn in range(_MOST_STEPS):
+        ap, h, c, s, ionic = self._start(start)
+        for _ in range(_MOST_STEPS):
             state = self.evaluate(ap, h, c, s)
             new_s, new_ionic = balances.renewed(ap, t, state)
             if self.fixed_h:
@@ -149,52 +152,53 @@ class Problem:
                 c = xp.most(_TINY, c * xp.exp(dv))
                 new_ionic = new_ionic + state.ionic_u * du + state.ionic_v * dv
             new_ionic = xp.most(new_ionic, 0.3 * ionic)
-            miss = new_ionic - ionic
-            step = step + abs(miss) / new_ionic + abs(new_s - s) / (t.sulfate + 1e-9)
-            if xp.largest(step) < _TOLERANCE:
+            step = step + abs(new_ionic - ionic) / new_ionic + abs(new_s - s) / (t.sulfate + 1e-9)
+            if xp.largest(step) < tolerance:
                 break
-            if turn > 1:  # secant on the ionic strength, kept near the plain step
-                slope = (last_miss - miss) / (ionic - last_ionic + 1e-30)
-                new_ionic = ionic + miss / xp.most(0.7, xp.least(1.4, slope))
-            last_ionic, last_miss = ionic, miss
             s, ionic = new_s, new_ionic
             ap = self.apparent(xp, self.k, ionic)
         return balances.solved(ap, t, state, ionic, self.calcite, self.brucite), step
 
     def _start(self, start: Values) -> Values:
-        """First h, c, free sulfate and ionic strength."""
-        xp, t, k = self.xp, self.t, self.k
+        """First apparent constants, h, c, free sulfate and ionic strength."""
+        xp, t = self.xp, self.t
         if start is not None:
+            ap = self.apparent(xp, self.k, start.ionic_strength)
             c = start.co3
             if self.calcite:
                 c = c / xp.sqrt(xp.most(1e-4, xp.least(start.ion_product_calcite, 1e4)))
-            return (t.h if self.fixed_h else start.h), c, start.so4, start.ionic_strength
+            return ap, (t.h if self.fixed_h else start.h), c, start.so4, start.ionic_strength
         weak = t.carbon if t.alkalinity is None else abs(t.alkalinity)
-        ionic = 2.0 * (t.calcium + t.magnesium + t.sulfate) + 0.5 * (
+        s = t.sulfate / (1.0 + _PAIRED * (t.calcium + t.magnesium))
+        ionic = 2.0 * (t.calcium + t.magnesium - t.sulfate + s + s) + 0.5 * (
             t.sodium + t.potassium + t.chloride + t.other_charge + weak
         )
-        ionic = xp.least(0.6, xp.most(0.97 * ionic, 1e-6))
+        ionic = xp.least(0.6, xp.most(ionic, 1e-6))
+        ap = self.apparent(xp, self.k, ionic)
         if self.fixed_h:
             h = t.h
-            if t.carbon is not None:
-                c = t.carbon / (1.0 + h / k.k2 + h * h / (k.k1 * k.k2))
-            else:
-                c = xp.most(t.alkalinity + h - k.kw / h, 1e-12) / (h / k.k2 + 2.0)
         elif self.co2_activity is not None:
-            h = k.k1 * self.co2_activity / xp.most(t.alkalinity, 1e-6)
+            h = self.k.k1 * self.co2_activity / xp.most(t.alkalinity, 1e-6)
             h = xp.least(1e-4, xp.most(1e-11, h))
-            c = self.co2_activity * k.k1 * k.k2 / (h * h)
         else:
             # The quadratic of carbonate alkalinity alone; past its end the excess is hydroxide.
             a, carbon = t.alkalinity, t.carbon
+            k1, k2 = ap.hco3 / ap.co2, 1.0 / ap.hco3
             some = xp.most(a, 1e-8)
-            lack = k.k1 * (a - carbon)
-            inside = lack * lack - 4.0 * some * k.k1 * k.k2 * (a - 2.0 * carbon)
+            lack = k1 * (a - carbon)
+            inside = lack * lack - 4.0 * some * k1 * k2 * (a - 2.0 * carbon)
             h = (xp.sqrt(xp.most(inside, 0.0)) - lack) / (2.0 * some)
-            h = xp.where(a > 1.95 * carbon, k.kw / xp.most(a - 1.9 * carbon, 1e-6), h)
+            h = xp.where(a > 1.95 * carbon, ap.oh / xp.most(a - 1.9 * carbon, 1e-6), h)
             h = xp.least(10**-3.5, xp.most(10**-12.5, h))
-            c = carbon / (1.0 + h / k.k2 + h * h / (k.k1 * k.k2))
-        return h, xp.most(c, 1e-20), t.sulfate, ionic
+        if self.co2_activity is not None:
+            c = self.co2_activity / (ap.gammas[4] * ap.co2 * h * h)
+        elif t.carbon is not None:
+            held = (ap.cahco3 * h + ap.caco3) * t.calcium + (ap.mghco3 * h + ap.mgco3) * t.magnesium
+            c = t.carbon / (1.0 + (ap.hco3 + ap.co2 * h) * h + held)
+        else:
+            held = (ap.cahco3 * h + 2.0 * ap.caco3) * t.calcium + (ap.mghco3 * h + 2.0 * ap.mgco3) * t.magnesium
+            c = xp.most(t.alkalinity + ap.h * h - ap.oh / h, 1e-12) / (2.0 + ap.hco3 * h + held)
+        return ap, h, xp.most(c, 1e-20), s, ionic
 
     def _one_step(self, state: Values) -> Values:
         if self.carbon_target is not None:

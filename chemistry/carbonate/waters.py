@@ -33,7 +33,7 @@ class Water:
     """One water (numbers) or many (arrays that broadcast together).
 
     temperature_c: 0 to 80 °C. Two of: ph (3 to 13), alkalinity_mg_l_caco3 (total, -2,000 to 10,000),
-    dic_mmol_l (dissolved inorganic carbon, 0 to 100). With pH and one other the third follows; with
+    dic_mmol_l (dissolved inorganic carbon, 0 to 1,000). With pH and one other the third follows; with
     alkalinity and DIC the pH does. Ions in mg/L of the ion (nitrate as NO3); free_chlorine_mg_l as Cl2 enters
     the alkalinity as hypochlorite. Ions that are not given count as absent: this lowers the ionic strength,
     and with it the index by up to 0.1. Outside these ranges, or not a number, raises OutOfRange; not exactly
@@ -72,7 +72,7 @@ class Water:
         if self.alkalinity_mg_l_caco3 is not None:
             errors.require("alkalinity", self.alkalinity_mg_l_caco3, "mg/L CaCO3", -2000.0, 10000.0, _LIMIT_SOURCE)
         if self.dic_mmol_l is not None:
-            errors.require("inorganic carbon", self.dic_mmol_l, "mmol/L", 0.0, 100.0, _LIMIT_SOURCE)
+            errors.require("inorganic carbon", self.dic_mmol_l, "mmol/L", 0.0, 1000.0, _LIMIT_SOURCE)
         for name, highest in _HIGHEST_MG_L.items():
             value = getattr(self, name)
             if value.__class__ is float and 0.0 <= value <= highest:
