@@ -146,21 +146,6 @@ def threshold_solution_kg(threshold_kg: Values, weight_fraction: Values) -> Valu
     return threshold_kg / weight_fraction
 
 
-def fluoride_additive_lb_per_us_mgal(net_fluoride_mg_l: Values, purity: Values, available_fluoride: Values) -> Values:
-    """Pounds of additive per million US gallons for a net fluoride dose: 8.3454 C / (purity x fluoride content)."""
-    return mass_lb(net_fluoride_mg_l, 1.0, purity * available_fluoride)
-
-
-def mass_as(mass: Values, from_formula: str, to_formula: str) -> Values:
-    """A mass restated as another formula, through `products.mass_ratio`."""
-    return mass * products.mass_ratio(from_formula, to_formula)
-
-
-def density_kg_l_from_lb_per_us_gal(lb_per_us_gal: Values) -> Values:
-    """Density in kg/L from pounds per US gallon."""
-    return units.convert(lb_per_us_gal, "lb/US_gal", "kg/L")
-
-
 def caco3_equivalent_mg_l(dose_mg_l: Values, formula: str) -> Values:
     """Alkalinity added (+) or taken (-), mg/L as CaCO3, by a dose of a pure alkali or acid (equivalents per mole)."""
     if formula not in products.ALKALINITY_EQ_MOL:

@@ -40,13 +40,18 @@ def oxidant_demand(settings: Settings, readings: Readings, product: Product) -> 
 def residual_basis(product: Product) -> str:
     """The formula a product's residual is read as: Cl2, H2O2, O3, KMnO4 ...; '' where it has none of its own.
 
-    A demand is dose less residual in this basis: restate the dose with `products.mass_ratio` first when the
-    product's dose basis is another.
+    A demand is dose less residual in this basis: restate the dose with :func:`dose_as_residual_mg_l` first.
     """
     chemical = str(product["chemical"])
     if chemical in _CHLORINE:
         return "Cl2"
     return chemical if chemical in oxidants.OXIDANT_ELECTRONS else ""
+
+
+def dose_as_residual_mg_l(dose_mg_l: float, product: Product) -> float:
+    """A dose (or mass) in the product's dose basis restated as its residual is read, e.g. product as mg/L Cl2."""
+    formula = residual_basis(product)
+    return dose_mg_l / float(products.dose_in_basis_mg_l(1.0, formula, product)) if formula else dose_mg_l
 
 
 def ion_exchange_salt(settings: Settings, readings: Readings, product: Product) -> Working:

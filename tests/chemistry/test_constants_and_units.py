@@ -208,3 +208,21 @@ def test_conversion_round_trips_and_arrays_equal_scalars(value, pair):
 def test_exact_factors_are_exact_fractions():
     assert UNITS["lb"].factor == Fraction(45359237, 100000000)
     assert UNITS["MGD"].factor * 24 == Fraction("3785.411784")
+
+
+def test_units_of_two_kinds_do_not_meet():
+    for pair in (("kg", "L"), ("mg/L", "mg/L as CaCO3"), ("furlong", "m")):
+        with pytest.raises(units.UnknownUnit):
+            units.convert(1.0, *pair)
+    assert units.convert(2.0, "meq/L", "°fH") == pytest.approx(10.0086)
+    assert units.canonical(3.0, "TCU", "tannin", "TCU") == (3.0, "TCU")
+
+
+def test_short_ways_to_litres_and_kilograms():
+    assert units.volume_l(2.0, "m3") == 2000.0
+    assert units.mass_kg(1.0, "t") == 1000.0
+    assert units.kind_of("imp_gal") == "volume"
+    assert units.canonical_unit_of("hardness") == "mg/L as CaCO3"
+    assert units.caco3_from_mmol_l(1.0, 2) == pytest.approx(100.086)
+    with pytest.raises(units.UnknownUnit):
+        units.volume_l(1.0, "kg")

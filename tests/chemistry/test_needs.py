@@ -6,7 +6,7 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from chemistry import carbonate, constants, errors, needs, products, softening, sources
+from chemistry import carbonate, constants, errors, need_models, needs, products, softening, sources
 
 M = constants.molar_mass
 
@@ -59,6 +59,15 @@ def test_oxidant_demand_is_restated_in_the_products_own_basis():
     by_product = {**HYPO, "dose_basis": "product"}
     stated = {"demand_mg_per_L": 0.6, "target_residual_mg_per_L": 0.5}
     assert needs.need("oxidant_demand", stated, {}, product=by_product).dose_mg_l == pytest.approx(1.1 * 1.2 / 0.125)
+
+
+@pytest.mark.parametrize("basis", ["product", "active", "NaOCl", "Cl2"])
+def test_a_dose_restated_as_its_residual_gives_the_same_need_back(basis):
+    bought = {**HYPO, "dose_basis": basis}
+    stated = {"demand_mg_per_L": 0.6, "target_residual_mg_per_L": 0.5}
+    dose = needs.need("oxidant_demand", stated, {}, product=bought).dose_mg_l
+    assert need_models.dose_as_residual_mg_l(dose, bought) == pytest.approx(1.1)
+    assert need_models.dose_as_residual_mg_l(3.0, POLY) == 3.0
 
 
 def test_lime_by_hand():
@@ -349,3 +358,31 @@ def test_a_hypochlorite_need_in_product_terms_can_be_fed():
 
     dose = needs.need("oxidant_demand", SETTINGS["oxidant_demand"], {}, product=HYPO).dose_mg_l
     assert feed.feed_l_h(dose, 500.0, products.fraction_of_product(HYPO), 1.2) == pytest.approx(4.4)
+
+
+def test_total_chlorine_stands_in_for_free():
+    answer = needs.need("quench", {"of": "chlorine"}, {"total_chlorine": 1.0}, product=PEROXIDE)
+    assert answer.uses == ("total_chlorine",)
+
+
+@pytest.mark.parametrize(
+    ("model", "stated"),
+    [
+        ("lime_soda", {**SOFTEN, "part": "potash"}),
+        ("lime_soda", {**SOFTEN, "target_hardness_mg_per_L_CaCO3": "soft"}),
+        ("ion_exchange_salt", {**SETTINGS["ion_exchange_salt"], "resin_m3": 0.0}),
+        ("curve", {"parameter": "pH", "points": [[7, 1]]}),
+    ],
+)
+def test_settings_that_slipped_through_give_a_reason_not_a_number(model, stated):
+    answer = needs.need(model, stated, {**WATER, "hardness": 260.0}, product=PRODUCTS[model])
+    assert answer.dose_mg_l is None
+    assert answer.reason
+
+
+def test_hardness_as_calcium_carbonate_serves_the_equilibrium_too():
+    as_ion = {"pH": 7.2, "alkalinity": 100.0, "temperature": 12.0, "calcium": 40.078}
+    as_caco3 = {**as_ion, "calcium_hardness": 100.086}
+    del as_caco3["calcium"]
+    doses = [needs.need("target_ph", {"target_ph": 8.3}, r, product=CAUSTIC).dose_mg_l for r in (as_ion, as_caco3)]
+    assert doses[0] == pytest.approx(doses[1])

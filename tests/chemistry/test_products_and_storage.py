@@ -257,7 +257,6 @@ def test_feeders_cylinders_and_days():
     assert feed.days_of_supply(500.0, 25.0) == 20.0
     assert feed.days_of_supply(500.0, 0.0) == float("inf")
     np.testing.assert_array_equal(feed.days_of_supply(np.array([50.0, 0.0]), 25.0), [2.0, 0.0])
-    assert feed.mass_as(100.0, "Ca(OH)2", "CaO") == pytest.approx(75.69, abs=0.01)
     with pytest.raises(errors.ChemistryError):
         feed.caco3_equivalent_mg_l(1.0, "NaCl")
 
@@ -269,3 +268,16 @@ def test_mass_ratios_invert():
         constants.molar_mass("CaCO3") / constants.molar_mass("Na2CO3")
     )
     assert products.fraction_of_product(HYPO, "NaOCl", strength=100.0) == pytest.approx(0.1 / 1.2 * 74.439 / 70.9, rel=1e-4)
+
+
+def test_strengths_without_what_they_need_are_refused():
+    for call in (
+        lambda: products.strength_from_weight_fraction(0.1, "trade_pct"),
+        lambda: products.strength_from_weight_fraction(0.1, "percent", 1.2),
+        lambda: products.dilute(0.0, 1.2, 10.0, "weight_pct", 0.0),
+        lambda: decay.hypochlorite_strength_after(100.0, [20.0], [1.0, 2.0]),
+    ):
+        with pytest.raises(errors.ChemistryError):
+            call()
+    # 6 mol/L of ions is passed at 209 g/L, just below the strength range's end.
+    assert "ionic strength" in decay.hypochlorite_range_remarks(212.0, [20.0])[0]

@@ -186,6 +186,15 @@ def test_a_scale_shows_net_and_refuses_what_it_cannot_weigh():
         vessels.net_mass_kg(upright(), 1.0)
 
 
+def test_questions_to_the_wrong_vessel_are_refused():
+    assert vessels.full_level_m(STRAPPED) == 2.0
+    for shape in ({"shape": "scale"}, {"shape": "barrel"}, {"shape": None}):
+        with pytest.raises(errors.ChemistryError):
+            vessels.full_level_m(shape)
+        with pytest.raises(errors.ChemistryError):
+            vessels.level_m(shape, 1.0)
+
+
 def test_contents_follow_density_or_scale():
     assert vessels.contents_kg(upright(1.1283792, 3.0), 1.0, 1.273) == pytest.approx(1273.0, abs=1e-3)
     assert vessels.contents_kg({"shape": "scale", "tare_kg": 60.0}, 100.0, 1.13) == 40.0
