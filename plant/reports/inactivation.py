@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import datetime as dt
 from dataclasses import dataclass
+from itertools import pairwise
 
 from chemistry import disinfection, errors, units
 from plant.readings.queries import Point
@@ -65,7 +66,7 @@ def _one(month: Month, segment: ContactSegment, day: dt.date) -> SegmentDay:
     if end > month.now:
         return SegmentDay(segment.code, remark="the day is not over")
     lacking = []
-    parameter = next((name for name in DISINFECTANTS if month.series.get((segment.sample_point, name))), None)
+    parameter = next((name for name in DISINFECTANTS if _within(month, segment.sample_point, name, start, end)), None)
     residual = _extreme(month, segment.sample_point, parameter, start, end, lowest=True) if parameter else None
     temperature = _extreme(month, segment.sample_point, "temperature", start, end, lowest=True)
     acidity = _extreme(month, segment.sample_point, "pH", start, end, lowest=False)
@@ -82,6 +83,8 @@ def _one(month: Month, segment: ContactSegment, day: dt.date) -> SegmentDay:
     if parameter is None or residual is None or temperature is None or not flow or lacking:
         return SegmentDay(
             segment.code, residual, None, temperature, acidity, flow, remark=f"no {', '.join(lacking)} at {segment.sample_point}")
+    if residual <= 0:
+        return SegmentDay(segment.code, residual, None, temperature, acidity, flow, 0.0, None, 0.0, "no residual")
     try:
         return _computed(segment, DISINFECTANTS[parameter], known, flow_words)
     except errors.ChemistryError as problem:
@@ -116,35 +119,37 @@ def _extreme(month: Month, site: str, parameter: str, start: dt.datetime, end: d
     """The lowest or highest usable value of the day; below detection counts as zero."""
     found = [
         0.0 if point.qualifier == "<" else point.value
-        for point in month.series.get((site, parameter), []) if start <= point.at < end and point.usable and point.value is not None
+        for point in _within(month, site, parameter, start, end) if point.usable and point.value is not None
     ]
     return (min if lowest else max)(found) if found else None
+
+
+def _within(month: Month, site: str, parameter: str, start: dt.datetime, end: dt.datetime) -> list[Point]:
+    return [point for point in month.series.get((site, parameter), []) if start <= point.at < end]
 
 
 def _peak_flow(month: Month, meter: str, start: dt.datetime, end: dt.datetime) -> tuple[float | None, str]:
     """The day's highest ``peak_hourly_flow``; without one, the highest mean flow between two totaliser readings, which is less."""
     read = [
-        point.value for point in month.series.get((meter, "peak_hourly_flow"), [])
-        if start <= point.at < end and point.usable and point.value is not None
+        point.value for point in _within(month, meter, "peak_hourly_flow", start, end) if point.usable and point.value is not None
     ]
     if read:
         return max(read), ""
     stated = month.stated.value("meter", meter, start)
     if stated is None:
         return None, ""
-    points = [
-        point for point in month.series.get((meter, "totaliser"), [])
-        if start - dt.timedelta(hours=13) <= point.at <= end + dt.timedelta(hours=13) and point.usable
+    counts = [
+        point for point in month.counts_with_day_before(meter)
+        if start - dt.timedelta(days=1) <= point.at < end and point.usable and point.value is not None
     ]
-    flows = [flow for earlier, later in zip(points, points[1:], strict=False) if (flow := _mean_flow(earlier, later, stated["unit"], start, end))]
-    if not flows:
-        return None, ""
-    return max(flows), "peak from totaliser steps"
+    flows = [
+        flow for earlier, later in pairwise(counts)
+        if later.at > start and (flow := _mean_flow(earlier, later, stated["unit"])) is not None
+    ]
+    return (max(flows), "peak from totaliser steps") if flows else (None, "")
 
 
-def _mean_flow(earlier: Point, later: Point, unit: str, start: dt.datetime, end: dt.datetime) -> float | None:
+def _mean_flow(earlier: Point, later: Point, unit: str) -> float | None:
     hours = (later.at - earlier.at).total_seconds() / 3600
-    if hours <= 0 or later.at <= start or earlier.at >= end or earlier.value is None or later.value is None:
-        return None
-    change = later.value - earlier.value
-    return float(units.convert(change, unit, "m3")) / hours if change > 0 else None
+    change = (later.value or 0.0) - (earlier.value or 0.0)
+    return float(units.convert(change, unit, "m3")) / hours if hours > 0 and change > 0 else None

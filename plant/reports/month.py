@@ -47,6 +47,7 @@ class Month:
     end: dt.datetime
     works: described.Works
     explanations: dict[str, dict[str, str]] = field(default_factory=dict)
+    _counts: dict[str, list[Point]] = field(default_factory=dict, repr=False, compare=False)
 
     @property
     def at(self) -> dt.datetime:
@@ -133,6 +134,13 @@ class Month:
     @cached_property
     def series(self) -> dict[tuple[str, str], list[Point]]:
         return readings.by_series(self.points)
+
+    def counts_with_day_before(self, meter: str) -> list[Point]:
+        """A meter's totaliser readings of the month and of the day before it."""
+        if meter not in self._counts:
+            start = self.calendar.start_of(self.first - dt.timedelta(days=1))
+            self._counts[meter] = readings.series(self.book, meter, "totaliser", start=start, end=self.end, known=self.ask)
+        return self._counts[meter]
 
     @cached_property
     def parameters(self) -> dict[str, parameters.Parameter]:

@@ -2,9 +2,8 @@
 
 from __future__ import annotations
 
-from typing import Any
-
 from plant.deviations import queries as deviations
+from plant.deviations.queries import DeviationView, EventView
 from plant.reports import measures
 from plant.reports.month import Month
 from plant.reports.pdf.document import Cell, Column, Section, Table, Text
@@ -35,25 +34,23 @@ def section(month: Month) -> Section:
     return Section(KEY, TITLE, tuple(blocks))
 
 
-def views(month: Month) -> list[Any]:
+def views(month: Month) -> list[DeviationView]:
     """The month's episodes as known at the report's seq."""
     return list(deviations.between(month.book, month.first, month.last, known=month.known))
 
 
-def _row(month: Month, number: int, view: Any) -> tuple[Cell, ...]:
-    ended = [event.at for event in view.events if event.kind in ("closed", "corrected_away")]
+def _row(month: Month, number: int, view: DeviationView) -> tuple[Cell, ...]:
+    ended = [event.at for event in view.events if event.kind == "closed" or (event.kind == "corrected_away" and event.day is None)]
     hours = (ended[-1] - view.since).total_seconds() / 3600 if ended else None
     what = " ".join(part.replace("_", " ") for part in (view.subject, view.parameter, f"({view.kind})") if part)
+    days = f" ({len(view.days)} days, to {month.day_words(view.last_day)})" if len(view.days) > 1 else ""
     return (
-        Cell(str(number), float(number), f"deviation:{view.ref}"), Cell(view.level), Cell(what), Cell(month.local(view.since)), Cell(view.value),
-        Cell(view.limit), Cell(view.state.replace("_", " ")), measures.cell(hours, 1) if hours is not None else Cell(measures.UNKNOWN),
-        Cell(", ".join(_cause(cause) for cause in view.likely_causes)),
+        Cell(str(number), float(number), f"deviation:{view.ref}"), Cell(view.level), Cell(what), Cell(month.local(view.since)),
+        Cell(f"{view.value}{days}"), Cell(view.limit),
+        Cell(view.state.replace("_", " ") + (", correction awaits approval" if view.awaiting_approval else "")),
+        Cell(measures.UNKNOWN) if hours is None else measures.cell(hours, 1),
+        Cell(", ".join(name.replace("_", " ") for name in view.likely_causes)),
     )
-
-
-def _cause(cause: Any) -> str:
-    name = cause if isinstance(cause, str) else cause.get("cause", "") if isinstance(cause, dict) else cause.name
-    return str(name).replace("_", " ")
 
 
 STEPS = {
@@ -62,17 +59,22 @@ STEPS = {
 }
 
 
-def _life(month: Month, number: int, view: Any) -> list[tuple[Cell, ...]]:
+def _life(month: Month, number: int, view: DeviationView) -> list[tuple[Cell, ...]]:
     return [
-        (Cell(str(number), float(number)), Cell(month.local(event.at)), Cell(STEPS[event.kind]), Cell(_by(event)), Cell(_said(event)))
+        (Cell(str(number), float(number)), Cell(month.local(event.at)), Cell(STEPS[event.kind]), Cell(event.by or "the program"), Cell(_said(event)))
         for event in view.events if event.kind in STEPS
     ]
 
 
-def _by(event: Any) -> str:
-    return str(event.by or "the program")
+LEFT_OUT = frozenset({"corrected_by", "refs", "whole", "awaiting", "reading", "days"})
 
 
-def _said(event: Any) -> str:
-    parts = [f"{key.replace('_', ' ')}: {value}" for key, value in sorted(event.fields.items()) if value not in (None, "", [], {})]
-    return "; ".join(parts) or event.reason or ""
+def _said(event: EventView) -> str:
+    """What was said at a step: the words themselves, then whom, how and under which reference."""
+    said = []
+    for key, value in event.fields.items():
+        if value in (None, "", [], {}) or key in LEFT_OUT:
+            continue
+        text = str(value).replace("_", " ") if key == "cause" else str(value)
+        said.append(text if key in ("words", "note", "who", "cause") else f"{key.replace('_', ' ')} {text}")
+    return ", ".join(said)
