@@ -216,9 +216,15 @@ class TestEquipment:
     def test_a_totaliser_beyond_its_digits_is_marked(self, read):
         assert taken(read(site="FT-GAL", parameter="totaliser", value="10000", unit="US_Mgal")).marks == [marks.IMPOSSIBLE]
 
-    @pytest.mark.parametrize(("value", "unit", "text", "kept"), [
-        ("1.50", "m", "1.50", "m"), ("150", "cm", "1.50", "m"), ("1500", "mm", "1.500", "m"), ("50", "%", "50", "%"),
-    ])
+    @pytest.mark.parametrize(
+        ("value", "unit", "text", "kept"),
+        [
+            ("1.50", "m", "1.50", "m"),
+            ("150", "cm", "1.50", "m"),
+            ("1500", "mm", "1.500", "m"),
+            ("50", "%", "50", "%"),
+        ],
+    )
     def test_a_level_comes_in_metres_and_percent_stays(self, read, value, unit, text, kept):
         reading = taken(read(site="TANK", parameter="level", value=value, unit=unit))
         assert (float(reading.value_text), reading.unit, reading.marks) == (float(text), kept, [])
@@ -233,10 +239,16 @@ class TestEquipment:
         assert taken(read(site="TANK", parameter="strength", value="118", unit="g/L")).unit == "g/L"
         assert "g/L" in refused(read(site="TANK", parameter="strength", value="11.8", unit="%"))
 
-    @pytest.mark.parametrize(("parameter", "value", "unit"), [
-        ("feeder_setting", "45", "%"), ("feeder_setting", "12", "L/h"), ("drawdown", "230", "mL/min"),
-        ("run_hours", "11.5", "h"), ("bags", "3", ""),
-    ])
+    @pytest.mark.parametrize(
+        ("parameter", "value", "unit"),
+        [
+            ("feeder_setting", "45", "%"),
+            ("feeder_setting", "12", "L/h"),
+            ("drawdown", "230", "mL/min"),
+            ("run_hours", "11.5", "h"),
+            ("bags", "3", ""),
+        ],
+    )
     def test_a_feeder_s_readings_keep_their_unit(self, read, parameter, value, unit):
         assert taken(read(site="POST", parameter=parameter, value=value, unit=unit)).unit == unit
 

@@ -52,7 +52,9 @@ def test_digits_that_would_have_to_be_guessed_are_refused(typed):
         numbers.read(typed)
 
 
-@pytest.mark.parametrize(("typed", "text"), [("7,32", "7.32"), ("<0,05", "0.05"), ("12", "12"), ("0.5", "0.5"), ("0.123", "0.123")])
+@pytest.mark.parametrize(
+    ("typed", "text"), [("7,32", "7.32"), ("<0,05", "0.05"), ("12", "12"), ("0.5", "0.5"), ("0.123", "0.123")]
+)
 def test_decimal_commas_are_read_where_they_are_expected(typed, text):
     found = numbers.read(typed, decimal=numbers.COMMA)
     assert isinstance(found, numbers.Number)
@@ -65,7 +67,7 @@ def test_with_decimal_commas_a_group_of_thousands_is_not_guessed_at(typed):
         numbers.read(typed, decimal=numbers.COMMA)
 
 
-@given(st.decimals(allow_nan=False, allow_infinity=False, min_value=-10**12, max_value=10**12, places=4))
+@given(st.decimals(allow_nan=False, allow_infinity=False, min_value=-(10**12), max_value=10**12, places=4))
 def test_any_decimal_comes_back_as_it_was(value):
     found = numbers.read(format(value, "f"))
     assert isinstance(found, numbers.Number)

@@ -29,7 +29,11 @@ class TestTheThreeDays:
         counted = bring(example, DATA / "three_days" / "records.csv")
         assert (counted.lines, counted.added, counted.refused, counted.not_taken) == (21, 21, 0, 1)
         totaliser = queries.series(
-            example, "FT-TREATED", "totaliser", start=dt.datetime(2026, 3, 28, tzinfo=dt.UTC), end=dt.datetime(2026, 4, 1, tzinfo=dt.UTC)
+            example,
+            "FT-TREATED",
+            "totaliser",
+            start=dt.datetime(2026, 3, 28, tzinfo=dt.UTC),
+            end=dt.datetime(2026, 4, 1, tzinfo=dt.UTC),
         )
         assert [point.typed for point in totaliser][:3] == ["95000", "00500", "06500"]
         # 08:00 on the day the clocks went forward is 06:00 UTC, eleven hours after 19:00 the evening before.
@@ -68,7 +72,9 @@ class TestTheSameSampleAgain:
         counted = bring(
             example,
             sheet(
-                "NAOH-BULK,2026-03-28T07:00,level,1.50,m", "NAOH-BULK,2026-03-28T07:00,level,150,cm", header="site,timestamp,parameter,value,unit"
+                "NAOH-BULK,2026-03-28T07:00,level,1.50,m",
+                "NAOH-BULK,2026-03-28T07:00,level,150,cm",
+                header="site,timestamp,parameter,value,unit",
             ),
         )
         assert (counted.added, counted.outcomes["same again"]) == (1, 1)
@@ -92,10 +98,17 @@ class TestTheSameSampleAgain:
         counted = bring(example, sheet(self.line("7.9", note="misread", replaces="yes")))
         assert counted.outcomes["corrected"] == 1
         (now_holds,) = in_force(example)
-        assert (now_holds.value_text, now_holds.reason, now_holds.supersedes.value_text, now_holds.marks) == ("7.9", "misread", "7.3", [])
+        assert (now_holds.value_text, now_holds.reason, now_holds.supersedes.value_text, now_holds.marks) == (
+            "7.9",
+            "misread",
+            "7.3",
+            [],
+        )
 
     def test_that_replaces_a_line_of_the_same_file(self, example, bring, sheet):
-        path = sheet(self.line("7.3"), self.line("7.9", note="misread", replaces="yes"), self.line("8.0", note="again", replaces="yes"))
+        path = sheet(
+            self.line("7.3"), self.line("7.9", note="misread", replaces="yes"), self.line("8.0", note="again", replaces="yes")
+        )
         counted = bring(example, path)
         assert (counted.outcomes["added"], counted.outcomes["corrected"]) == (1, 2)
         assert [reading.value_text for reading in in_force(example)] == ["8.0"]
@@ -145,7 +158,9 @@ class TestPhAndChlorine:
 
 class TestRefusals:
     def test_name_file_line_what_was_read_and_what_was_expected(self, example, bring, sheet):
-        path = sheet("ENTRY,2026-03-28T07:00,pH,7.3,", "NOWHERE,2026-03-28T07:00,pH,7.3,", "ENTRY,2026-03-28T08:00,pH,7.3,furlong")
+        path = sheet(
+            "ENTRY,2026-03-28T07:00,pH,7.3,", "NOWHERE,2026-03-28T07:00,pH,7.3,", "ENTRY,2026-03-28T08:00,pH,7.3,furlong"
+        )
         counted = bring(example, path)
         assert counted.added == 1
         assert counted.refusal_lines() == [
@@ -220,16 +235,18 @@ class TestFilesThatAreNotSheets:
         assert [row.cells["site"] for row in records.open_file(path)] == ["ENTRY"]
 
     def test_columns_that_are_not_read_are_named(self, example, bring, sheet):
-        counted = bring(example, sheet("ENTRY,2026-03-28T07:00,pH,7.3,,x", header="site,timestamp,parameter,value,unit,colour_of_sky"))
+        counted = bring(
+            example, sheet("ENTRY,2026-03-28T07:00,pH,7.3,,x", header="site,timestamp,parameter,value,unit,colour_of_sky")
+        )
         assert counted.ignored_columns == ("colour_of_sky",)
 
 
 class TestAStopInTheMiddle:
     def many(self, sheet, count=250):
         start = dt.datetime(2026, 1, 1)  # noqa: DTZ001  # local, as a file has it
-        return sheet(*[
-            f"ENTRY,{start + dt.timedelta(hours=hour):%Y-%m-%dT%H:%M},pH,{7 + hour % 50 / 100:.2f}," for hour in range(count)
-        ])
+        return sheet(
+            *[f"ENTRY,{start + dt.timedelta(hours=hour):%Y-%m-%dT%H:%M},pH,{7 + hour % 50 / 100:.2f}," for hour in range(count)]
+        )
 
     def test_keeps_whole_entries_and_the_next_run_adds_the_rest(self, example, bring, sheet, monkeypatch):
         monkeypatch.setattr(records, "ENTRY_LINES", 100)

@@ -26,18 +26,25 @@ MORNING = dt.datetime(2026, 3, 10, 8, 0, tzinfo=dt.UTC)
 def book(db):
     book = people.small_works()
     lines = [
-        ("ENTRY:free_chlorine", "shift"), ("ENTRY:pH", "shift"), ("FT-TREATED:totaliser", "day"), ("HYPO-BULK:level", "day"),
+        ("ENTRY:free_chlorine", "shift"),
+        ("ENTRY:pH", "shift"),
+        ("FT-TREATED:totaliser", "day"),
+        ("HYPO-BULK:level", "day"),
     ]
     changes = [
         works_actions.Change(
-            "round_line", key, {"site": key.split(":")[0], "parameter": key.split(":")[1], "due": due, "order": place},
-            dt.datetime(2026, 1, 1, tzinfo=dt.UTC))
+            "round_line",
+            key,
+            {"site": key.split(":")[0], "parameter": key.split(":")[1], "due": due, "order": place},
+            dt.datetime(2026, 1, 1, tzinfo=dt.UTC),
+        )
         for place, (key, due) in enumerate(lines)
     ]
     own = {key for key, _ in lines}
     changes += [
         works_actions.Change("round_line", item.code, {}, dt.datetime(2026, 1, 1, tzinfo=dt.UTC), withdrawn=True)
-        for item in works.stated(book).round_lines(MORNING) if item.code not in own
+        for item in works.stated(book).round_lines(MORNING)
+        if item.code not in own
     ]
     works_actions.state_many(book=book, changes=changes, by=None, now=dt.datetime(2026, 1, 2, tzinfo=dt.UTC), reason="test")
     return book
@@ -61,7 +68,14 @@ def put(client, body, client_id=None):
 
 def line(key="ENTRY:free_chlorine", value="0.55", unit="mg/L", **more):
     site, parameter = key.split(":")
-    return {"key": key, "site": site, "parameter": parameter, "value": value, "unit": unit, "taken_at": "2026-03-10T07:40:00Z"} | more
+    return {
+        "key": key,
+        "site": site,
+        "parameter": parameter,
+        "value": value,
+        "unit": unit,
+        "taken_at": "2026-03-10T07:40:00Z",
+    } | more
 
 
 def a_round(*lines, **more):
@@ -71,7 +85,12 @@ def a_round(*lines, **more):
 class TestWhatIsDue:
     def test_is_what_the_round_states_in_walking_order(self, book):
         walked = walk.walk(book, works.stated(book), MORNING)
-        assert [item.key for item in walked.lines] == ["ENTRY:free_chlorine", "ENTRY:pH", "FT-TREATED:totaliser", "HYPO-BULK:level"]
+        assert [item.key for item in walked.lines] == [
+            "ENTRY:free_chlorine",
+            "ENTRY:pH",
+            "FT-TREATED:totaliser",
+            "HYPO-BULK:level",
+        ]
         assert walked.shift.name == "day"
 
     def test_of_a_day_is_done_once_it_is_read(self, olga, book):
@@ -92,8 +111,15 @@ class TestWhatIsDue:
 
     def test_leaves_out_what_is_not_in_service(self, book):
         works_actions.state(
-            book=book, kind="state", subject="vessel:HYPO-BULK", value={"is": "standby"}, effective_from=MORNING - dt.timedelta(hours=1),
-            reason="test", by=None, now=MORNING)
+            book=book,
+            kind="state",
+            subject="vessel:HYPO-BULK",
+            value={"is": "standby"},
+            effective_from=MORNING - dt.timedelta(hours=1),
+            reason="test",
+            by=None,
+            now=MORNING,
+        )
         walked = walk.walk(book, works.stated(book), MORNING)
         assert "HYPO-BULK:level" not in [item.key for item in walked.lines]
 
@@ -138,10 +164,19 @@ class TestAnEntry:
         assert "not a number" in answered.json()["lines"]["1"]
         assert Reading.objects.count() == 0
 
-    @pytest.mark.parametrize("body", [
-        [], {}, {"kind": "round"}, {"kind": "party", "lines": []}, {"kind": "round", "lines": [1]},
-        {"kind": "round", "lines": [{}] * 201}, {"kind": "round", "lines": [{"value": 5}]}, {"kind": "line", "lines": [], "close": 3},
-    ])
+    @pytest.mark.parametrize(
+        "body",
+        [
+            [],
+            {},
+            {"kind": "round"},
+            {"kind": "party", "lines": []},
+            {"kind": "round", "lines": [1]},
+            {"kind": "round", "lines": [{}] * 201},
+            {"kind": "round", "lines": [{"value": 5}]},
+            {"kind": "line", "lines": [], "close": 3},
+        ],
+    )
     def test_of_another_shape_is_refused_in_words(self, olga, body):
         answered = put(olga, body)
         assert answered.status_code == 422
@@ -209,7 +244,9 @@ class TestThePageWithoutScript:
         assert "1 of 4" in page
 
     def test_takes_a_round(self, olga):
-        answered = olga.post("/w/TST/round/", self.fields(olga, **{"value-0": "0.55", "unit-0": "mg/L", "clock-0": "07:15", "value-1": "7.4"}))
+        answered = olga.post(
+            "/w/TST/round/", self.fields(olga, **{"value-0": "0.55", "unit-0": "mg/L", "clock-0": "07:15", "value-1": "7.4"})
+        )
         assert answered.status_code == 302
         at = Reading.objects.get(parameter="free_chlorine").taken_at
         assert at == dt.datetime(2026, 3, 10, 6, 15, tzinfo=dt.UTC)
@@ -239,7 +276,10 @@ class TestThePageWithoutScript:
         assert Reading.objects.get().value_text == "12.9"
 
     def test_hands_over(self, olga):
-        olga.post("/w/TST/round/", self.fields(olga, **{"value-0": "0.55", "unit-0": "mg/L", "note": escape("pump 2 hums"), "close": "yes"}))
+        olga.post(
+            "/w/TST/round/",
+            self.fields(olga, **{"value-0": "0.55", "unit-0": "mg/L", "note": escape("pump 2 hums"), "close": "yes"}),
+        )
         assert models.HandOver.objects.get().lines_open == ["ENTRY:pH", "FT-TREATED:totaliser", "HYPO-BULK:level"]
 
     def test_is_for_those_who_enter_rounds(self, book, morning):
