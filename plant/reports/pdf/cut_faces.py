@@ -36,8 +36,8 @@ def cut(folder: Path) -> dict[str, Path]:
 
 
 def _one(source: Path, name: str, weight: int, folder: Path) -> Path:
-    font = TTFont(source, lazy=True, recalcTimestamp=False)
-    _figures_of_one_width(font)
+    whole = TTFont(source, lazy=True, recalcTimestamp=False)
+    _figures_of_one_width(whole)
     options = subset.Options()
     options.layout_features = []
     options.hinting = False
@@ -46,8 +46,8 @@ def _one(source: Path, name: str, weight: int, folder: Path) -> Path:
     cutter = subset.Subsetter(options)
     # Subsetting first: instancing the whole font takes ten times as long.
     cutter.populate(unicodes=[code for low, high in RANGES for code in range(low, high)] + list(SINGLES))
-    cutter.subset(font)
-    font = instancer.instantiateVariableFont(font, {"wght": weight, "opsz": TEXT_SIZE})
+    cutter.subset(whole)
+    font = instancer.instantiateVariableFont(whole, {"wght": weight, "opsz": TEXT_SIZE})
     for record in font["name"].names:
         # Two faces of one PostScript name would be embedded as one.
         if record.nameID == 6:
@@ -56,6 +56,8 @@ def _one(source: Path, name: str, weight: int, folder: Path) -> Path:
             record.string = f"Inter {name}"
     path = folder / f"Inter-{name}.ttf"
     font.save(path)
+    font.close()
+    whole.close()
     return path
 
 

@@ -23,16 +23,22 @@ LINE_CELL = 9.4
 LINE_HEAD = 8.8
 WIDEST_LABEL = 0.30  # of the page, before a label wraps
 NARROWEST_WORDS = 74.0
+LITTLE_ROOM = 300.0  # below it a table rather begins on the next page than with one or two rows
+MOST_LINES = 50  # of one row, before it is parted
 
 
 @dataclass(frozen=True)
 class Row:
-    """A row ready to be painted: the lines of each cell, its height, and whether it is set bold."""
+    """A row ready to be painted: the lines of each cell, its height, whether it is set bold, and which row of the table it is.
+
+    A row taller than a page may bear comes as several of one ``position``.
+    """
 
     cells: tuple[Cell, ...]
     lines: tuple[tuple[str, ...], ...]
     height: float
     bold: bool
+    position: int
 
 
 def grids(parent: Element, table: Table, page_width: float) -> list[Grid]:
@@ -101,7 +107,7 @@ class Grid(Flowable):  # type: ignore[misc]
         self.head_height = max(len(lines) for lines in self.heads) * LINE_HEAD + 2 * PAD_Y
         self.grouped = any(column.group for column in self.columns)
         self.group_height = LINE_HEAD + PAD_Y if self.grouped else 0.0
-        self.rows = [self._row(row, position) for position, row in enumerate(table.rows)]
+        self.rows = [part for position, row in enumerate(table.rows) for part in self._rows(row, position)]
         self.first = 0
         self.hAlign = "LEFT"
         self.spaceAfter = 7
@@ -116,7 +122,7 @@ class Grid(Flowable):  # type: ignore[misc]
         lines = [(line, faces.SEMIBOLD) for line in simpleSplit(column.head, faces.SEMIBOLD, ink.HEAD, room)]
         return lines + [(line, faces.REGULAR) for line in simpleSplit(column.unit, faces.REGULAR, ink.HEAD, room)]
 
-    def _row(self, row: tuple[Cell, ...], position: int) -> Row:
+    def _rows(self, row: tuple[Cell, ...], position: int) -> list[Row]:
         cells = tuple(row[index] for index in self.indexes)
         bold = position >= len(self.table.rows) - self.table.totals
         face = faces.SEMIBOLD if bold else faces.REGULAR
@@ -125,7 +131,14 @@ class Grid(Flowable):  # type: ignore[misc]
             room = width - 2 * PAD_X - (MARK_WIDTH if cell.mark and not column.wraps else 0) + 0.01
             whole = "\n" not in cell.text and faces.width(cell.text, face, ink.CELL) <= room
             lines.append((cell.text,) if whole else tuple(_broken(cell.text, face, room)))
-        return Row(cells, tuple(lines), max(len(part) for part in lines) * LINE_CELL + 2 * PAD_Y, bold)
+        most = max(len(part) for part in lines)
+        pieces = []
+        for start in range(0, most, MOST_LINES):
+            piece = tuple(part[start:start + MOST_LINES] for part in lines)
+            height = max(len(part) for part in piece) * LINE_CELL + 2 * PAD_Y
+            marked = cells if start == 0 else tuple(Cell() for _ in cells)
+            pieces.append(Row(marked, piece, height, bold, position))
+        return pieces
 
     def wrap(self, available_width: float, available_height: float) -> tuple[float, float]:
         self.width = sum(self.widths)
@@ -143,14 +156,15 @@ class Grid(Flowable):  # type: ignore[misc]
         left = len(self.rows) - self.first - count
         if left and left < 2 and count > 3:
             count -= 1  # never one lonely row on the next page
-        if count < min(3, len(self.rows) - self.first):
+        if count == 0 or (count < min(3, len(self.rows) - self.first) and available_height < LITTLE_ROOM):
             return []
         upper, lower = self._piece(self.first, self.first + count), self._piece(self.first + count, len(self.rows))
         return [upper, lower]
 
     def _piece(self, first: int, last: int) -> Grid:
         piece: Grid = object.__new__(Grid)
-        piece.__dict__.update(self.__dict__)
+        # Names with an underscore are the layout's own notes about the whole.
+        piece.__dict__.update({name: value for name, value in self.__dict__.items() if not name.startswith("_")})
         piece.rows, piece.first = self.rows[:last], first
         return piece
 
@@ -176,10 +190,10 @@ class Grid(Flowable):  # type: ignore[misc]
         y = top - self.group_height - self.head_height
         canvas.setFillColor(ink.STRIPE)
         last = len(self.table.rows) - self.table.totals
-        for position, row in enumerate(self.rows[self.first:], start=self.first):
-            if position % 2 and position < last:
+        for row in self.rows[self.first:]:
+            if row.position % 2 and row.position < last:
                 canvas.rect(0, y - row.height, self.width, row.height, stroke=0, fill=1)
-            if position == last and position > self.first:
+            if row.position == last and row is not self.rows[self.first]:
                 canvas.setStrokeColor(ink.INK)
                 canvas.setLineWidth(0.5)
                 canvas.line(0, y, self.width, y)
