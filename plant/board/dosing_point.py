@@ -161,7 +161,7 @@ def _deviations(
             view.level if view.level in scene.ROLES else "quiet",
             f"/w/{code}/deviations/{view.ref}/",
         )
-        for view in deviations.between(book, rows[0].day, rows[-1].day)
+        for view in deviations.between(book, rows[0].day, max(rows[-1].day, calendar.day_of(now)))
         if view.subject in places
     ]
 

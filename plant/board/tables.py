@@ -15,7 +15,7 @@ TEMPLATE = "components/datatable.html"
 
 @dataclass(frozen=True)
 class Cell:
-    """What a column holds: the number to sort by (None: not known, sorted last), the words to show, where they open."""
+    """What a column holds: the number to sort by (None: not known, below every number), the words to show, where they open."""
 
     key: Any
     words: str
@@ -23,7 +23,7 @@ class Cell:
 
     def __lt__(self, other: Cell) -> bool:
         if self.key is None or other.key is None:
-            return other.key is None and self.key is not None
+            return self.key is None and other.key is not None
         return bool(self.key < other.key)
 
 

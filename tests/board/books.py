@@ -8,8 +8,10 @@ from __future__ import annotations
 
 import datetime as dt
 import math
+import uuid
 from zoneinfo import ZoneInfo
 
+from plant.deviations.models import Deviation, DeviationEvent
 from plant.ledger import actions as ledger
 from plant.ledger.models import Book
 from plant.readings.models import Reading
@@ -102,3 +104,19 @@ def _deliveries(at: dt.datetime, levels: dict[str, float]) -> list[Delivery]:
                 )
             )  # fmt: skip
     return found
+
+
+def raise_one(book: Book, *, now: dt.datetime, **fields) -> Deviation:
+    """A deviation with its first event, as the judging leaves it."""
+    given = {
+        "code": "entry-free-chlorine-low", "kind": "bound", "level": "action", "subject_kind": "sample_point",
+        "subject": "ENTRY", "parameter": "free_chlorine", "raised_for": now.astimezone(ZONE).date(),
+        "since": now - dt.timedelta(hours=3), "value": "0.21 mg/L", "limit": "≥ 0.30 mg/L",
+        "likely_causes": [{"cause": "weak_product", "likelihood": 0.7, "evidence": "residual low at the design dose"}],
+    } | fields  # fmt: skip
+    row = Deviation(**given)
+    event = DeviationEvent(deviation=row, kind="raised", at=given["since"], day=given["raised_for"], fields={})
+    ledger.append(
+        book=book, client_id=f"deviation-{uuid.uuid4()}", kind="judged", received={}, rows=[row, event], by=None, now=now
+    )
+    return row
