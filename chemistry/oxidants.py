@@ -55,6 +55,7 @@ DECHLORINATING: dict[str, tuple[float, float | None]] = {
     "C6H8O6": (1, 2.5),
     "H2O2": (1, None),
     "Na2S2O3": (0.5, 1.9),
+    "Na2S2O3.5H2O": (0.5, None),
 }
 ALKALINITY_PER_CL2_STANDING = constants.CACO3_MG_MEQ / constants.molar_mass("Cl2")  # 0.71 while HOCl stands
 ALKALINITY_PER_CL2_REDUCED = 2 * ALKALINITY_PER_CL2_STANDING  # 1.41 once it has reacted

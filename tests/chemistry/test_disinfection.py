@@ -256,3 +256,34 @@ def test_percent_and_logs_are_inverse(logs):
 def test_nothing_is_a_hundred_percent():
     with pytest.raises(errors.OutOfRange):
         disinfection.log_from_percent(100.0)
+
+
+def test_between_tabulated_logs_lies_the_straight_line():
+    ct = [disinfection.required_ct_mg_min_l("virus", "ozone", logs, 10.0) for logs in (2.0, 2.25, 3.0)]
+    assert ct[1] == pytest.approx(0.75 * ct[0] + 0.25 * ct[2])
+    first = disinfection.required_ct_mg_min_l("virus", "ozone", 0.5, 10.0)
+    assert first == pytest.approx(ct[0] / 4)
+
+
+@pytest.mark.parametrize("temperature", [-2.1, 45.1])
+def test_no_water_is_that_cold_or_warm(temperature):
+    with pytest.raises(errors.OutOfRange):
+        disinfection.required_ct_mg_min_l("virus", "ozone", 2.0, temperature)
+
+
+@pytest.mark.parametrize(
+    "beyond",
+    [
+        lambda: regressions.cryptosporidium_ozone_log(10.0, 30.5),
+        lambda: regressions.cryptosporidium_chlorine_dioxide_log(10.0, 0.4),
+        lambda: regressions.giardia_ozone_log(1.0, 25.5),
+        lambda: regressions.virus_ozone_log(1.0, 25.5),
+        lambda: regressions.virus_free_chlorine_log(0.0, 10.0),
+        lambda: regressions.giardia_free_chlorine_ct(3.0, 10.0, 9.2, 1.0),
+        lambda: regressions.giardia_free_chlorine_ct(3.0, 10.0, 7.0, 0.3),
+        lambda: regressions.giardia_free_chlorine_ct_power(3.1, 10.0, 7.0, 1.0),
+    ],
+)
+def test_closed_forms_keep_to_their_ranges(beyond):
+    with pytest.raises(errors.OutOfRange):
+        beyond()

@@ -386,3 +386,24 @@ def test_hardness_as_calcium_carbonate_serves_the_equilibrium_too():
     del as_caco3["calcium"]
     doses = [needs.need("target_ph", {"target_ph": 8.3}, r, product=CAUSTIC).dose_mg_l for r in (as_ion, as_caco3)]
     assert doses[0] == pytest.approx(doses[1])
+
+
+def test_usual_reading_uncertainties_stand_in_where_none_is_given():
+    """Fluoride: 0.02 mg/L and 5 % together; hardness: 1 mg/L and 3 %; a reading not listed: 5 %."""
+    fluoride = needs.need("fluoride", {"target_mg_per_L": 0.7}, {"fluoride": 0.2}, product=ACID)
+    assert fluoride.sd_mg_l == pytest.approx(math.hypot(0.02, 0.05 * 0.2) / (0.23 * 0.7911), rel=1e-4)
+    salt = needs.need("ion_exchange_salt", SETTINGS["ion_exchange_salt"], {"hardness": 250.0}, product=SALT)
+    assert salt.sd_mg_l == pytest.approx(2.0 * math.hypot(1.0, 0.03 * 250.0))
+    curve = needs.need("curve", SETTINGS["curve"], {"turbidity": 2.0}, product=POLY)
+    assert curve.sd_mg_l == pytest.approx(0.05 * 2.0 * (2 - 1) / 5)
+
+
+def test_uncertainty_of_softening_adds_up_from_its_readings():
+    """Lime rises with the calcium to remove, and through pH with the carbon dioxide."""
+    exact = dict.fromkeys(WATER, 0.0)
+    assert needs.need("lime_soda", SOFTEN, WATER, product=LIME, sds=exact).sd_mg_l == pytest.approx(0.0, abs=1e-9)
+    by_calcium = needs.need("lime_soda", SOFTEN, WATER, product=LIME, sds={**exact, "calcium_hardness": 4.0}).sd_mg_l
+    assert by_calcium == pytest.approx(4.0 / 50.043 * M("Ca(OH)2") / 2, rel=1e-3)
+    both = needs.need("lime_soda", SOFTEN, WATER, product=LIME, sds={**exact, "calcium_hardness": 4.0, "pH": 0.05})
+    by_ph = needs.need("lime_soda", SOFTEN, WATER, product=LIME, sds={**exact, "pH": 0.05}).sd_mg_l
+    assert both.sd_mg_l == pytest.approx(math.hypot(by_calcium, by_ph), rel=1e-9)
