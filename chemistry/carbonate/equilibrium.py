@@ -32,8 +32,13 @@ _SCALAR = SimpleNamespace(
     where=lambda condition, yes, no: yes if condition else no,
 )
 _ARRAY = SimpleNamespace(
-    exp=np.exp, sqrt=np.sqrt, least=np.minimum, most=np.maximum, largest=lambda values: np.max(values, initial=0.0), where=np.where
-)  # fmt: skip
+    exp=np.exp,
+    sqrt=np.sqrt,
+    least=np.minimum,
+    most=np.maximum,
+    largest=lambda values: np.max(values, initial=0.0),
+    where=np.where,
+)
 
 Solved = balances.Solved
 
