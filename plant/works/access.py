@@ -97,6 +97,16 @@ class At:
         return self.book.code
 
     @property
+    def calendar(self) -> clock.Calendar:
+        """Its reckoning of days."""
+        return self.stated.calendar(self.now)
+
+    @property
+    def zone(self) -> dt.tzinfo:
+        """The zone its pages show times in: ``{% timezone request.at.zone %}``."""
+        return self.calendar.zone
+
+    @property
     def works_name(self) -> str:
         """Its name as stated; the code before anything is stated."""
         try:

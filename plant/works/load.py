@@ -310,7 +310,7 @@ def _change(
     if block.kind == "opening_stock" and not explicit and isinstance(rest.get("timestamp"), dt.datetime):
         explicit, moment = True, rest["timestamp"]
     if block.kind == "limit":
-        _own_digits(rest)
+        own_digits(rest)
     try:
         value = {} if withdrawn else blocks.check(block.kind, subject, rest)
     except blocks.BlockError as problem:
@@ -320,7 +320,7 @@ def _change(
     return actions.Change(block.kind, subject, value, moment, withdrawn, reason), explicit
 
 
-def _own_digits(limit: dict[str, Any]) -> None:
+def own_digits(limit: dict[str, Any]) -> None:
     """A limit written 0.30 has two digits; the number alone would lose the second."""
     written = [limit[name] for name in ("low", "high", "limit") if isinstance(limit.get(name), Decimal | int)]
     if written and "decimals" not in limit:

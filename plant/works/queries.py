@@ -47,6 +47,11 @@ def stated(book: Book, *, known: int | None = None) -> Stated:
     return found
 
 
+def exists(code: str) -> bool:
+    """Whether there is a works of this code."""
+    return Book.objects.filter(code=code).exists()
+
+
 def forget() -> None:
     """Drops what is kept in memory; tests call it when a database is thrown away under the program."""
     _kept.clear()
