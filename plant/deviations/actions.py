@@ -122,7 +122,7 @@ def _write(book: Book, evidence: Evidence, reviewed: list[episodes.Reviewed], no
         client_id=uuid.uuid4().hex,
         kind="review",
         received={"days": [one.day.isoformat() for one in reviewed], "rows": len(difference.rows)},
-        rows=difference.rows,
+        rows=sorted(difference.rows, key=lambda row: isinstance(row, DeviationEvent)),  # an event names its episode
         by=by,
         now=now,
         attested="session" if by is not None else "program",

@@ -96,9 +96,11 @@ class Evidence:
         return next((point.at for point in found[index:] if point.usable), None)
 
     def stock_at(self, at: dt.datetime) -> list[VesselStock]:
-        """All vessels at a moment."""
+        """All vessels at a moment; those of the ends of all days at hand come from one reckoning."""
         if at not in self._stock:
-            self._stock[at] = dosing.stock(self.book, at, known=self.known)
+            ends = [self.day(day).until for day in clock.days(self.first, self.last)]
+            moments = [end for end in ends if end not in self._stock] if at in ends else [at]
+            self._stock |= dosing.stocks(self.book, moments, known=self.known, stated=self.stated)
         return self._stock[at]
 
     def far_back(self, site: str, parameter: str, start: dt.datetime, end: dt.datetime) -> list[Point]:

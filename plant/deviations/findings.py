@@ -78,7 +78,7 @@ class Finding:
         }
 
 
-def of_limit(limit: Limit, statement: str, day: dt.date, **rest: Any) -> Finding:
+def of_limit(limit: Limit, statement: str, day: dt.date, /, **rest: Any) -> Finding:
     """A finding with the head of its limit. ``subject``, ``subject_kind`` and ``parameter`` may be given otherwise."""
     head: dict[str, Any] = {
         "subject_kind": limit.subject_kind,

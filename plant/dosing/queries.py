@@ -2,7 +2,7 @@
 
 from plant.dosing.comparison import comparison
 from plant.dosing.period import period
-from plant.dosing.stock_book import reconciliation, stock
+from plant.dosing.stock_book import reconciliation, stock, stocks
 from plant.dosing.trail import NoSuchFigure, trail
 
-__all__ = ["NoSuchFigure", "comparison", "period", "reconciliation", "stock", "trail"]
+__all__ = ["NoSuchFigure", "comparison", "period", "reconciliation", "stock", "stocks", "trail"]

@@ -7,6 +7,7 @@ dip can still disagree, but the software can't tell a leak from a change of dose
 
 from __future__ import annotations
 
+import dataclasses
 import datetime as dt
 import math
 import statistics
@@ -30,13 +31,30 @@ BOOK_DAYS = 7
 
 def stock(book: Book, at: dt.datetime, *, known: int | None = None, stated: Stated | None = None) -> list[VesselStock]:
     """Every vessel in force at a moment, in the order stated."""
+    return stocks(book, [at], known=known, stated=stated)[at]
+
+
+def stocks(
+    book: Book, moments: list[dt.datetime], *, known: int | None = None, stated: Stated | None = None
+) -> dict[dt.datetime, list[VesselStock]]:
+    """``stock`` at several moments, from one reckoning that covers them all."""
+    if not moments:
+        return {}
     stated = stated or works.stated(book, known=known)
-    calendar = stated.calendar(at)
-    day = calendar.day_of(at)
-    days = clock.days(day - dt.timedelta(days=RECENT_DAYS + BOOK_DAYS + 1), day)
-    out = carry.reckon(book, stated, days, known=known, water=False)
-    supply = {product.code: _supply(out, product, at) for product in stated.products(at)}
-    return [_vessel(out, out.walks[vessel.code], at, supply) for vessel in stated.vessels(at) if vessel.code in out.walks]
+    calendar = stated.calendar(max(moments))
+    back = dt.timedelta(days=RECENT_DAYS + BOOK_DAYS + 1)
+    days = clock.days(calendar.day_of(min(moments)) - back, calendar.day_of(max(moments)))
+    whole = carry.reckon(book, stated, days, known=known, water=False)
+    found = {}
+    for at in moments:
+        day = calendar.day_of(at)
+        # Each moment sees its own weeks and no others, as if it had been asked alone.
+        out = dataclasses.replace(whole, days=clock.days(day - back, day))
+        supply = {product.code: _supply(out, product, at) for product in stated.products(at)}
+        found[at] = [
+            _vessel(out, out.walks[vessel.code], at, supply) for vessel in stated.vessels(at) if vessel.code in out.walks
+        ]
+    return found
 
 
 @dataclass(frozen=True)
@@ -48,7 +66,7 @@ class Supply:
 
     @property
     def days(self) -> float | None:
-        if self.usable_active_kg is None or not self.active_per_day_kg:
+        if self.usable_active_kg is None or self.active_per_day_kg is None or self.active_per_day_kg <= 0:
             return None
         return max(self.usable_active_kg, 0.0) / self.active_per_day_kg
 

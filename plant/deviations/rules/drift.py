@@ -40,7 +40,11 @@ PRIOR_SPREAD = 0.6
 """How far the prior variance may be off, as a share of it (common practice, no source)."""
 
 LEAST_DAYS = 5
-BASELINE_DAYS = 21
+BASELINE_DAYS = 30
+NEWEST_DAYS = 10
+"""The newest days are what is being tested; where the ratio stands is learnt from the days before them."""
+NEAR_SDS = 2.5
+ROUNDS = 4
 
 THRESHOLDS: tuple[tuple[float, float], ...] = (
     (45.0, 2.59),
@@ -124,27 +128,36 @@ def scatter(days: Sequence[Day], prior: float = PRIOR_SD) -> float:
 
 def centre(days: Sequence[Day], lasting_sd: float, spread: float) -> tuple[float, float]:
     """Where the ratio stands when nothing is wrong, and the standard deviation of that: between 0 (as designed)
-    and the mean of the first days, single values clipped.
+    and the mean of the days before the newest, those that lie
+    near it.
 
     ``lasting_sd`` is what strength, meter and calibration leave as a standing difference; a larger one than
     twice that is not taken as normal.
     """
-    first = list(days)[:BASELINE_DAYS]
+    first = list(days)[: max(len(days) - NEWEST_DAYS, min(len(days), BASELINE_DAYS) // 2, LEAST_DAYS)]
     if len(first) < LEAST_DAYS or lasting_sd <= 0:
         return 0.0, max(lasting_sd, 0.0)
-    around = median(day.off for day in first)
-    mean = 0.0
-    for day in first:
-        most = CLIP * math.hypot(spread, day.gauge_sd)
-        mean += (around + min(max(day.off - around, -most), most)) / len(first)
-    # The gauges' errors cancel within the span, all but the first and the last.
-    noise = spread**2 / len(first) + (median(day.gauge_sd for day in first) / len(first)) ** 2
-    weight = lasting_sd**2 / (lasting_sd**2 + noise)
-    found = weight * mean
-    return min(max(found, -2 * lasting_sd), 2 * lasting_sd), math.sqrt(weight * noise)
+    found, sd = 0.0, lasting_sd
+    for _ in range(ROUNDS):
+        # Days far from where the centre is thought to be belong to some change, and say nothing about it.
+        near = [day for day in first if abs(day.off - found) <= NEAR_SDS * math.hypot(spread, day.gauge_sd)]
+        if len(near) < LEAST_DAYS:
+            break
+        # The gauges' errors cancel within the span, all but the first and the last.
+        noise = spread**2 / len(near) + (median(day.gauge_sd for day in near) / len(near)) ** 2
+        weight = lasting_sd**2 / (lasting_sd**2 + noise)
+        mean = sum(day.off for day in near) / len(near)
+        found, sd = min(max(weight * mean, -2 * lasting_sd), 2 * lasting_sd), math.sqrt(weight * noise)
+    return found, sd
 
 
-def watch(days: Sequence[Day], *, mean_days_between_false_alarms: float = 365.0, lasting_sd: float = 0.03) -> Shift | None:
+def watch(
+    days: Sequence[Day],
+    *,
+    mean_days_between_false_alarms: float = 365.0,
+    lasting_sd: float = 0.03,
+    window: int = WINDOW,
+) -> Shift | None:
     """Runs the test on the last day, over all spans that end with it. None with fewer than five days since the
     last reset.
 
@@ -159,7 +172,7 @@ def watch(days: Sequence[Day], *, mean_days_between_false_alarms: float = 365.0,
     spread = scatter(mine)
     middle, middle_sd = centre(mine, lasting_sd, spread)
     values, per_day = innovations(mine, middle, spread)
-    statistic, length = _largest(values, [middle_sd * gain for gain in per_day])
+    statistic, length = _largest(values, [middle_sd * gain for gain in per_day], window)
     most = [CLIP * math.hypot(spread, day.gauge_sd) for day in mine]
     raw = [min(max(day.off - middle, -cap), cap) for day, cap in zip(mine, most, strict=True)]
     size = sum(raw[-length:]) / length
@@ -193,11 +206,11 @@ def innovations(days: Sequence[Day], middle: float, spread: float) -> tuple[list
     return values, per_day
 
 
-def _largest(values: Sequence[float], centre_sds: Sequence[float]) -> tuple[float, int]:
+def _largest(values: Sequence[float], centre_sds: Sequence[float], window: int) -> tuple[float, int]:
     """The largest statistic of the spans that end with the last day, and that span's length in days."""
     best, at = -1.0, 1
     total = doubt = 0.0
-    for length in range(1, min(len(values), WINDOW) + 1):
+    for length in range(1, min(len(values), window) + 1):
         total += values[-length]
         doubt += centre_sds[-length]
         statistic = abs(total) / math.sqrt(length + doubt**2)
