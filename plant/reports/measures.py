@@ -55,11 +55,17 @@ def text(value: float | None, places: int) -> str:
     return out.replace("-", "−")
 
 
+def steady(value: float | None) -> float | None:
+    """Twelve significant figures: the last bits of a float depend on the order in which days were reckoned."""
+    return None if value is None else float(f"{value:.12g}")
+
+
 def cell(value: float | None, places: int, *, key: str = "", mark: str = "", prefix: str = "") -> Cell:
     """A number as a cell; unknown is a dash, never zero."""
     if value is None:
         return Cell(UNKNOWN, None, key, mark)
-    return Cell(prefix + text(value, places), value, key, mark)
+    kept = steady(value)
+    return Cell(prefix + text(kept, places), kept, key, mark)
 
 
 def significant(value: float | None, figures: int = 3) -> str:

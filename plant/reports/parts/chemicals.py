@@ -36,8 +36,8 @@ def strips(month: Month) -> Picture:
         point = month.points_by_code.get(row.dosing_point)
         facts.append({
             "title": f"{row.dosing_point}, mg/L {daily.basis_words(row.dose_basis)}" if point else row.dosing_point,
-            "unit": "mg/L", "used": row.used_mg_l.value, "design": row.design_mg_l.value, "need": row.need_mg_l.value,
-            "used_sd": row.used_mg_l.sd, "tolerance_pct": _tolerance(month, row.dosing_point),
+            "unit": "mg/L", "used": measures.steady(row.used_mg_l.value), "design": measures.steady(row.design_mg_l.value),
+            "need": measures.steady(row.need_mg_l.value), "used_sd": measures.steady(row.used_mg_l.sd), "tolerance_pct": _tolerance(month, row.dosing_point),
             "why_unknown": "; ".join(row.remarks),
         })
     return Picture(
