@@ -10,7 +10,7 @@ import statistics
 from dataclasses import asdict, dataclass, field
 from typing import Any
 
-from chemistry import errors, needs
+from chemistry import errors, need_models, needs
 from plant.dosing.reckoning import Reckoning, consumption
 from plant.readings.queries import Point
 from plant.works.described import DosingPoint, Product
@@ -79,6 +79,7 @@ def day_need(out: Reckoning, point: DosingPoint, product: Product, day: dt.date)
         got.remarks.append(f"need: {problem}")
         return got
     got.steps = need.steps
+    got.remarks += [f"need: {caution}" for caution in need.cautions]
     if need.dose_mg_l is None:
         got.remarks.append(f"need: {need.reason}")
         return got
@@ -107,7 +108,10 @@ def value_for_day(out: Reckoning, site: str, parameter: str, day: dt.date, max_a
 
 
 def demand_of_last_days(out: Reckoning, point: DosingPoint, product: Product, day: dt.date, days: int = 7) -> float | None:
-    """Flow-weighted mean of dose used less residual over the operating days before; None when no day has all three."""
+    """Flow-weighted mean of dose used less residual over the operating days before; None when no day has all three.
+
+    Both as the residual is stated (chlorine as Cl2), whatever the product's dose basis.
+    """
     residual = RESIDUAL_OF.get(product.chemical)
     if residual is None or point.sample_point is None:
         return None
@@ -121,6 +125,7 @@ def demand_of_last_days(out: Reckoning, point: DosingPoint, product: Product, da
         start, end = out.bounds(earlier)
         found = [item.value or 0.0 for item in out.found.usable(point.sample_point, residual) if start <= item.at < end]
         if volume and drawn is not None and found:
-            mass_kg += drawn - statistics.median(found) * volume
+            dosed = need_models.dose_as_residual_mg_l(drawn, asdict(product))
+            mass_kg += dosed - statistics.median(found) * volume
             volume_ml += volume
     return mass_kg / volume_ml if volume_ml else None
