@@ -85,6 +85,11 @@ def judge_taken(*, book: Book, taken: Taken, by: Any) -> Taken:
     return replace(taken, findings=tuple(findings), judged=judged)
 
 
+def known(book: Book, client_id: str) -> bool:
+    """Whether an entry of this id is in the book already."""
+    return Entry.objects.filter(book=book, client_id=client_id).exists()
+
+
 def note_key(entry: Entry) -> str:
     """What the waiting judgement of an entry is called."""
     return f"{entry.book_id} entry {entry.seq}"

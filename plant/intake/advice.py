@@ -21,7 +21,7 @@ _LOW: dict[str, str] = {
     "weight": "Look when the next container is due, and change over before it runs empty.",
 }
 _HIGH: dict[str, str] = {
-    "free_chlorine": "Reduce or stop the dose by the works' own procedure. Look for a feeder set too high or a line that siphons.",
+    "free_chlorine": "Reduce or stop the dose by the works' own procedure. Look for a feeder set too high or a siphoning line.",
     "total_chlorine": "Reduce or stop the dose by the works' own procedure, and look for a feeder set too high.",
     "pH": "Look whether an alkali feeder is set too high or siphons. Stop it if it can't be held.",
     "fluoride": "Stop the fluoride feeder and close its valve. Read again before it is started.",

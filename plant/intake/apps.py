@@ -9,4 +9,4 @@ class IntakeConfig(AppConfig):
         from plant.intake import judging
         from plant.jobs import registry
 
-        registry.register(judging.JOB, judging.run)
+        registry.register(judging.JOB, judging.run, words="judging the days of an entry")

@@ -149,7 +149,7 @@ def _line(
     own = [point for point in usable if point.parameter == line.parameter]
     low, high = definitions.usual_range([point for point in own if not point.qualifier], known)
     usual = ""
-    if low is not None and high is not None and parameters.METER not in known.sites:
+    if low is not None and high is not None and parameters.SAMPLE_POINT in known.sites:
         usual = f"{shown(low, known.decimals)} to {shown(high, known.decimals)}"
     return Line(
         f"{line.site}:{line.parameter}",
@@ -158,7 +158,7 @@ def _line(
         line.parameter,
         known.label,
         last,
-        calendar.local(last.at) if last else None,
+        calendar.local(last.at).replace(tzinfo=None) if last else None,
         usual,
         definitions.definition(stated, now, line.site, line.parameter, own, known=known),
         taken,

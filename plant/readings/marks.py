@@ -6,12 +6,16 @@ IMPOSSIBLE = "impossible"
 LOST_POINT = "lost_decimal_point"
 PH_IS_CHLORINE = "ph_equals_chlorine"
 CONFLICT = "conflict"
+WRONG_PRODUCT = "wrong_product"
+OVERFILL = "overfill"
 
 WORDS: dict[str, str] = {
     IMPOSSIBLE: "outside what is physically possible",
     LOST_POINT: "a decimal point may be lost",
     PH_IS_CHLORINE: "pH and chlorine of the same sample have the same value",
     CONFLICT: "another value was recorded for the same sample and time",
+    WRONG_PRODUCT: "another product than the vessel holds",
+    OVERFILL: "more than the vessel had room for",
 }
 
 

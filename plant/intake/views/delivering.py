@@ -13,6 +13,7 @@ from django.shortcuts import redirect, render
 from django.views.decorators.http import require_http_methods
 
 from plant.intake import advice, cells, corrections, filling, movement_forms, receiving
+from plant.intake.views import wall
 from plant.ledger import actions as ledger
 from plant.stock import actions as stock_actions
 from plant.stock import models
@@ -129,7 +130,7 @@ def reverse(request: HttpRequest, at: access.At, kind: str, ref: str) -> HttpRes
         "kind": kind,
         "problem": problem,
         "reason": request.POST.get("reason", ""),
-        "taken_at": at.stated.calendar(at.now).local(found.taken_at),
+        "taken_at": wall.at(at.stated.calendar(at.now), found.taken_at),
         "client_id": _client_id(request),
     }
     return render(request, "intake/reverse.html", context, status=422 if problem else 200)
@@ -162,10 +163,10 @@ def _rooms(at: access.At) -> list[dict[str, Any]]:
     out = []
     for vessel in at.stated.vessels(at.now):
         space = filling.room(at.book, at.stated, vessel, at.now)
-        out.append({"vessel": vessel, "room": space, "dip_at": calendar.local(space.dip_at) if space.dip_at else None})
+        out.append({"vessel": vessel, "room": space, "dip_at": wall.at(calendar, space.dip_at) if space.dip_at else None})
     return out
 
 
 def _recent(at: access.At, rows: Any) -> list[dict[str, Any]]:
     calendar = at.stated.calendar(at.now)
-    return [{"row": row, "at": calendar.local(row.taken_at)} for row in reversed(rows)]
+    return [{"row": row, "at": wall.at(calendar, row.taken_at)} for row in reversed(rows)]

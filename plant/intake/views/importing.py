@@ -11,6 +11,7 @@ from django.shortcuts import redirect, render
 from django.views.decorators.http import require_http_methods
 
 from plant.intake import incoming, moments, numbers, records, sheets
+from plant.intake.views import wall
 from plant.ledger.models import Entry
 from plant.works import access
 
@@ -77,6 +78,6 @@ def _recent(at: access.At) -> list[dict[str, Any]]:
     calendar = at.stated.calendar(at.now)
     entries = Entry.objects.filter(book=at.book, kind="file").select_related("recorded_by").order_by("-seq")
     return [
-        {"entry": entry, "at": calendar.local(entry.recorded_at), "who": entry.recorded_by or "at the shell"}
+        {"entry": entry, "at": wall.at(calendar, entry.recorded_at), "who": entry.recorded_by or "at the shell"}
         for entry in entries.defer("payload")[:RECENT]
     ]

@@ -13,6 +13,7 @@ from django.views.decorators.http import require_http_methods
 
 from chemistry import unit_tables, units
 from plant.intake import corrections
+from plant.intake.views import wall
 from plant.ledger import actions as ledger
 from plant.readings import actions as readings
 from plant.readings import marks, models, queries
@@ -107,6 +108,7 @@ def _show(
         .order_by("seq", "line")
     }
     local = calendar.local(newest.taken_at)
+    allowed = _allowed(at, newest, request.user) if not newest.voided else set()
     context = {
         "found": found,
         "newest": newest,
@@ -117,15 +119,16 @@ def _show(
                 "row": row,
                 "settled": settled.get(row.pk),
                 "doubts": marks.in_words(row.marks),
-                "taken_at": calendar.local(row.taken_at),
-                "recorded_at": calendar.local(row.entry.recorded_at),
+                "taken_at": wall.at(calendar, row.taken_at),
+                "recorded_at": wall.at(calendar, row.entry.recorded_at),
             }
             for row in reversed(chain)
         ],
         "rivals": queries.rivals(at.book, newest) if marks.CONFLICT in newest.marks else [],
-        "allowed": _allowed(at, newest, request.user) if not newest.voided else set(),
+        "allowed": allowed,
         "doubtful": bool(newest.marks) and newest.pk not in settled,
         "problem": problem,
+        "unsent": typed if problem and typed and typed.get("act") not in allowed else None,
         "typed": typed
         or {
             "value": newest.typed,

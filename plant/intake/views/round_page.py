@@ -12,6 +12,7 @@ from django.views.decorators.http import require_http_methods
 
 from plant.deviations import queries as deviations
 from plant.intake import forms, rounds, rules, walk
+from plant.intake.views import wall
 from plant.ledger import actions as ledger
 from plant.works import access
 
@@ -89,9 +90,9 @@ def _show(
         "more_open": max(len(open_ones) - MOST_OPEN, 0),
         "note": request.POST.get("note", ""),
         "not_taken": forms.NOT_TAKEN,
-        "shift_from": calendar.local(walked.shift.start),
-        "shift_to": calendar.local(walked.shift.end),
-        "closed_at": calendar.local(walked.closed.closed_at) if walked.closed else None,
+        "shift_from": wall.at(calendar, walked.shift.start),
+        "shift_to": wall.at(calendar, walked.shift.end),
+        "closed_at": wall.at(calendar, walked.closed.closed_at) if walked.closed else None,
         "settings": {
             "works": at.code,
             "zone": str(calendar.zone),
