@@ -10,7 +10,7 @@ from dataclasses import dataclass
 from plant.reports.pdf.document import NOTICE, Cell, Document, Section, Table
 
 CSV_HEADER = ("month", "issue", "section", "table", "row", "quantity", "unit", "value", "full_value", "text", "mark", "trail")
-_FORMULA = ("=", "+", "-", "@", "\t", "\r", "\n")
+_FORMULA = ("=", "+", "-", "@")
 
 
 @dataclass(frozen=True)
@@ -71,8 +71,9 @@ def moved(before: Document, after: Document, *, leave_out: frozenset[str] = froz
 
 
 def safe(text: str) -> str:
-    """Words that a spreadsheet will not take for a formula."""
-    return f"'{text}" if text.startswith(_FORMULA) else text
+    """Words on one line that a spreadsheet will not take for a formula."""
+    flat = " ".join(text.split())
+    return f"'{flat}" if flat.startswith(_FORMULA) else flat
 
 
 def rows(document: Document) -> Iterator[list[str]]:
