@@ -5,6 +5,8 @@ Ionic strength I in mol per litre of water (1 L taken as 1 kg), 0 to 0.5; outsid
 
 import math
 
+import numpy as np
+
 from chemistry import errors, water
 from chemistry.constants import Values
 
@@ -26,24 +28,27 @@ ION_SIZE_AND_B: dict[str, tuple[float, float]] = {
 def debye_huckel_a(temperature_c: Values) -> Values:
     """Debye-Hückel A, base 10, (kg/mol)^0.5, from density and permittivity of water; 0.510 at 25 °C.
 
-    temperature_c: 0 to 100 °C; outside raises OutOfRange. Source: the Debye-Hückel limiting law, A =
-    1.82483e6 rho^0.5 (eps T)^-1.5 (key DEBYE-HUCKEL; numerical factor from memory, checked against PHREEQC's
-    own A).
+    temperature_c: 0 to 100 °C; outside raises OutOfRange. Source: the Debye-Hückel limiting law, A = 1.82483e6
+    rho^0.5 (eps T)^-1.5 (key DEBYE-HUCKEL; numerical factor from memory, checked against PHREEQC's own A).
     """
-    rho = water.density_kg_m3(temperature_c) / 1000.0
-    eps_t = water.relative_permittivity(temperature_c) * (temperature_c + 273.15)
-    return 1.82483e6 * rho**0.5 / eps_t**1.5
+    return debye_huckel_a_and_b(temperature_c)[0]
 
 
 def debye_huckel_b(temperature_c: Values) -> Values:
     """Debye-Hückel B, (kg/mol)^0.5 per angstrom; 0.329 at 25 °C.
 
-    temperature_c: 0 to 100 °C; outside raises OutOfRange.
-    Source: as :func:`debye_huckel_a`, B = 50.2916 (rho / (eps T))^0.5.
+    temperature_c: 0 to 100 °C; outside raises OutOfRange. Source: as :func:`debye_huckel_a`, B = 50.2916
+    (rho / (eps T))^0.5.
     """
-    rho = water.density_kg_m3(temperature_c) / 1000.0
+    return debye_huckel_a_and_b(temperature_c)[1]
+
+
+def debye_huckel_a_and_b(temperature_c: Values) -> tuple[Values, Values]:
+    """A and B of the two functions above, the properties of water computed once."""
     eps_t = water.relative_permittivity(temperature_c) * (temperature_c + 273.15)
-    return 50.2916 * (rho / eps_t) ** 0.5
+    ratio = water.density_kg_m3(temperature_c) / (1000.0 * eps_t)
+    root = np.sqrt(ratio) if isinstance(ratio, np.ndarray) else math.sqrt(ratio)
+    return 1.82483e6 * root / eps_t, 50.2916 * root
 
 
 def log_gamma_davies(temperature_c: Values, ionic_strength_mol_l: Values, charge: int) -> Values:

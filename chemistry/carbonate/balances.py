@@ -48,6 +48,7 @@ class Solved:
     hypochlorite: Values
     ion_product_calcite: Values  # {Ca}{CO3} / Ksp
     ion_product_brucite: Values  # {Mg}/{H}^2 / K
+    pco2: Values  # atm
     gammas: Values
 
 
@@ -232,7 +233,7 @@ def renewed(ap: Values, t: Values, st: Values) -> Values:
     return s, 0.5 * (st.monovalent + spectators) + 2.0 * (st.c + s + st.ca + st.mg)
 
 
-def solved(ap: Values, t: Values, st: Values, ionic: Values, calcite: bool, brucite: bool) -> Solved:
+def solved(ap: Values, t: Values, st: Values, ionic: Values, calcite: bool, brucite: bool, henry: Values) -> Solved:
     """:class:`Solved` from the last :class:`State`: every species by itself."""
     h, c, s, ca, mg, na = st.h, st.c, st.s, st.ca, st.mg, st.na
     hc = h * c
@@ -254,5 +255,6 @@ def solved(ap: Values, t: Values, st: Values, ionic: Values, calcite: bool, bruc
         na=na, nahco3=ap.nahco3 * hc * na, naco3=ap.naco3 * c * na, naso4=ap.naso4 * s * na,
         k=k_free, kso4=t.potassium - k_free, so4=s, hso4=st.hso4, hypochlorite=st.ocl,
         ion_product_calcite=ca * c / ap.calcite, ion_product_brucite=mg * inverse * inverse / ap.brucite,
+        pco2=st.co2 * ap.gammas[4] / henry,
         gammas=ap.gammas,
     )  # fmt: skip

@@ -65,7 +65,7 @@ def _at_h(problem: Values, h: Values) -> tuple[float, balances.Solved]:
         if settled:
             break
     miss = 0.0 if problem.alkalinity_target is None else state.alkalinity - problem.alkalinity_target
-    return miss, balances.solved(ap, t, state, ionic, problem.calcite, problem.brucite)
+    return miss, balances.solved(ap, t, state, ionic, problem.calcite, problem.brucite, problem.k.henry_co2)
 
 
 def _carbonate_at(problem: Values, ap: Values, h: Values, s: Values) -> float:

@@ -95,6 +95,7 @@ class Constants(NamedTuple):
     hocl: Values
     calcite: Values
     brucite: Values
+    henry_co2: Values
     a_natural: Values
     b: Values
 
@@ -104,8 +105,7 @@ def at(temperature_c: Values) -> "Constants":
     water)."""
     kelvin = temperature_c + 273.15
     inverse = 1.0 / kelvin
-    a_natural = activity.LN10 * activity.debye_huckel_a(temperature_c)
-    b = activity.debye_huckel_b(temperature_c)
+    a, b = activity.debye_huckel_a_and_b(temperature_c)
     values: Values
     basis: Values
     if isinstance(kelvin, np.ndarray):
@@ -114,7 +114,7 @@ def at(temperature_c: Values) -> "Constants":
     else:
         basis = (1.0, kelvin, inverse, math.log10(kelvin), inverse * inverse, kelvin * kelvin)
         values = np.exp(_NATURAL_TABLE @ basis).tolist()
-    return Constants._make((*values, a_natural, b))
+    return Constants._make((*values, activity.LN10 * a, b))
 
 
 def require_temperature(temperature_c: Values) -> None:

@@ -17,7 +17,8 @@ from chemistry import errors
 from chemistry.carbonate import apparent, balances, bracketing, constants_of_equilibrium
 from chemistry.constants import Values
 
-_TOLERANCE = 1e-7  # of the last step, relative: 4e-8 in an index
+# Size of the last step, relative; what is left after it is about a tenth.
+_TOLERANCE = 1e-7
 _TIGHT = 1e-10  # where a search runs on top
 _MOST_STEPS = 40
 _TINY = 1e-300
@@ -58,10 +59,9 @@ def solve(
     Which two of h, alkalinity and carbon stand in ``totals`` decides what is found. With ``calcite`` or
     ``brucite`` the water is brought to equilibrium with that solid (dissolving or forming it): calcium,
     magnesium, carbon and alkalinity in the result are what stays dissolved. ``co2_activity`` (mol/kg) takes
-    the place of carbon for a water in equilibrium with a gas. ``start`` is an earlier Solved to begin from; ``tight`` asks
-    for 1e-10 instead of 1e-7.
-    Raises ChemistryError where no answer exists between pH 3 and 13, OutOfRange where the ionic strength
-    passes 0.5 mol/L.
+    the place of carbon for a water in equilibrium with a gas. ``start`` is an earlier Solved to begin from; ``tight``
+    asks for a relative 1e-10 instead of 1e-7. Raises ChemistryError where no answer exists between
+    pH 3 and 13, OutOfRange where the ionic strength passes 0.5 mol/L.
     """
     activities.require_model(model)
     tolerance = _TIGHT if tight else _TOLERANCE
@@ -162,7 +162,7 @@ class Problem:
                 break
             s, ionic = new_s, new_ionic
             ap = self.apparent(xp, self.k, ionic)
-        return balances.solved(ap, t, state, ionic, self.calcite, self.brucite), step
+        return balances.solved(ap, t, state, ionic, self.calcite, self.brucite, self.k.henry_co2), step
 
     def _start(self, start: Values) -> Values:
         """First apparent constants, h, c, free sulfate and ionic strength."""

@@ -3,7 +3,7 @@
 from dataclasses import dataclass
 
 from chemistry import activity as activities
-from chemistry.carbonate import constants_of_equilibrium, equilibrium, waters
+from chemistry.carbonate import equilibrium, waters
 from chemistry.constants import Values
 
 
@@ -72,7 +72,6 @@ def of_solved(temperature_c: Values, found: Values) -> Speciation:
     si_calcite = log10(found.ion_product_calcite)
     si_brucite = log10(found.ion_product_brucite)
     gamma_h, gamma_ca, gamma_hco3, gamma_co3, gamma_co2 = found.gammas
-    log_kh = constants_of_equilibrium.log_k("henry_co2", temperature_c)
     # log Ksp of calcite less that of aragonite: the two fits differ in their first and third coefficients
     # only
     over_aragonite = -171.9065 + 171.9773 + (2839.319 - 2903.293) / kelvin
@@ -106,6 +105,6 @@ def of_solved(temperature_c: Values, found: Values) -> Speciation:
         si_calcite=si_calcite,
         si_aragonite=si_calcite + over_aragonite,
         si_brucite=si_brucite,
-        log_pco2=log10(found.co2 * gamma_co2) - log_kh,
+        log_pco2=log10(found.pco2),
         solved=found,
     )

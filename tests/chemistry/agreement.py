@@ -233,5 +233,38 @@ def _din():
         yield _row(label, sources, against, "pH at balance", "", balance - table["ph_at_balance_published"], 0.02, memory)
 
 
+# Row of chemistry/tables/checks.csv -> which comparisons it sums up: start of the function, of the quantity, of the
+# figures it was held against.
+CHECKS = {
+    "water_density": ("water.density", "", ""),
+    "water_pkw": ("water.pkw", "", "CRC"),
+    "water_permittivity": ("water.relative_permittivity", "", ""),
+    "debye_huckel": ("activity.debye_huckel_a", "", ""),
+    "carbonate_constants": ("constants_of_equilibrium", "log K", ""),
+    "carbonate_pkw": ("constants_of_equilibrium", "pKw", "IAPWS"),
+    "saturation_index": ("carbonate.speciate", "si_calcite", SAME),
+    "saturation_index_davies": ("carbonate.speciate", "si_calcite", OTHER),
+    "carbon_dioxide": ("carbonate.speciate", "co2_mmol_l", SAME),
+    "ph_after_dose": ("carbonate.ph_after_dose", "pH, alkalis", SAME),
+    "ph_after_dose_davies": ('carbonate.ph_after_dose(activity="davies")', "pH, all but", OTHER),
+    "ph_after_coagulant": ("carbonate.ph_after_dose", "pH, alum", SAME),
+    "precipitation_potential": ("carbonate.precipitation_potential", "CCPP", SAME),
+    "softening_ph": ("softening.soften", "pH", SAME),
+    "softening_calcium": ("softening.soften", "calcium", SAME),
+    "softening_calcium_davies": ("softening.soften", "calcium", OTHER),
+    "din_38404_10": ("carbonate.at_temperature", "saturation index", "DIN"),
+}
+
+
+def worst_of(key, found):
+    """Largest difference among the comparisons that one row of the table of checks sums up."""
+    function, quantity, against = CHECKS[key]
+    return max(
+        row.worst
+        for row in found
+        if row.function.startswith(function) and row.quantity.startswith(quantity) and row.checked_against.startswith(against)
+    )
+
+
 if __name__ == "__main__":
     json.dump([asdict(row) | {"within": row.within} for row in rows()], sys.stdout, indent=1, ensure_ascii=False)

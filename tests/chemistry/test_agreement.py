@@ -2,7 +2,7 @@
 
 import pytest
 
-from chemistry import sources
+from chemistry import checks, sources
 from tests.chemistry import agreement
 
 ROWS = agreement.rows()
@@ -21,3 +21,11 @@ def test_what_rests_on_memory_says_so():
     for row in ROWS:
         if any("from memory" in sources.citation(key) for key in row.sources):
             assert row.from_memory, row
+
+
+@pytest.mark.parametrize("key", agreement.CHECKS)
+def test_the_table_of_checks_states_what_is_measured(key):
+    (stated,) = [check for check in checks.checks() if check.key == key]
+    measured = agreement.worst_of(key, ROWS)
+    assert measured <= stated.worst_difference * 1.005
+    assert measured > 0.7 * stated.worst_difference, "the table is worse than the truth: write the better figure"
