@@ -60,7 +60,6 @@ class State:
     alkalinity_v: Values
     c: Values
     ca: Values
-    ca_denominator: Values
     calcium: Values
     carbon: Values
     carbon_u: Values
@@ -74,7 +73,6 @@ class State:
     ionic_v: Values
     magnesium: Values
     mg: Values
-    mg_denominator: Values
     monovalent: Values
     na: Values
     ocl: Values
@@ -134,7 +132,7 @@ def evaluate(ap: Values, t: Values, h: Values, c: Values, s: Values, calcite: bo
             carbon_u = ca * f_h - carbon * slope
             alkalinity_u = ca * du - alkalinity * slope
             ca_u = -ca * slope
-    st.ca, st.calcium, st.ca_denominator = ca, calcium, denominator
+    st.ca, st.calcium = ca, calcium
 
     f_h = ap.mghco3 * hc
     f_c = ap.mgco3 * c
@@ -175,7 +173,7 @@ def evaluate(ap: Values, t: Values, h: Values, c: Values, s: Values, calcite: bo
             carbon_u = carbon_u + mg * f_h - own_carbon * slope
             alkalinity_u = alkalinity_u + mg * du - own_alkalinity * slope
             mg_u = -mg * slope
-    st.mg, st.magnesium, st.mg_denominator = mg, magnesium, denominator
+    st.mg, st.magnesium = mg, magnesium
 
     f_h = ap.nahco3 * hc
     f_c = ap.naco3 * c

@@ -73,7 +73,8 @@ def dose_for_target_ph(water: waters.Water, chemical: str, target_ph: Values, *,
     bicarbonate stops near 8.3). With arrays, one water out of reach raises for all. Source: equilibrium (see
     the equilibrium module).
     """
-    errors.require("target pH", target_ph, "", 3.0, 13.0, "model, pH 3 to 13")
+    target_ph = elementwise.number(target_ph)
+    errors.require("target pH", target_ph, "", 3.0, 13.0, _DOSE_LIMIT)
     return dose_between(water, chemical, target_ph, activity)[0]
 
 
@@ -102,18 +103,21 @@ def dose_between(water: waters.Water, chemical: str, target_ph: Values, activity
         raise errors.ChemistryError(f"no dose of {chemical} up to {HIGHEST_DOSE_MG_L:g} mg/L brings this water to pH {ph:g}")
     f_high = where(there, -f_low - 1e-12, f_high)
     moles = low
+    settled = 2e-12 + 5e-10 * abs(before.alkalinity)  # eq/L
     for turn in range(60):
         weight = f_low / (f_low - f_high)
         if turn % 4 == 3:  # a plain halving now and then keeps the bracket shrinking
             weight = weight * 0.0 + 0.5
         moles = where(there, 0.0, low + (high - low) * weight)
         miss = at(moles)
-        if np.max(where(there, 0.0, abs(miss))) < 1e-12:
+        if np.all(where(there, 0.0, abs(miss)) <= settled):
             break
         same = (miss > 0.0) == (f_low > 0.0)
         # Illinois: halve the kept end's value so that it can't stay for ever
         f_high, f_low = where(same, f_high * 0.5, miss), where(same, miss, f_low * 0.5)
         low, high = where(same, moles, low), where(same, high, moles)
+    else:
+        raise errors.ChemistryError(f"the dose of {chemical} for this pH could not be settled")
     return moles * (effect.g_mol * 1e3), _added(before, effect, moles)
 
 
@@ -155,10 +159,9 @@ def dosed_totals(water: waters.Water, doses_mg_l: Mapping[str, Values], activity
     after = carbon_totals(water, activity)
     for chemical, dose_mg_l in doses_mg_l.items():
         effect = chemicals.effect(chemical)
-        errors.require(f"dose of {chemical}", dose_mg_l, "mg/L", 0.0, HIGHEST_DOSE_MG_L, _DOSE_LIMIT)
-        if not isinstance(dose_mg_l, np.ndarray):
-            dose_mg_l = float(dose_mg_l)
-        after = _added(after, effect, dose_mg_l * (1e-3 / effect.g_mol))
+        dose = elementwise.number(dose_mg_l)
+        errors.require(f"dose of {chemical}", dose, "mg/L", 0.0, HIGHEST_DOSE_MG_L, _DOSE_LIMIT)
+        after = _added(after, effect, dose * (1e-3 / effect.g_mol))
     return after
 
 

@@ -30,7 +30,7 @@ class Heated:
 def after_heating(
     water: waters.Water, temperature_c: Values, *, co2_escapes: bool = True, activity: str = activities.DAVIES
 ) -> Heated:
-    """:class:`Heated` for a Water brought to ``temperature_c`` (its own up to 80 °C; above raises
+    """:class:`Heated` for a Water brought to ``temperature_c`` (0 to 80 °C; outside raises
     OutOfRange).
 
     co2_escapes: True lets the carbon dioxide set free go until the water is in balance with 1,000 ppm in the
