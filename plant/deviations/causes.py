@@ -132,12 +132,13 @@ def _of_response(known: Clues, size: float) -> list[Cause]:
     name = known.response_name.replace("_", " ")
     steady = known.used is None or abs(known.used) < 0.05
     out = []
-    fresh = known.delivered_days_before is not None and known.delivered_days_before <= 14
+    # A change within a few days after a delivery speaks of the lot; the test may date it a day early.
+    fresh = known.delivered_days_before is not None and -1 <= known.delivered_days_before <= 4
     if size < 0:
         weak = 0.5 + (0.25 if fresh else 0.0)
         words = f"{name} fell while the dose stayed" if steady else f"{name} fell"
         if fresh:
-            words += f"; a lot came in {known.delivered_days_before} days ago"
+            words += "; it began when a new lot came in"
         out.append(Cause("weak_product", weak, words))
         life = known.product.shelf_life_days
         if known.lot_days is not None and life and known.lot_days > life:

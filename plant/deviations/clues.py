@@ -81,7 +81,7 @@ def gather(day: Day, code: str, since: dt.date) -> Clues | None:
     sds = response_sds(day, point.sample_point, name, since) if point.sample_point and name else None
     newest = [row for row in rows if row.used_mg_l.value is not None][-2:]
     after = [row for row in rows if row.day >= since]
-    lot = _lot(day, point)
+    lot = _lot(day, point, since)
     return Clues(
         point=point,
         product=product,
@@ -208,8 +208,10 @@ def _still(day: Day, vessel: str) -> int:
     return 0
 
 
-def _lot(day: Day, point: DosingPoint) -> tuple[int | None, int | None, float | None]:
-    """Days since the newest delivery into the point's vessels, the age of its lot, and how weak the last test found it."""
+def _lot(day: Day, point: DosingPoint, since: dt.date) -> tuple[int | None, int | None, float | None]:
+    """Days from the newest delivery into the point's vessels to ``since``, the age of its lot today, and how weak the last
+    test found it.
+    """
     found = [item for item in day.of.deliveries if item.vessel in point.vessels and item.taken_at < day.until]
     tests = [item for code in point.vessels for item in day.points(code, "strength", days_back=20) if item.usable]
     if not found:
@@ -220,7 +222,7 @@ def _lot(day: Day, point: DosingPoint) -> tuple[int | None, int | None, float | 
     short = None
     if tests and tests[-1].value and newest.strength and tests[-1].at > newest.taken_at:
         short = 100 * (newest.strength - tests[-1].value) / newest.strength
-    return (day.day - on).days, (day.day - made).days, short
+    return (since - on).days, (day.day - made).days, short
 
 
 def _unknown(row: DayDose, code: str, since: dt.date, until: dt.date) -> bool:

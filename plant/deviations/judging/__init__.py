@@ -8,10 +8,17 @@ from dataclasses import replace
 from plant.deviations import causes, defaults
 from plant.deviations.evidence import Day
 from plant.deviations.findings import Finding
-from plant.deviations.judging import contact, doses, doubts, late, stocks, values
+from plant.deviations.judging import answers, contact, doses, doubts, late, stocks, values
 from plant.works.described import Limit
 
 Rule = Callable[[Day, Limit, str], Iterator[Finding]]
+
+
+def drift(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
+    """A drift of the dose; without one, of the reading that answers to it. One cause is not raised twice."""
+    found = list(doses.drift_of_dose(day, limit, ref))
+    yield from found or answers.drift_of_answer(day, limit, ref)
+
 
 RULES: dict[str, Rule] = {
     "bound": values.bound,
@@ -25,7 +32,7 @@ RULES: dict[str, Rule] = {
     "dose_vs_design": doses.dose_vs,
     "dose_vs_need": doses.dose_vs,
     "certified_maximum": doses.certified_maximum,
-    "drift": doses.drift_of_dose,
+    "drift": drift,
     "stock_loss": stocks.stock_loss,
     "days_of_supply": stocks.days_of_supply,
     "holding": stocks.holding,
@@ -60,7 +67,7 @@ def judge_day(day: Day, only: Limit | None = None) -> list[Finding]:
         found += RULES[limit.kind](day, limit, ref)
     if only is None:
         found += doubts.suspicious(day)
-    unique = _once(found)
+    unique = _one_for_one_cause(_once(found))
     return [replace(item, causes=causes.likely(item, day, unique)) for item in unique]
 
 
@@ -76,3 +83,13 @@ def _once(found: list[Finding]) -> list[Finding]:
         sentence = first.sentence if other.sentence == first.sentence else f"{first.sentence}; {other.sentence}"
         out[item.key] = replace(first, sentence=sentence, refs=(*first.refs, *other.refs), until=other.until)
     return list(out.values())
+
+
+def _one_for_one_cause(found: list[Finding]) -> list[Finding]:
+    """A drift of a dose says all that the default limit against design says: then that one is left out."""
+    drifting = {item.subject for item in found if item.kind == "drift" and not item.parameter}
+    return [
+        item
+        for item in found
+        if not (item.kind == "dose_vs_design" and defaults.is_default(item.code) and item.subject in drifting)
+    ]

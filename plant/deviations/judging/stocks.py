@@ -44,6 +44,9 @@ def stock_loss(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
     for item in _vessels(day, limit):
         if item.dip_at is None or item.dip_at <= day.start:
             continue
+        if defaults.is_default(limit.code) and any(NO_WITNESS in remark for remark in item.remarks):
+            # Then the book stands on the doses before, and can say nothing that the drift of the dose does not say better.
+            continue
         loss = stocks.loss(item.book_kg, item.dip_kg, item.difference_sd_kg, sigmas=sigmas)
         if loss is None:
             continue

@@ -19,14 +19,14 @@ MOST_DAYS = 36
 NEWEST_DAYS = 8
 WINDOW = 6
 LASTING_SD = 2.0
+HEDGE = 1.15
+"""A scatter learnt from four weeks may be too small; it is taken a little larger (common practice, no source)."""
 MOST_MEMORY = 0.8
 
 
 def freed(values: Sequence[float], doses: Sequence[float | None], design: float, share: float) -> list[float]:
     """Values less what the dose's own movement explains: ``share`` (0 to 1) of how far it was from design, mg/L each."""
-    return [
-        value - (share * (dose - design) if dose is not None else 0.0) for value, dose in zip(values, doses, strict=True)
-    ]
+    return [value - (share * (dose - design) if dose is not None else 0.0) for value, dose in zip(values, doses, strict=True)]
 
 
 def memory(values: Sequence[float]) -> float:
@@ -60,7 +60,7 @@ def watch(values: Sequence[float], *, mean_days_between_false_alarms: float) -> 
     lasts = memory(usual)
     scaled = [(value - middle) / scale for value in values]
     fresh = [second - lasts * first for first, second in pairwise(scaled)]
-    spread = max(_spread(fresh[:-NEWEST_DAYS]), 1e-9)
+    spread = max(HEDGE * _spread(fresh[:-NEWEST_DAYS]), 1e-9)
     days = [drift.Day(value / spread * drift.PRIOR_SD) for value in fresh]
     shift = drift.watch(
         days,
