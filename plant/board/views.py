@@ -17,6 +17,7 @@ from plant.board import exports, forms, guide, pictures, queries, rows, shown, s
 from plant.dosing import queries as dosing
 from plant.readings import queries as readings
 from plant.scene import svg
+from plant.supply import queries as supply
 from plant.works import access, parameters
 from plant.works.stated import NotStated
 
@@ -67,11 +68,12 @@ def stock(request: HttpRequest, at: access.At) -> HttpResponse:
     if not stated.vessels(now):
         return render(request, "board/stock.html", {"at": at, "store": None})
     calendar = stated.calendar(now)
-    found = dosing.stock(at.book, now, stated=stated)
+    products = supply.supply(at.book, now, stated=stated)
+    found = supply.by_vessel(products)
     wanted = request.GET.get("export", "")
     if wanted in exports.FORMATS:
         return exports.answer(wanted, f"{at.code}-stock", rows.STOCK_HEADER, rows.stock_export(found))
-    page = store.store(stated, found, now=now, calendar=calendar)
+    page = store.store(stated, products, found, now=now, calendar=calendar)
     table = tables.StockTable(
         rows.stock(found, works=stated.works(now), names=queries.names(stated, now), now=now, calendar=calendar)
     )

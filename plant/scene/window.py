@@ -14,11 +14,24 @@ HEAD_H = 28.0
 
 @dataclass(frozen=True)
 class Window:
-    """One product: first and last day on which to order; either may be unknown."""
+    """One product: first and last day on which to order, both None where it cannot be worked out.
+
+    ``late``: no load ordered today comes in time. No ``first``, or one after ``last``: no whole load fits in time.
+    """
 
     name: str
     first: dt.date | None
     last: dt.date | None
+    late: bool = False
+
+    @property
+    def known(self) -> bool:
+        return self.late or self.first is not None or self.last is not None
+
+    @property
+    def fits(self) -> bool:
+        """Whether there is a day on which a whole load can be ordered that fits and comes in time."""
+        return not self.late and self.first is not None and self.last is not None and self.first <= self.last
 
 
 def order_window(*, title: str, rows: Sequence[Window], today: dt.date, days: int = 42, width: float = 760) -> scene.Scene:
@@ -45,16 +58,16 @@ def order_window(*, title: str, rows: Sequence[Window], today: dt.date, days: in
         y = HEAD_H + index * row_h + 6 + (22 if narrow else 0)
         shapes.append(scene.Text(0, y - 6 if narrow else y + 15, row.name))
         said.append(f"{row.name}: {words_of(row, today)}")
-        if row.last is None:
+        if not row.known:
             shapes.append(scene.Text(x0 + 8, y + 15, "not known", "quiet"))
-        elif row.last < today:
+        elif row.late:
             shapes += scene.mark("action", x0 + 8, y + 10)
-            shapes.append(scene.Text(x0 + 22, y + 15, "reserve is reached before a load can come", "action"))
-        elif row.first is not None and row.first > row.last:
-            shapes += scene.mark("alert", x(row.last), y + 10)
-            shapes.append(scene.Text(min(x(row.last) + 12, x1 - 150), y + 15, "no whole load fits in time", "alert"))
+            shapes.append(scene.Text(x0 + 22, y + 15, "order at once: the reserve will be touched", "action"))
+        elif row.first is None or row.last is None or row.first > row.last:
+            shapes += scene.mark("alert", x0 + 8, y + 10)
+            shapes.append(scene.Text(x0 + 22, y + 15, "no whole load fits in time", "alert"))
         else:
-            left = x(row.first or today)
+            left = x(row.first)
             right = max(x(row.last + dt.timedelta(days=1)), left + 6)
             shapes.append(scene.Rect(left, y, right - left, 20, fill="band", stroke="water", width=1.5, radius=3))
     return scene.Scene(width, height, title, "; ".join(said) + ".", tuple(shapes))
@@ -62,13 +75,13 @@ def order_window(*, title: str, rows: Sequence[Window], today: dt.date, days: in
 
 def words_of(row: Window, today: dt.date) -> str:
     """The window in words."""
-    if row.last is None:
+    if not row.known:
         return "not known"
-    if row.last < today:
-        return f"should have been ordered by {_day(row.last)}"
-    if row.first is not None and row.first > row.last:
-        return f"no window: a load first fits when ordered on {_day(row.first)}, and {_day(row.last)} is the last day"
-    if row.first is None or row.first <= today:
+    if row.late:
+        return "order at once: the reserve will be touched"
+    if row.first is None or row.last is None or row.first > row.last:
+        return "no whole load fits in time"
+    if row.first <= today:
         return f"from today to {_day(row.last)}"
     return f"from {_day(row.first)} to {_day(row.last)}"
 

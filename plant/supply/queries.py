@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import datetime as dt
-from collections.abc import Callable
+from collections.abc import Callable, Iterable
 from dataclasses import dataclass, replace
 
 from chemistry import units
@@ -67,8 +67,13 @@ def supply(book: Book, at: dt.datetime, *, known: int | None = None, stated: Sta
 
 def stock(book: Book, at: dt.datetime, *, known: int | None = None, stated: Stated | None = None) -> list[VesselStock]:
     """Every vessel, its days of supply from the forecast and its product's order window filled in."""
+    return by_vessel(supply(book, at, known=known, stated=stated))
+
+
+def by_vessel(products: Iterable[ProductSupply]) -> list[VesselStock]:
+    """The vessels of some products, what is known of the product filled in."""
     out = []
-    for product in supply(book, at, known=known, stated=stated):
+    for product in products:
         for row in product.vessels:
             remarks = [*row.remarks, *product.remarks]
             if product.window is not None:

@@ -125,7 +125,7 @@ class TestFewQuestions:
         [
             ("/", 8),
             ("/w/TST/", 14),
-            ("/w/TST/stock/", 14),
+            ("/w/TST/stock/", 18),
             ("/w/TST/dosing/HYPO-POST/", 16),
             ("/w/TST/readings/", 8),
             (f"/w/TST/trail/?key=used:HYPO-POST:{DAY}", 20),

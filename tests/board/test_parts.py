@@ -15,6 +15,7 @@ from plant.board import dosing_point, exports, missing, pictures, shown, store
 from plant.dosing.figures import DayDose, Figure, VesselStock
 from plant.readings.queries import Point
 from plant.scene import column, window
+from plant.supply import queries as supply
 from plant.works import described, parameters
 from plant.works import queries as works
 from tests import people
@@ -166,11 +167,11 @@ class TestAnswers:
 TODAY = dt.date(2026, 3, 10)
 
 
-def window_of(name: str, first: int | None, last: int | None) -> window.Window:
+def window_of(name: str, first: int | None, last: int | None, *, late: bool = False) -> window.Window:
     def on(days: int | None) -> dt.date | None:
         return None if days is None else TODAY + dt.timedelta(days=days)
 
-    return window.Window(name, on(first), on(last))
+    return window.Window(name, on(first), on(last), late)
 
 
 class TestStore:
@@ -179,8 +180,10 @@ class TestStore:
         [
             ([window_of("Lime", -3, 5)], "May be ordered now: Lime (until 15 March)."),
             ([window_of("Lime", -3, 0)], "Order today, it is the last day: Lime."),
-            ([window_of("Lime", -9, -2)], "Order at once, the reserve will be touched: Lime."),
+            ([window_of("Lime", 0, None, late=True)], "Order at once, the reserve will be touched: Lime."),
             ([window_of("Lime", 9, 4)], "No whole load fits before the reserve is reached: Lime. Ask for a part load."),
+            ([window_of("Lime", None, 4)], "No whole load fits before the reserve is reached: Lime. Ask for a part load."),
+            ([], "No product has a lead time and a load stated, so no order window is worked out."),
             ([window_of("Lime", 4, 9)], "Nothing to order today. Next is Lime, from 14 March."),
             ([window_of("Lime", None, None)], "No order window can be worked out for Lime."),
         ],
@@ -191,8 +194,8 @@ class TestStore:
     def test_the_picture_says_the_same(self):
         picture = window.order_window(title="When to order", rows=[window_of("Lime", 4, 9)], today=TODAY)
         assert picture.summary == "Lime: from 14 March to 19 March."
-        late = window.order_window(title="When to order", rows=[window_of("Lime", -9, -2)], today=TODAY)
-        assert "should have been ordered by 8 March" in late.summary
+        late = window.order_window(title="When to order", rows=[window_of("Lime", 0, None, late=True)], today=TODAY)
+        assert "order at once" in late.summary
 
     def test_heights_of_a_cone_are_not_shares_of_its_volume(self, monkeypatch):
         seen: dict[str, float] = {}
@@ -208,9 +211,12 @@ class TestStore:
         def one(vessel: str) -> VesselStock:
             return VesselStock(vessel, "P", NOW, None, 1000.0, NOW, None, None, 250.0, 200.0, 25.0, "weight_pct", 20.0)
 
-        # 200 kg of usable active for 20 days are 10 kg a day, and 4 kg of product hold 1 kg of active.
-        assert store.per_day_kg(one("A"), [one("A")]) == pytest.approx(40.0)
-        assert store.per_day_kg(one("A"), [one("A"), one("B")]) is None
+        def product(*vessels: VesselStock) -> supply.ProductSupply:
+            return supply.ProductSupply("P", "Lime", 200.0, 1000.0, 10.0, 20.0, None, None, None, None, vessels)
+
+        # 10 kg active a day, and 4 kg of product hold 1 kg of active.
+        assert store.per_day_kg(product(one("A"))) == pytest.approx(40.0)
+        assert store.per_day_kg(product(one("A"), one("B"))) is None
 
 
 class TestFiles:
