@@ -12,8 +12,8 @@ from plant.demo.effects import Effects
 from plant.demo.plan import Block, Feed, Incident
 
 _FILL_AT = 8
-_SHARE_OF_DESIGN = 0.6
-_RESTATE_BEYOND = 0.06
+_SHARE_OF_DESIGN = 0.8
+_RESTATE_BEYOND = 0.03
 _LATEST_DELIVERY, _EARLIEST_DELIVERY = 13, 9
 
 
@@ -186,7 +186,7 @@ def _doses(feed: Feed, grid: Grid, wanted: np.ndarray) -> tuple[list[tuple[int, 
     designs = [(0, design)]
     desired = np.zeros(grid.days)
     for day in range(grid.days):
-        if day > 20 and grid.date(day).day == 1:
+        if day > 13 and grid.date(day).day in (1, 15):
             recent = float(wanted[day - 14 : day].mean())
             if abs(recent / design - 1) > _RESTATE_BEYOND:
                 design = _tidy(recent)
