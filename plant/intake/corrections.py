@@ -13,7 +13,6 @@ from plant.ledger.models import Book, Row
 from plant.readings import actions as readings
 from plant.readings import models
 from plant.stock import actions as stock
-from plant.stock import models as stock_models
 from plant.works import actions as works_actions
 from plant.works.stated import Stated
 
@@ -113,13 +112,13 @@ def settle(
 def reverse(
     *,
     book: Book,
-    movement: stock_models.Delivery | stock_models.Transfer,
+    movement: Any,
     reason: str,
     by: Any,
     now: dt.datetime,
     client_id: str,
 ) -> actions.Taken:
-    """Takes a delivery or transfer out of the reckoning. Raises stock.AlreadyReversed, stock.ReasonMissing."""
+    """Takes ``movement``, a delivery or transfer, out of the reckoning. Raises stock.AlreadyReversed, stock.ReasonMissing."""
     received = {"reverses": movement.ref, "reason": reason}
     return _change(book, client_id, "reversal", received, lambda: stock.reversal(old=movement, reason=reason), by, now)
 

@@ -55,7 +55,7 @@ def definition(
         if vessel is None or vessel.on_scale:
             offered = {unit: scale for unit, scale in offered.items() if unit not in ("%", "L")}
         else:
-            own |= {"%": _plain("0", "100"), "L": _plain("0", _text(1.01 * vessels.full_volume_l(vessel.form)))}
+            own |= {"%": _plain("0", "100"), "L": _plain("0", _text(1.01 * vessels.full_volume_l(vessel.form)) or "0")}
             offered |= {"%": _scale("%"), "L": _scale("L")}
     return {
         "commas": not us_units,

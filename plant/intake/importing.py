@@ -66,7 +66,9 @@ class ImportCommand(commands.WorksCommand):
         if counted.findings:
             self.stdout.write(f"  {counted.findings} deviations raised")
         if not counted.judged:
-            self.stderr.write("the days could not be judged now; that is noted, and done by the next sweep")
+            self.stderr.write(
+                f"{len(counted.days)} days are not judged yet; that is noted, and the worker does it (manage.py work)"
+            )
         self._tell_refused(counted)
 
     def bring(

@@ -16,6 +16,7 @@ from plant.ledger.models import Book, Row
 logger = logging.getLogger(__name__)
 
 JOB = "judge"
+MOST_DAYS = 31
 _HEAD_START = dt.timedelta(minutes=1)
 """The request that wrote the entry judges it itself; the worker only steps in when that has not come to an end."""
 
@@ -42,16 +43,24 @@ def _moments(row: Row) -> list[dt.datetime]:
 
 
 def note(*, book: Book, key: str, days: Sequence[dt.date], now: dt.datetime) -> None:
-    """Notes, in the transaction that writes the entry, that its days are to be judged."""
-    if days:
+    """Notes, in the transaction that writes the entry, that its days are to be judged; at most a month of days a note."""
+    for name, some in zip(_names(key, days), _months(days), strict=True):
         jobs.enqueue(
             kind=JOB,
-            key=key,
+            key=name,
             now=now,
             book=book,
             run_after=now + _HEAD_START,
-            arguments={"book": book.code, "days": [day.isoformat() for day in days]},
+            arguments={"book": book.code, "days": [day.isoformat() for day in some]},
         )
+
+
+def _months(days: Sequence[dt.date]) -> list[Sequence[dt.date]]:
+    return [days[first : first + MOST_DAYS] for first in range(0, len(days), MOST_DAYS)]
+
+
+def _names(key: str, days: Sequence[dt.date]) -> list[str]:
+    return [f"{key}, {place + 1}" if place else key for place in range(len(_months(days)))]
 
 
 def at_once(*, book: Book, key: str, days: Sequence[dt.date], by: Any, now: dt.datetime) -> tuple[list[Any], bool]:
@@ -64,14 +73,14 @@ def at_once(*, book: Book, key: str, days: Sequence[dt.date], by: Any, now: dt.d
         logger.exception("judging failed; the note stays", extra={"book": book.code, "key": key})
         return [], False
     if key:
-        settle([key], now=now)
+        settle(key, days, now=now)
     return list(found), True
 
 
-def settle(keys: Iterable[str], *, now: dt.datetime) -> None:
-    """What these notes asked for has been done."""
-    for key in keys:
-        jobs.settle(kind=JOB, key=key, now=now)
+def settle(key: str, days: Sequence[dt.date], *, now: dt.datetime) -> None:
+    """What the notes of an entry asked for has been done."""
+    for name in _names(key, days):
+        jobs.settle(kind=JOB, key=name, now=now)
 
 
 def run(*, now: dt.datetime, book: str, days: Sequence[str], **extra: Any) -> None:

@@ -151,7 +151,7 @@ def _doubt_pair(new: models.Reading, other: models.Reading | Recorded) -> None:
         return
     for one in (new, other):
         # A row that is in the book keeps its marks; the one that comes now carries the doubt for both.
-        if isinstance(one, models.Reading) and one.pk is None and (one.parameter == "pH" or Decimal(text) > 5):
+        if isinstance(one, models.Reading) and one._state.adding and (one.parameter == "pH" or Decimal(text) > 5):
             _mark(one)
     if isinstance(other, Recorded):
         _mark(new)

@@ -133,7 +133,7 @@ def _write(
                 judge=False,
             )
             counted.days.update(done.days)
-            counted.keys.append(actions.note_key(done.entry))
+            counted.notes[actions.note_key(done.entry)] = done.days
     return counted
 
 
@@ -200,7 +200,7 @@ def _recall(
     times: list[dt.datetime],
     there: dict[tuple[object, ...], list[tuple[tuple[object, ...], bool]]],
 ) -> None:
-    rows = list(kind.model._base_manager.filter(book=book, taken_at__in=times, voided=False))
+    rows: list[Any] = list(kind.model._base_manager.filter(book=book, taken_at__in=times, voided=False))
     gone = set(kind.model._base_manager.filter(supersedes__in=[row.pk for row in rows]).values_list("supersedes_id", flat=True))
     for row in rows:
         there[kind.key_of(row)].append((_values(kind, row), row.pk not in gone))

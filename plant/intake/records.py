@@ -27,7 +27,8 @@ from plant.works import queries as works
 REQUIRED = ("site", "timestamp", "parameter", "value", "unit")
 OPTIONAL = ("qualifier", "method", "by", "note", "sample", "statistic", "replaces")
 ENTRY_LINES = 10_000
-_DAYS_AT_ONCE = 31
+MOST_DAYS_JUDGED = 800
+"""A file that touches more days than this is left to the worker."""
 
 Progress = Callable[[str], None]
 
@@ -96,14 +97,19 @@ def bring_in(
 def judge_days(*, book: Book, counted: tally.Tally, by: Any, now: dt.datetime, progress: Progress) -> None:
     """Judges all days a file touched, a month at a time; what fails stays noted for the next sweep."""
     days = sorted(counted.days)
-    for first in range(0, len(days), _DAYS_AT_ONCE):
+    if len(days) > MOST_DAYS_JUDGED:
+        counted.judged = False
+        return
+    for first in range(0, len(days), judging.MOST_DAYS):
         if first:
             progress(f"judged {first} of {len(days)} days")
-        found, judged = judging.at_once(book=book, key="", days=days[first : first + _DAYS_AT_ONCE], by=by, now=now)
+        some = days[first : first + judging.MOST_DAYS]
+        found, judged = judging.at_once(book=book, key="", days=some, by=by, now=now)
         counted.findings += len(found)
         counted.judged = counted.judged and judged
     if counted.judged:
-        judging.settle(counted.keys, now=now)
+        for key, noted in counted.notes.items():
+            judging.settle(key, noted, now=now)
 
 
 def _write(
@@ -180,7 +186,7 @@ def _append(
         judge=False,
     )
     reader.tally.days.update(done.days)
-    reader.tally.keys.append(actions.note_key(done.entry))
+    reader.tally.notes[actions.note_key(done.entry)] = done.days
 
 
 class _Reader:

@@ -7,7 +7,7 @@ import hashlib
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from pathlib import Path
-from typing import BinaryIO
+from typing import Any, BinaryIO
 
 MOST_BYTES = 1_000_000_000
 _SEPARATORS = (",", ";", "\t")
@@ -82,7 +82,7 @@ class Sheet:
             raise NotASheet(f"{self.name}, line 1: the header names {', '.join(twice)} twice")
         return names, tuple(name for name in names if name and name not in known.values())
 
-    def _reader(self, file: BinaryIO) -> csv._reader:
+    def _reader(self, file: BinaryIO) -> Any:
         lines = (self._decoded(raw, number) for number, raw in enumerate(file, start=1))
         return csv.reader(lines, delimiter=self._separator, strict=True)
 
@@ -95,7 +95,7 @@ class Sheet:
                 f"taken past this line: save it again as “CSV UTF-8”"
             ) from None
 
-    def _cells(self, reader: csv._reader, skip: int = 0) -> Iterator[list[str]]:
+    def _cells(self, reader: Any, skip: int = 0) -> Iterator[list[str]]:
         try:
             for number, cells in enumerate(reader):
                 if number >= skip:

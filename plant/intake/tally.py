@@ -33,7 +33,7 @@ class Tally:
     sites_added: list[str] = field(default_factory=list)
     ignored_columns: tuple[str, ...] = ()
     days: set[dt.date] = field(default_factory=set)
-    keys: list[str] = field(default_factory=list)
+    notes: dict[str, tuple[dt.date, ...]] = field(default_factory=dict)
     findings: int = 0
     judged: bool = True
 

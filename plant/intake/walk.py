@@ -9,7 +9,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from plant import clock
-from plant.intake import definitions, models, shifts
+from plant.intake import definitions, ground, models, shifts
 from plant.ledger.models import Book
 from plant.readings import queries as readings
 from plant.readings.queries import Point
@@ -93,8 +93,7 @@ def walk(book: Book, stated: Stated, now: dt.datetime) -> Round:
 
 def names(stated: Stated, at: dt.datetime) -> dict[str, str]:
     """What each site is called."""
-    sites = (*stated.sample_points(at), *stated.meters(at), *stated.vessels(at), *stated.dosing_points(at))
-    return {site.code: site.name or site.code for site in sites}
+    return {code: str(value.get("name") or code) for kind in ground.SITE_KINDS for code, value in stated.in_force(kind, at)}
 
 
 def hand_over(book: Book, span: shifts.Span) -> models.HandOver | None:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import datetime as dt
+import re
 from collections import defaultdict
 from collections.abc import Iterable
 from dataclasses import dataclass
@@ -10,6 +11,8 @@ from decimal import Decimal
 
 from plant.ledger.models import Book, InForceQuerySet
 from plant.readings import models
+
+_REF = re.compile(r"([0-9]{1,15})\.([0-9]{1,8})")
 
 
 @dataclass(frozen=True)
@@ -155,10 +158,16 @@ def series(
 def latest(book: Book, site: str, parameter: str, *, before: dt.datetime, known: int | None = None) -> Point | None:
     """The last reading taken before a moment, with a number, usable."""
     rows = models.Reading.objects.filter(book=book, site=site, parameter=parameter, taken_at__lt=before, value__isnull=False)
-    newest = list(rows.as_known(known).order_by("-taken_at", "-seq", "-line").values_list("pk", flat=True)[:8])
-    found = _built(book, models.Reading.objects.filter(pk__in=newest), known)
-    usable = [point for point in found if point.usable]
-    return usable[-1] if usable else None
+    newest = rows.as_known(known).order_by("-taken_at", "-seq", "-line").values_list("pk", flat=True)
+    first, size = 0, 8
+    # Doubtful and set-aside values may stand in front of it; there are seldom many.
+    while batch := list(newest[first : first + size]):
+        found = _built(book, models.Reading.objects.filter(pk__in=batch), known)
+        usable = [point for point in found if point.usable]
+        if usable:
+            return usable[-1]
+        first, size = first + size, 200
+    return None
 
 
 def first_taken_at(book: Book, *, known: int | None = None) -> dt.datetime | None:
@@ -171,10 +180,11 @@ def first_taken_at(book: Book, *, known: int | None = None) -> dt.datetime | Non
 
 def one(book: Book, ref: str) -> models.Reading | None:
     """The reading called ``seq.line``."""
-    seq, _, line = ref.partition(".")
-    if not (seq.isdigit() and line.isdigit()):
+    named = _REF.fullmatch(ref)
+    if named is None:
         return None
-    return models.Reading.objects.filter(book=book, seq=int(seq), line=int(line)).select_related("entry__recorded_by").first()
+    rows = models.Reading.objects.filter(book=book, seq=int(named[1]), line=int(named[2]))
+    return rows.select_related("entry__recorded_by").first()
 
 
 def history(reading: models.Reading) -> list[models.Reading]:

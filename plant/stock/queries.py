@@ -3,12 +3,33 @@
 from __future__ import annotations
 
 import datetime as dt
+import re
 from collections.abc import Iterable
 
 from django.db.models import Q
 
 from plant.ledger.models import Book
 from plant.stock import models
+
+_REF = re.compile(r"([0-9]{1,15})\.([0-9]{1,8})")
+
+
+def delivery(book: Book, ref: str) -> models.Delivery | None:
+    """The delivery called ``seq.line``, reversed or not."""
+    named = _REF.fullmatch(ref)
+    if named is None:
+        return None
+    rows = models.Delivery.objects.filter(book=book, seq=int(named[1]), line=int(named[2]))
+    return rows.select_related("entry__recorded_by").first()
+
+
+def transfer(book: Book, ref: str) -> models.Transfer | None:
+    """The transfer called ``seq.line``, reversed or not."""
+    named = _REF.fullmatch(ref)
+    if named is None:
+        return None
+    rows = models.Transfer.objects.filter(book=book, seq=int(named[1]), line=int(named[2]))
+    return rows.select_related("entry__recorded_by").first()
 
 
 def deliveries(

@@ -16,7 +16,6 @@ from plant.intake import advice, cells, corrections, filling, movement_forms, re
 from plant.intake.views import wall
 from plant.ledger import actions as ledger
 from plant.stock import actions as stock_actions
-from plant.stock import models
 from plant.stock import queries as stock
 from plant.works import access
 
@@ -98,13 +97,8 @@ def transfer(request: HttpRequest, at: access.At) -> HttpResponse:
 @require_http_methods(["GET", "HEAD", "POST"])
 def reverse(request: HttpRequest, at: access.At, kind: str, ref: str) -> HttpResponse:
     """Takes a delivery or transfer out of the reckoning; operators their own, supervisors any."""
-    model: Any = {"delivery": models.Delivery, "transfer": models.Transfer}.get(kind)
-    seq, _, line = ref.partition(".")
-    found = (
-        model.objects.filter(book=at.book, seq=int(seq), line=int(line)).select_related("entry__recorded_by").first()
-        if model is not None and seq.isdigit() and line.isdigit()
-        else None
-    )
+    find = {"delivery": stock.delivery, "transfer": stock.transfer}.get(kind)
+    found: Any = find(at.book, ref) if find is not None else None
     if found is None:
         raise Http404("There is no such delivery or transfer.")
     if not at.member.may("record.correct") and found.entry.recorded_by_id != request.user.pk:

@@ -11,6 +11,7 @@ from django.views.decorators.http import require_http_methods
 from plant.intake import rounds
 from plant.ledger import actions as ledger
 from plant.readings import marks
+from plant.readings.models import Reading
 from plant.works import access
 
 MOST_BYTES = 1_000_000
@@ -40,7 +41,7 @@ def put(request: HttpRequest, at: access.At, client_id: str) -> JsonResponse:
 
 def answer(sent: rounds.Sent) -> dict[str, Any]:
     """What the tablet is told of an entry that is in the book."""
-    doubts = {row.ref: marks.in_words(row.marks) for row in sent.taken.rows if getattr(row, "marks", None)}
+    doubts = {row.ref: marks.in_words(row.marks) for row in sent.taken.rows if isinstance(row, Reading) and row.marks}
     return {
         "seq": sent.taken.entry.seq,
         "recorded_at": sent.taken.entry.recorded_at.isoformat(),

@@ -5,105 +5,144 @@ from django.db import migrations, models
 
 
 class Migration(migrations.Migration):
-
     initial = True
 
     dependencies = [
-        ('ledger', '0001_initial'),
+        ("ledger", "0001_initial"),
     ]
 
     operations = [
         migrations.CreateModel(
-            name='Reading',
+            name="Reading",
             fields=[
-                ('id', models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name='ID')),
-                ('seq', models.PositiveBigIntegerField()),
-                ('line', models.PositiveIntegerField()),
-                ('reason', models.TextField(blank=True)),
-                ('voided', models.BooleanField(default=False)),
-                ('site', models.CharField(max_length=40)),
-                ('parameter', models.CharField(max_length=40)),
-                ('taken_at', models.DateTimeField()),
-                ('date_only', models.BooleanField(default=False)),
-                ('state', models.CharField(choices=[('taken', 'Taken'), ('not_taken', 'Not Taken'), ('words', 'Words')], default='taken', max_length=9)),
-                ('typed', models.CharField(blank=True, max_length=80)),
-                ('typed_unit', models.CharField(blank=True, max_length=24)),
-                ('value', models.FloatField(null=True)),
-                ('value_text', models.CharField(blank=True, max_length=40)),
-                ('unit', models.CharField(blank=True, max_length=24)),
-                ('qualifier', models.CharField(blank=True, max_length=1)),
-                ('statistic', models.CharField(default='reading', max_length=8)),
-                ('sample', models.CharField(blank=True, max_length=40)),
-                ('method', models.CharField(blank=True, max_length=60)),
-                ('by_name', models.CharField(blank=True, max_length=80)),
-                ('note', models.TextField(blank=True)),
-                ('marks', models.JSONField(default=list)),
-                ('book', models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name='+', to='ledger.book')),
-                ('entry', models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name='+', to='ledger.entry')),
-                ('supersedes', models.OneToOneField(null=True, on_delete=django.db.models.deletion.PROTECT, related_name='superseded_by', to='readings.reading')),
+                ("id", models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name="ID")),
+                ("seq", models.PositiveBigIntegerField()),
+                ("line", models.PositiveIntegerField()),
+                ("reason", models.TextField(blank=True)),
+                ("voided", models.BooleanField(default=False)),
+                ("site", models.CharField(max_length=40)),
+                ("parameter", models.CharField(max_length=40)),
+                ("taken_at", models.DateTimeField()),
+                ("date_only", models.BooleanField(default=False)),
+                (
+                    "state",
+                    models.CharField(
+                        choices=[("taken", "Taken"), ("not_taken", "Not Taken"), ("words", "Words")],
+                        default="taken",
+                        max_length=9,
+                    ),
+                ),
+                ("typed", models.CharField(blank=True, max_length=80)),
+                ("typed_unit", models.CharField(blank=True, max_length=24)),
+                ("value", models.FloatField(null=True)),
+                ("value_text", models.CharField(blank=True, max_length=40)),
+                ("unit", models.CharField(blank=True, max_length=24)),
+                ("qualifier", models.CharField(blank=True, max_length=1)),
+                ("statistic", models.CharField(default="reading", max_length=8)),
+                ("sample", models.CharField(blank=True, max_length=40)),
+                ("method", models.CharField(blank=True, max_length=60)),
+                ("by_name", models.CharField(blank=True, max_length=80)),
+                ("note", models.TextField(blank=True)),
+                ("marks", models.JSONField(default=list)),
+                ("book", models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name="+", to="ledger.book")),
+                ("entry", models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name="+", to="ledger.entry")),
+                (
+                    "supersedes",
+                    models.OneToOneField(
+                        null=True,
+                        on_delete=django.db.models.deletion.PROTECT,
+                        related_name="superseded_by",
+                        to="readings.reading",
+                    ),
+                ),
             ],
             options={
-                'abstract': False,
-                'base_manager_name': 'objects',
+                "abstract": False,
+                "base_manager_name": "objects",
             },
         ),
         migrations.CreateModel(
-            name='Settlement',
+            name="Settlement",
             fields=[
-                ('id', models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name='ID')),
-                ('seq', models.PositiveBigIntegerField()),
-                ('line', models.PositiveIntegerField()),
-                ('reason', models.TextField(blank=True)),
-                ('voided', models.BooleanField(default=False)),
-                ('decision', models.CharField(choices=[('stands', 'Stands'), ('set_aside', 'Set Aside')], max_length=9)),
-                ('book', models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name='+', to='ledger.book')),
-                ('entry', models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name='+', to='ledger.entry')),
-                ('reading', models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name='settlements', to='readings.reading')),
-                ('supersedes', models.OneToOneField(null=True, on_delete=django.db.models.deletion.PROTECT, related_name='superseded_by', to='readings.settlement')),
+                ("id", models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name="ID")),
+                ("seq", models.PositiveBigIntegerField()),
+                ("line", models.PositiveIntegerField()),
+                ("reason", models.TextField(blank=True)),
+                ("voided", models.BooleanField(default=False)),
+                ("decision", models.CharField(choices=[("stands", "Stands"), ("set_aside", "Set Aside")], max_length=9)),
+                ("book", models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name="+", to="ledger.book")),
+                ("entry", models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name="+", to="ledger.entry")),
+                (
+                    "reading",
+                    models.ForeignKey(
+                        on_delete=django.db.models.deletion.PROTECT, related_name="settlements", to="readings.reading"
+                    ),
+                ),
+                (
+                    "supersedes",
+                    models.OneToOneField(
+                        null=True,
+                        on_delete=django.db.models.deletion.PROTECT,
+                        related_name="superseded_by",
+                        to="readings.settlement",
+                    ),
+                ),
             ],
             options={
-                'abstract': False,
-                'base_manager_name': 'objects',
+                "abstract": False,
+                "base_manager_name": "objects",
             },
         ),
         migrations.AddIndex(
-            model_name='reading',
-            index=models.Index(fields=['book', 'site', 'parameter', 'taken_at'], name='reading_series'),
+            model_name="reading",
+            index=models.Index(fields=["book", "site", "parameter", "taken_at"], name="reading_series"),
         ),
         migrations.AddIndex(
-            model_name='reading',
-            index=models.Index(fields=['book', 'taken_at'], name='reading_by_time'),
+            model_name="reading",
+            index=models.Index(fields=["book", "taken_at"], name="reading_by_time"),
         ),
         migrations.AddIndex(
-            model_name='reading',
-            index=models.Index(fields=['book', 'seq'], name='reading_by_seq'),
+            model_name="reading",
+            index=models.Index(fields=["book", "seq"], name="reading_by_seq"),
         ),
         migrations.AddConstraint(
-            model_name='reading',
-            constraint=models.UniqueConstraint(fields=('entry', 'line'), name='reading_line_once'),
+            model_name="reading",
+            constraint=models.UniqueConstraint(fields=("entry", "line"), name="reading_line_once"),
         ),
         migrations.AddConstraint(
-            model_name='reading',
-            constraint=models.CheckConstraint(condition=models.Q(('supersedes__isnull', True), models.Q(('reason', ''), _negated=True), _connector='OR'), name='reading_correction_has_reason'),
+            model_name="reading",
+            constraint=models.CheckConstraint(
+                condition=models.Q(("supersedes__isnull", True), models.Q(("reason", ""), _negated=True), _connector="OR"),
+                name="reading_correction_has_reason",
+            ),
         ),
         migrations.AddConstraint(
-            model_name='reading',
-            constraint=models.CheckConstraint(condition=models.Q(('voided', False), ('supersedes__isnull', False), _connector='OR'), name='reading_void_of_something'),
+            model_name="reading",
+            constraint=models.CheckConstraint(
+                condition=models.Q(("voided", False), ("supersedes__isnull", False), _connector="OR"),
+                name="reading_void_of_something",
+            ),
         ),
         migrations.AddIndex(
-            model_name='settlement',
-            index=models.Index(fields=['book', 'seq'], name='settlement_by_seq'),
+            model_name="settlement",
+            index=models.Index(fields=["book", "seq"], name="settlement_by_seq"),
         ),
         migrations.AddConstraint(
-            model_name='settlement',
-            constraint=models.UniqueConstraint(fields=('entry', 'line'), name='settlement_line_once'),
+            model_name="settlement",
+            constraint=models.UniqueConstraint(fields=("entry", "line"), name="settlement_line_once"),
         ),
         migrations.AddConstraint(
-            model_name='settlement',
-            constraint=models.CheckConstraint(condition=models.Q(('supersedes__isnull', True), models.Q(('reason', ''), _negated=True), _connector='OR'), name='settlement_correction_has_reason'),
+            model_name="settlement",
+            constraint=models.CheckConstraint(
+                condition=models.Q(("supersedes__isnull", True), models.Q(("reason", ""), _negated=True), _connector="OR"),
+                name="settlement_correction_has_reason",
+            ),
         ),
         migrations.AddConstraint(
-            model_name='settlement',
-            constraint=models.CheckConstraint(condition=models.Q(('voided', False), ('supersedes__isnull', False), _connector='OR'), name='settlement_void_of_something'),
+            model_name="settlement",
+            constraint=models.CheckConstraint(
+                condition=models.Q(("voided", False), ("supersedes__isnull", False), _connector="OR"),
+                name="settlement_void_of_something",
+            ),
         ),
     ]
