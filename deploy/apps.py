@@ -1,3 +1,5 @@
+import datetime as dt
+
 from django.apps import AppConfig
 from django.conf import settings
 
@@ -10,7 +12,10 @@ class DeployConfig(AppConfig):
 
     def ready(self) -> None:
         from deploy import waking
+        from deploy.backups import nightly
         from plant.jobs import registry
 
+        registry.register(nightly.KIND, nightly.back_up, limit=registry.LONGEST_LIMIT, words="Back-up")
+        registry.regularly("nightly back-up", every=dt.timedelta(minutes=30), ask=nightly.ask)
         if settings.REDIS_URL:
             registry.wake_by(waking.Waker().wake)

@@ -44,6 +44,8 @@ class Installation:
     @property
     def environment(self) -> dict[str, str]:
         return {
+            # Of one's own records a back-up is made each night, unless another folder is named.
+            **({"WEIRBOOK_BACKUPS": str(self.data / "backups")} if self.data.name == "own" else {}),
             **os.environ,
             "WEIRBOOK_DATA": str(self.data),
             "DJANGO_SETTINGS_MODULE": "deploy.settings.development",

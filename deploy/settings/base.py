@@ -15,6 +15,10 @@ BASE_DIR = Path(__file__).resolve().parents[2]
 WEIRBOOK_DATA = Path(env.str("WEIRBOOK_DATA", default=str(BASE_DIR / ".weirbook"))).resolve()
 WEIRBOOK_FILES = WEIRBOOK_DATA / "files"
 
+# A folder for nightly back-ups, best on another disk; without one none is made by itself. The key seals them.
+WEIRBOOK_BACKUPS = env.str("WEIRBOOK_BACKUPS", default="")
+WEIRBOOK_BACKUP_KEY_FILE = env.str("WEIRBOOK_BACKUP_KEY_FILE", default="")
+
 # Whether `--now` may set the clock of a command, so that a history can be replayed. Never on a server.
 WEIRBOOK_ALLOW_NOW = env.bool("WEIRBOOK_ALLOW_NOW", default=False)
 

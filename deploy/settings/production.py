@@ -11,6 +11,7 @@ SECRET_KEY_FALLBACKS = env.list("WEIRBOOK_OLD_SECRET_KEYS", default=[])
 ALLOWED_HOSTS = env.list("WEIRBOOK_HOSTS")
 CSRF_TRUSTED_ORIGINS = [f"https://{host}" for host in ALLOWED_HOSTS]
 WEIRBOOK_ALLOW_NOW = False
+WEIRBOOK_BACKUPS = env.str("WEIRBOOK_BACKUPS", default=str(WEIRBOOK_DATA / "backups"))
 
 # The proxy of deploy/services sets this header itself and drops one sent by a browser.
 SECURE_PROXY_SSL_HEADER = ("HTTP_X_FORWARDED_PROTO", "https")

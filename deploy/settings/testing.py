@@ -11,6 +11,7 @@ from .base import DATABASES, SQLITE_OPTIONS, env
 WEIRBOOK_DATA = Path(env.str("WEIRBOOK_TEST_DATA", default="") or tempfile.mkdtemp(prefix="weirbook-test-"))
 WEIRBOOK_FILES = WEIRBOOK_DATA / "files"
 WEIRBOOK_ALLOW_NOW = True
+WEIRBOOK_BACKUPS = WEIRBOOK_BACKUP_KEY_FILE = ""
 
 SECRET_KEY = secrets.token_urlsafe(50)
 ALLOWED_HOSTS = ["testserver", "localhost", "127.0.0.1"]

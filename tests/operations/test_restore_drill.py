@@ -1,0 +1,182 @@
+"""A back-up taken while eight writers write, restored on both databases; and a row altered behind the program's back."""
+
+import contextlib
+import json
+import shutil
+import sqlite3
+import subprocess
+import sys
+import time
+import uuid
+from pathlib import Path
+
+import psycopg
+import pytest
+
+from tests import services
+from tests.operations.site import Site
+
+pytestmark = [pytest.mark.service, pytest.mark.slow]
+SECONDS = 6.0
+WRITERS = 8
+
+
+def database(postgres: services.Postgres) -> str:
+    """A new, empty database on the server."""
+    name = f"drill_{uuid.uuid4().hex[:12]}"
+    with psycopg.connect(postgres.url.replace("postgres://", "postgresql://", 1), autocommit=True) as link:
+        link.execute(f"CREATE DATABASE {name}")
+    return postgres.url.rpartition("/")[0] + f"/{name}"
+
+
+@pytest.fixture(scope="module", params=["sqlite", "postgres"])
+def saved(request, tmp_path_factory):
+    """A site, the back-up made while it was written to (sealed), its key, and what the writers said."""
+    url = database(request.getfixturevalue("postgres")) if request.param == "postgres" else ""
+    site = Site(database_url=url)
+    folder = tmp_path_factory.mktemp("back-ups")
+    key = folder / "key"
+    site.manage("back_up", "--make-key", str(key))
+    documents = site.folder / "data" / "files" / "photos"
+    documents.mkdir(parents=True)
+    (documents / "seal.jpg").write_bytes(b"a photograph of a seal" * 1000)
+    running = [
+        site.start("-m", "tests.operations.writing", str(number), str(SECONDS), name=f"writer-{number}")
+        for number in range(WRITERS)
+    ]
+    began = time.monotonic()
+    count = "Entry.objects.count()"
+    while site.ask(count) < 20:
+        assert time.monotonic() - began < SECONDS
+    before = site.ask(count)
+    made = site.manage("back_up", "--to", str(folder / "kept"), "--key-file", str(key))
+    assert "restored into a scratch database, every record checked" in made.stdout
+    after = site.ask(count)
+    for process in running:
+        process.wait(SECONDS + 60)
+    said = [json.loads(site.log(f"writer-{number}").splitlines()[-1]) for number in range(WRITERS)]
+    yield site, Path(made.stdout.splitlines()[-1]), key, said, (before, after), request.param
+    site.close()
+
+
+def restored_counts(out: str) -> int:
+    line = next(line for line in out.splitlines() if line.startswith("TST: "))
+    return int(line.split()[1])
+
+
+def test_writers_are_never_told_that_the_database_is_locked(saved, figure):
+    _, _, _, said, _, vendor = saved
+    seconds = sorted(second for one in said for second in one["seconds"])
+    errors = [error for one in said for error in one["errors"]]
+    figure(
+        f"{WRITERS} processes writing to {vendor} for {SECONDS:.0f} s, a back-up in their midst: {len(seconds)} entries tried,"
+        f" {len(errors)} refused; p50 {seconds[len(seconds) // 2] * 1000:.0f} ms,"
+        f" p95 {seconds[int(len(seconds) * 0.95)] * 1000:.0f} ms, longest {seconds[-1] * 1000:.0f} ms"
+    )
+    assert errors == []
+
+
+def test_nothing_written_is_lost_or_doubled(saved):
+    site, _, _, said, _, _ = saved
+    written = [ident for one in said for ident in one["written"]]
+    found = site.ask("list(Entry.objects.filter(kind='round').values_list('client_id', flat=True))")
+    assert sorted(found) == sorted(written)
+    assert site.ask("Reading.objects.count()") == 5 * len(written)
+
+
+@pytest.mark.parametrize("into", ["same", "postgres"])
+def test_it_is_restored_on_either_database(saved, into, postgres, tmp_path, figure):
+    site, path, key, _, (before, after), vendor = saved
+    if into == "same":
+        into = vendor
+    elif into == vendor:
+        return  # PostgreSQL into SQLite is what the trial of the back-up itself has just done
+    target = database(postgres) if into == "postgres" else str(tmp_path / "restored.sqlite3")
+    began = time.monotonic()
+    words = ("restore", str(path), "--into", target, "--key-file", str(key), "--files", str(tmp_path / "files"))
+    out = site.manage(*words).stdout
+    took_s = time.monotonic() - began
+    assert "all as written" in out
+    entries = restored_counts(out)
+    # All that was there before the back-up began, nothing of what came after it ended.
+    assert before <= entries <= after
+    assert (tmp_path / "files" / "photos" / "seal.jpg").read_bytes() == b"a photograph of a seal" * 1000
+    figure(f"back-up of {vendor} under load restored into {into} and checked: {entries} entries in {took_s:.1f} s")
+    # It goes on from there: numbering, chain and locks.
+    was = site.environment.get("DATABASE_URL")
+    site.environment["DATABASE_URL"] = target if into == "postgres" else f"sqlite:///{target}"
+    try:
+        after_it = subprocess.run(
+            [sys.executable, "-m", "tests.operations.writing", "0", "0.2"],
+            cwd=Path(__file__).parents[2], env=site.environment, capture_output=True, text=True, check=True,
+        )
+        assert json.loads(after_it.stdout)["written"]
+        assert "All as written" in site.manage("verify_records").stdout
+    finally:
+        if was is None:
+            del site.environment["DATABASE_URL"]
+        else:
+            site.environment["DATABASE_URL"] = was
+
+
+def test_a_sealed_back_up_opens_with_its_key_only(saved, tmp_path):
+    site, path, _, _, _, _ = saved
+    other = tmp_path / "other-key"
+    site.manage("back_up", "--make-key", str(other))
+    answer = site.manage("restore", str(path), "--into", str(tmp_path / "x.sqlite3"), "--key-file", str(other), check=False)
+    assert answer.returncode == 1
+    assert "the key does not fit" in answer.stderr
+    assert b"free_chlorine" not in path.read_bytes()
+
+
+def test_one_altered_row_is_found(saved, tmp_path):
+    site, path, key, _, _, _ = saved
+    copy = tmp_path / "copy.sqlite3"
+    site.manage("restore", str(path), "--into", str(copy), "--key-file", str(key))
+    environment = {**site.environment, "DATABASE_URL": f"sqlite:///{copy}"}
+    with contextlib.closing(sqlite3.connect(copy)) as link:
+        pk, seq, line = link.execute("SELECT id, seq, line FROM readings_reading ORDER BY id LIMIT 1 OFFSET 17").fetchone()
+        with pytest.raises(sqlite3.IntegrityError, match="append-only"):
+            link.execute("UPDATE readings_reading SET value = 9.9 WHERE id = ?", [pk])
+        lock = link.execute("SELECT sql FROM sqlite_master WHERE name = 'lock_readings_reading_update'").fetchone()[0]
+        link.execute("DROP TRIGGER lock_readings_reading_update")
+        link.execute("UPDATE readings_reading SET value = 9.9 WHERE id = ?", [pk])
+        link.execute(lock)
+        link.commit()
+    answer = subprocess.run(
+        [sys.executable, "manage.py", "verify_records"],
+        cwd=Path(__file__).parents[2], env=environment, capture_output=True, text=True, check=False,
+    )
+    assert answer.returncode == 1
+    found = answer.stdout.splitlines()
+    assert found == [f"TST entry {seq}: line {line} (readings.reading) differs in value"]
+
+
+def test_a_full_disk_of_back_ups_is_said_in_words(saved, tmp_path):
+    site, _, _, _, _, _ = saved
+    (tmp_path / "file").touch()
+    answer = site.manage("back_up", "--to", str(tmp_path / "file" / "x"), check=False)
+    assert answer.returncode == 1
+    assert "There is no new back-up" in answer.stderr
+
+
+def test_a_back_up_is_never_restored_over_something(saved, tmp_path):
+    site, path, key, _, _, _ = saved
+    there = tmp_path / "there.sqlite3"
+    shutil.copy(path, there)
+    answer = site.manage("restore", str(path), "--into", str(there), "--key-file", str(key), check=False)
+    assert answer.returncode == 1
+    assert "exists already" in answer.stderr
+
+
+def test_the_nightly_job_makes_one_and_tries_it(saved, tmp_path):
+    site, _, _, _, _, _ = saved
+    site.environment["WEIRBOOK_BACKUPS"] = str(tmp_path / "kept")
+    site.python(
+        "import django; django.setup()\n"
+        "from plant import clock; from plant.jobs import actions; from deploy.backups import nightly\n"
+        "actions.enqueue(kind=nightly.KIND, key='tonight', now=clock.now())"
+    )
+    site.manage("work", "--once")
+    assert site.ask("list(Job.objects.filter(kind='back_up', key='tonight').values_list('state', 'error'))") == [["done", ""]]
+    assert [path.name.partition("-")[0] for path in (tmp_path / "kept").glob("*.tar.gz")][:1] == ["weirbook"]
