@@ -63,7 +63,7 @@ name = "{code} tank, 1 mm is 1 L"
 product = "{code}"
 shape = "vertical_cylinder"
 diameter_m = 1.1283792
-height_m = 12.0
+height_m = 7.0
 level_sd_m = 0.005
 [[dosing_point]]
 code = "{code}-P"
@@ -78,7 +78,7 @@ dosing_point = "{code}-P"
 dose_mg_per_L = 10.0
 effective_from = 2026-01-01T07:00:00
 """
-"""10 mg/L NaOH in 12 ML a day is 120 kg, 480 kg of product, 384 L, 0.384 m of level."""
+"""10 mg/L NaOH in 12 ML a day is 120 kg, 480 kg of product, 384 L, 0.384 m of level: more than 5 % of the tank."""
 
 LITRES_A_DAY = 384.0
 M3_A_DAY = 12000.0
@@ -99,7 +99,7 @@ def local(text: str) -> dt.datetime:
 
 def reading(site: str, parameter: str, at: dt.datetime, value: str, unit: str = "", **rest: object) -> Reading:
     """An unsaved reading, already in its canonical unit."""
-    qualifier = value[0] if value[:1] in "<>" else ""
+    qualifier = value[0] if value[:1] in ("<", ">") else ""
     number = value.lstrip("<>")
     fields: dict[str, object] = {"typed": value, "typed_unit": unit, "unit": unit}
     if number:
@@ -112,9 +112,7 @@ def reading(site: str, parameter: str, at: dt.datetime, value: str, unit: str = 
 def enter(book: Book, *rows: object, now: dt.datetime, by: object = None) -> list[Reading]:
     """Appends rows as one entry."""
     number = next(_ids)
-    ledger.append(
-        book=book, client_id=f"test-{number}", kind="round", received={"n": number}, rows=list(rows), by=by, now=now
-    )
+    ledger.append(book=book, client_id=f"test-{number}", kind="round", received={"n": number}, rows=list(rows), by=by, now=now)
     return list(rows)  # type: ignore[arg-type]
 
 
@@ -142,11 +140,11 @@ def history(
     """Levels and totaliser at 07:00 and 19:00 from the start of ``first`` to the end of the last day, in one entry.
 
     ``factor`` is how much of the design dose is really fed that day; ``level`` what the gauge shows of the true level;
-    ``metered`` what the meter counts of the true water. A tank below 2 m is filled by 8 m in the middle of the day.
+    ``metered`` what the meter counts of the true water. A tank below 1.5 m is filled by 4.8 m in the middle of the day.
     """
     rng = random.Random(seed)
     rows: list[object] = []
-    true = dict.fromkeys(codes, 10.0)
+    true = dict.fromkeys(codes, 6.5)
     total = 1000.0
     for n in range(days + 1):
         day = first + dt.timedelta(days=n)
@@ -163,15 +161,15 @@ def history(
             for code in codes:
                 fed = factor(code, day) * math.exp(rng.gauss(0, noise)) if noise else factor(code, day)
                 true[code] -= fed * LITRES_A_DAY / 2 / 1000
-                if half == 0 and true[code] < 2.0:
-                    true[code] += 8.0
+                if half == 0 and true[code] < 1.5:
+                    true[code] += 4.8
                     if booked(code, day):
                         rows.append(
                             Delivery(
                                 taken_at=at + dt.timedelta(hours=5),
                                 vessel=f"{code}-TANK",
                                 product=code,
-                                quantity=10000.0,
+                                quantity=6000.0,
                                 unit="kg",
                                 quantity_sd_pct=0.1,
                                 lot=f"L{n}",

@@ -14,6 +14,8 @@ from plant.dosing.figures import DayDose
 from plant.works.described import DosingPoint, Limit
 from plant.works.stated import NotStated
 
+LEAST_RATIO, MOST_RATIO = -0.05, 3.0
+"""Outside of these a day is no drift but a reading or a delivery to be settled; the limit against design speaks of it."""
 STATED_SDS = 2.0
 DEFAULT_SDS = 3.5
 RARER = 2.0
@@ -152,7 +154,7 @@ def series_of(day: Day, point: DosingPoint, rows: Sequence[DayDose]) -> tuple[li
     kept, series = [], []
     for row in rows:
         design, used = row.design_mg_l.value, row.used_mg_l.value
-        if used is None or not design or not row.expected:
+        if used is None or not design or not row.expected or not LEAST_RATIO <= used / design <= MOST_RATIO:
             continue
         lasting = used * math.hypot(meter, strength)
         gauge = math.sqrt(max((row.used_mg_l.sd or 0.0) ** 2 - lasting**2, 0.0)) / design
