@@ -6,11 +6,11 @@ import datetime as dt
 
 from plant import clock
 from plant.demo.make import Demo
+from plant.demo.simulate import Simulated
 from plant.deviations import actions as deviations
 from plant.deviations import queries
 from plant.deviations.queries import DeviationView
 
-REVIEWED_DAYS = 62
 _QUIET_DAYS = 2
 _LEFT_OPEN_DAYS = 5
 _AT_ONCE_DAYS = 7
@@ -31,6 +31,13 @@ _WHAT_WAS_DONE = {
 _TALKED_OVER = "looked at together at hand-over; watched for two days"
 
 
+def last_full_month(history: Simulated) -> dt.date:
+    """The first day of the last month whose closing round was done by the end of a history."""
+    calendar = history.grid.calendar
+    first = calendar.day_of(history.until - dt.timedelta(minutes=50)).replace(day=1)
+    return (first - dt.timedelta(days=1)).replace(day=1)
+
+
 class Life:
     """Judges the last days of a history as they close, and lets the people act on what is found.
 
@@ -38,11 +45,12 @@ class Life:
     something short and grave happened, are judged the morning after.
     """
 
-    def __init__(self, demo: Demo, *, reviewed_days: int) -> None:
+    def __init__(self, demo: Demo) -> None:
         self.demo = demo
         grid = demo.history.grid
         self.last = grid.last
-        self.judged = grid.last - dt.timedelta(days=min(reviewed_days, grid.days) + 1)
+        # From the last full month on; what lies before is history nobody need look at again.
+        self.judged = max(last_full_month(demo.history), grid.first) - dt.timedelta(days=1)
         self.close_looks = {grid.date(int(item.start)) for item in demo.history.incidents if item.what == "feeder_stop"}
 
     def each_day(self, day: dt.date, now: dt.datetime) -> None:

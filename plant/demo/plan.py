@@ -60,7 +60,7 @@ class Feed:
     refill: str = "delivery"
     day_tank: Block | None = None
     feed_meter_sd: float = 0.0
-    wander: float = 0.015
+    wander: float = 0.008
     opening_share: float = 0.6
     feeder_unit: str = "%"
 

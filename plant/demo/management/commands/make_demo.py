@@ -25,7 +25,6 @@ class Command(BaseCommand):
     def add_arguments(self, parser: CommandParser) -> None:
         parser.add_argument("--seed", type=int, default=20)
         parser.add_argument("--months", type=int, default=MONTHS, help="whole months before the present one")
-        parser.add_argument("--reviewed-days", type=int, default=life.REVIEWED_DAYS, help="how many days back are judged")
         commands.add_now(parser)
 
     def handle(self, *args: Any, **options: Any) -> None:
@@ -45,7 +44,7 @@ class Command(BaseCommand):
             with transaction.atomic():
                 cast, passwords = people.add(now=history.grid.start - dt.timedelta(days=3))
                 demo = make.Demo(history, cast)
-            lived = life.Life(demo, reviewed_days=options["reviewed_days"])
+            lived = life.Life(demo)
             make.replay(demo, progress=self._say, each_day=lived.each_day)
             lived.finish()
         except accounts.PersonRefused as problem:
