@@ -58,7 +58,14 @@ class Issued:
 
 
 def prepare(
-    *, book: Book, year: int, month: int, by: Any, password: str, explanations: dict[str, str], now: dt.datetime,
+    *,
+    book: Book,
+    year: int,
+    month: int,
+    by: Any,
+    password: str,
+    explanations: dict[str, str],
+    now: dt.datetime,
 ) -> Preparation:
     """Signs a month as prepared, as known now. ``explanations`` are by the key of what hinders.
 
@@ -72,18 +79,38 @@ def prepare(
         raise NotReady(lacking)
     kept = {item.key: {"open": item.words, "why": explanations[item.key].strip()} for item in open_items}
     row = Preparation(
-        month=gathered.code, known_seq=gathered.known, figures_hash=content.figures_hash(content.sections(gathered)),
-        prepared_by=by, prepared_name=by.display_name, prepared_licence=_licence(member), prepared_at=now, explanations=kept)
+        month=gathered.code,
+        known_seq=gathered.known,
+        figures_hash=content.figures_hash(content.sections(gathered)),
+        prepared_by=by,
+        prepared_name=by.display_name,
+        prepared_licence=_licence(member),
+        prepared_at=now,
+        explanations=kept,
+    )
     appended = ledger.append(
-        book=book, client_id=f"prepare {gathered.code} {by.pk} {canonical.digest([gathered.known, kept])[:24]}", kind="report.prepare",
-        received={"month": gathered.code, "explanations": kept, "known_seq": gathered.known}, rows=[row], by=by, now=now)
+        book=book,
+        client_id=f"prepare {gathered.code} {by.pk} {canonical.digest([gathered.known, kept])[:24]}",
+        kind="report.prepare",
+        received={"month": gathered.code, "explanations": kept, "known_seq": gathered.known},
+        rows=[row],
+        by=by,
+        now=now,
+    )
     if not appended.created:
         return Preparation.objects.get(entry=appended.entry)
     return row
 
 
 def certify_and_issue(
-    *, book: Book, year: int, month: int, by: Any, password: str, now: dt.datetime, reason: str = "",
+    *,
+    book: Book,
+    year: int,
+    month: int,
+    by: Any,
+    password: str,
+    now: dt.datetime,
+    reason: str = "",
 ) -> Issued:
     """Certifies what was prepared, and issues it. Asking twice gives the one report.
 
@@ -98,8 +125,14 @@ def certify_and_issue(
             return Issued(previous, False)
         raise NotPrepared("Nobody has prepared this month yet.")
     gathered = gather(
-        book, year, month, now=now, known=prepared.known_seq, unchanged=_unchanged(book, year, month, prepared, now),
-        explanations=prepared.explanations)
+        book,
+        year,
+        month,
+        now=now,
+        known=prepared.known_seq,
+        unchanged=_unchanged(book, year, month, prepared, now),
+        explanations=prepared.explanations,
+    )
     found = content.sections(gathered)
     if content.figures_hash(found) != prepared.figures_hash:
         raise NotPrepared("What was prepared cannot be computed again to the same figures: prepare the month again.")
@@ -108,25 +141,43 @@ def certify_and_issue(
         content.Signed("Certified by", by.display_name, _licence(member), now, GIVEN_AGAIN),
     )
     return _issue(
-        gathered, found, signed=signed, previous=previous, reason=reason, now=now, by=by, manner="signed",
-        people={"prepared_by": prepared.prepared_by, "certified_by": by})
+        gathered,
+        found,
+        signed=signed,
+        previous=previous,
+        reason=reason,
+        now=now,
+        by=by,
+        manner="signed",
+        people={"prepared_by": prepared.prepared_by, "certified_by": by},
+    )
 
 
 def _unchanged(book: Book, year: int, month: int, prepared: Preparation, now: dt.datetime) -> bool:
     """True when nothing recorded since the preparation touches the month. Raises NotPrepared when something does."""
     current = gather(book, year, month, now=now)
     later = queries.changes.since(
-        book, current.start - queries.changes.BOUNDARY, current.end + queries.changes.BOUNDARY, after=prepared.known_seq)
+        book, current.start - queries.changes.BOUNDARY, current.end + queries.changes.BOUNDARY, after=prepared.known_seq
+    )
     inside = [change for change in later if current.start <= change.of < current.end]
     if inside:
         raise NotPrepared(
-            f"{len(inside)} record{'s' if len(inside) != 1 else ''} or settings of the month became known after it was prepared, the first: "
-            f"{inside[0].what}. Prepare the month again.")
+            f"{len(inside)} record{'s' if len(inside) != 1 else ''} or settings of the month became known after it was "
+            "prepared, the first: "
+            f"{inside[0].what}. Prepare the month again."
+        )
     return not later
 
 
 def issue_from_shell(
-    *, book: Book, year: int, month: int, now: dt.datetime, prepared_by: Any = None, certified_by: Any = None, reason: str = "",
+    *,
+    book: Book,
+    year: int,
+    month: int,
+    now: dt.datetime,
+    prepared_by: Any = None,
+    certified_by: Any = None,
+    reason: str = "",
 ) -> Issued:
     """Issues a month from the command line. The cover says that nobody signed, or who was named without a password.
 
@@ -137,10 +188,13 @@ def issue_from_shell(
     open_items = checklist.of(gathered)
     if not gathered.over:
         raise NotReady([item for item in open_items if item.key == "not-over"])
-    gathered.explanations.update({
-        item.key: {"open": item.words, "why": ""} for item in open_items if item.key != "nobody-certifies"})
+    gathered.explanations.update(
+        {item.key: {"open": item.words, "why": ""} for item in open_items if item.key != "nobody-certifies"}
+    )
     signed = (
-        _named(book, prepared_by, "Prepared by", PREPARED, now), _named(book, certified_by, "Certified by", CERTIFIED, now))
+        _named(book, prepared_by, "Prepared by", PREPARED, now),
+        _named(book, certified_by, "Certified by", CERTIFIED, now),
+    )
     found = content.sections(gathered)
     previous = queries.latest(book, gathered.code)
     if previous is not None:
@@ -148,13 +202,29 @@ def issue_from_shell(
         if not since.anything:
             return Issued(previous, False)
     return _issue(
-        gathered, found, signed=signed, previous=previous, reason=reason or "records of the month changed since its issue", now=now, by=None,
-        manner="shell", people={"prepared_by": prepared_by, "certified_by": certified_by})
+        gathered,
+        found,
+        signed=signed,
+        previous=previous,
+        reason=reason or "records of the month changed since its issue",
+        now=now,
+        by=None,
+        manner="shell",
+        people={"prepared_by": prepared_by, "certified_by": certified_by},
+    )
 
 
 def _issue(
-    month: Month, found: tuple[Any, ...], *, signed: tuple[content.Signed, content.Signed], previous: Report | None, reason: str,
-    now: dt.datetime, by: Any, manner: str, people: dict[str, Any],
+    month: Month,
+    found: tuple[Any, ...],
+    *,
+    signed: tuple[content.Signed, content.Signed],
+    previous: Report | None,
+    reason: str,
+    now: dt.datetime,
+    by: Any,
+    manner: str,
+    people: dict[str, Any],
 ) -> Issued:
     number = 1 if previous is None else previous.revision + 1
     first: list[Any] = []
@@ -162,23 +232,48 @@ def _issue(
         if not reason.strip():
             raise ReasonMissing("A revision says why it is made.")
         since = queries.changed_since_issue(previous, month, found)
-        first = [revision_part.section(month, revision=number, reason=reason.strip(), found=list(since.found), moved=list(since.moved))]
+        first = [
+            revision_part.section(
+                month, revision=number, reason=reason.strip(), found=list(since.found), moved=list(since.moved)
+            )
+        ]
     made = content.whole(month, found, revision=number, issued_at=now, signed=signed, first=first)
     text = content.to_json(made)
     # Rendered before the book is held: nothing slow runs while others wait to write.
     pdf = content.render(made)
     row = Report(
-        month=month.code, number=content.number_of(month), revision=number, known_seq=month.known, head_hash=content.head_hash(month),
-        renderer=content.paper.RENDERER, content_hash=hashlib.sha256(text.encode()).hexdigest(), pdf_hash=hashlib.sha256(pdf).hexdigest(),
-        prepared_name=signed[0].name, prepared_licence=signed[0].licence, prepared_at=signed[0].at, certified_name=signed[1].name,
-        certified_licence=signed[1].licence, issued_at=now, manner=manner, explanations=month.explanations, supersedes=previous,
-        reason=reason.strip() if previous is not None else "", **people)
+        month=month.code,
+        number=content.number_of(month),
+        revision=number,
+        known_seq=month.known,
+        head_hash=content.head_hash(month),
+        renderer=content.paper.RENDERER,
+        content_hash=hashlib.sha256(text.encode()).hexdigest(),
+        pdf_hash=hashlib.sha256(pdf).hexdigest(),
+        prepared_name=signed[0].name,
+        prepared_licence=signed[0].licence,
+        prepared_at=signed[0].at,
+        certified_name=signed[1].name,
+        certified_licence=signed[1].licence,
+        issued_at=now,
+        manner=manner,
+        explanations=month.explanations,
+        supersedes=previous,
+        reason=reason.strip() if previous is not None else "",
+        **people,
+    )
     received = {"month": month.code, "revision": number, "content_hash": row.content_hash, "pdf_hash": row.pdf_hash}
     try:
         with transaction.atomic():
             appended = ledger.append(
-                book=month.book, client_id=f"report {month.code} revision {number}", kind="report.issue", received=received, rows=[row],
-                by=by, now=now)
+                book=month.book,
+                client_id=f"report {month.code} revision {number}",
+                kind="report.issue",
+                received=received,
+                rows=[row],
+                by=by,
+                now=now,
+            )
             if appended.created:
                 ReportFile.objects.create(report=row, content=text, pdf=pdf)
     except ledger.ContentDiffers:

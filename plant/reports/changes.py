@@ -1,4 +1,4 @@
-"""What was changed in the records and settings of a month: corrections inside it, and everything that became known after a seq."""
+"""What was changed in the records and settings of a month: corrections in it, and all that became known after a seq."""
 
 from __future__ import annotations
 
@@ -48,14 +48,16 @@ def corrections(book: Book, start: dt.datetime, end: dt.datetime, *, until: int)
 
 
 def since(book: Book, start: dt.datetime, end: dt.datetime, *, after: int) -> list[Change]:
-    """Everything recorded after the seq ``after`` that touches [start, end): late records, corrections, settlements, settings."""
+    """All recorded after the seq ``after`` that touches [start, end): late records, corrections, settlements, settings."""
     found: list[Change] = []
     for model in (Reading, Delivery, Transfer):
         later = model.objects.filter(book=book, seq__gt=after)
         found += _replaced(later.filter(supersedes__isnull=False), start, end)
         found += [
             _change(row, NOT_ON_RECORD, words(row))
-            for row in later.filter(supersedes__isnull=True, taken_at__gte=start, taken_at__lt=end).select_related("entry__recorded_by")
+            for row in later.filter(supersedes__isnull=True, taken_at__gte=start, taken_at__lt=end).select_related(
+                "entry__recorded_by"
+            )
         ]
     found += _settled(Settlement.objects.filter(book=book, seq__gt=after), start, end)
     found += _settings(book, start, end, after)
@@ -81,17 +83,32 @@ def _settled(rows: Any, start: dt.datetime, end: dt.datetime) -> list[Change]:
     inside = rows.filter(reading__taken_at__gte=start, reading__taken_at__lt=end)
     return [
         Change(
-            subject(row.reading), row.reading.taken_at, f"{words(row.reading)}, doubtful",
-            "stands" if row.decision == Settlement.Decision.STANDS else "set aside", _who(row), row.entry.recorded_at, row.reason,
-            row.ref, "settlement")
+            subject(row.reading),
+            row.reading.taken_at,
+            f"{words(row.reading)}, doubtful",
+            "stands" if row.decision == Settlement.Decision.STANDS else "set aside",
+            _who(row),
+            row.entry.recorded_at,
+            row.reason,
+            row.ref,
+            "settlement",
+        )
         for row in inside.select_related("entry__recorded_by", "reading")
     ]
 
 
 def _change(row: Any, old: str, new: str) -> Change:
     return Change(
-        subject(row), row.taken_at, old, new, _who(row), row.entry.recorded_at, row.reason or getattr(row, "note", ""), row.ref,
-        row._meta.model_name)
+        subject(row),
+        row.taken_at,
+        old,
+        new,
+        _who(row),
+        row.entry.recorded_at,
+        row.reason or getattr(row, "note", ""),
+        row.ref,
+        row._meta.model_name,
+    )
 
 
 def _who(row: Record | works.Statement) -> str:
@@ -139,8 +156,18 @@ def _settings(book: Book, start: dt.datetime, end: dt.datetime, after: int) -> l
         now = stating.stated(book).saying(row.kind, row.subject, at)
         if old == new or now is None or now.ref != row.ref:
             continue  # says the same, or has been stated over since
-        out.append(Change(
-            setting(row.kind, row.subject), at, *difference(old, new), _who(row), row.entry.recorded_at, row.reason, row.ref, "setting"))
+        out.append(
+            Change(
+                setting(row.kind, row.subject),
+                at,
+                *difference(old, new),
+                _who(row),
+                row.entry.recorded_at,
+                row.reason,
+                row.ref,
+                "setting",
+            )
+        )
     return out
 
 

@@ -33,10 +33,18 @@ def _url(month: Month, tail: str) -> str:
 def _must(month: Month) -> list[Hindrance]:
     out = []
     if not month.over:
-        out.append(Hindrance("not-over", f"The month runs until {month.local(month.end)}; until then there is only a draft.", must=True))
+        out.append(
+            Hindrance(
+                "not-over", f"The month runs until {month.local(month.end)}; until then there is only a draft.", must=True
+            )
+        )
     members = [access.member_from(name, value) for name, value in month.stated.in_force("membership", month.now)]
     if not any(member is not None and member.may("report.sign_certified") for member in members):
-        out.append(Hindrance("nobody-certifies", "Nobody has the right to certify here: state it first.", _url(month, "settings/"), must=True))
+        out.append(
+            Hindrance(
+                "nobody-certifies", "Nobody has the right to certify here: state it first.", _url(month, "settings/"), must=True
+            )
+        )
     return out
 
 
@@ -47,9 +55,13 @@ def _doubtful(month: Month) -> list[Hindrance]:
         if doubtful:
             label, _, _ = values.printed(month, parameter)
             days = ", ".join(dict.fromkeys(month.day_words(month.calendar.day_of(point.at)) for point in doubtful))
-            out.append(Hindrance(
-                f"doubtful:{site}:{parameter}", f"{site} {label.lower()}: {_count(len(doubtful), 'doubtful reading')} not settled ({days})",
-                _url(month, f"reading/{doubtful[0].ref}/")))
+            out.append(
+                Hindrance(
+                    f"doubtful:{site}:{parameter}",
+                    f"{site} {label.lower()}: {_count(len(doubtful), 'doubtful reading')} not settled ({days})",
+                    _url(month, f"reading/{doubtful[0].ref}/"),
+                )
+            )
     return out
 
 
@@ -60,10 +72,14 @@ def _deviations(month: Month) -> list[Hindrance]:
             continue
         owed = "; somebody is still to be told" if view.tellings_owed else ""
         what = " ".join(part.replace("_", " ") for part in (view.subject, view.parameter) if part)
-        out.append(Hindrance(
-            f"deviation:{view.ref}",
-            f"{view.level.capitalize()} deviation of {month.day_words(view.raised_for)} is {view.state.replace('_', ' ')}: {what}, {view.value}{owed}",
-            _url(month, f"deviations/{view.ref}/")))
+        out.append(
+            Hindrance(
+                f"deviation:{view.ref}",
+                f"{view.level.capitalize()} deviation of {month.day_words(view.raised_for)} is "
+                f"{view.state.replace('_', ' ')}: {what}, {view.value}{owed}",
+                _url(month, f"deviations/{view.ref}/"),
+            )
+        )
     return out
 
 
@@ -73,7 +89,11 @@ def _doses(month: Month) -> list[Hindrance]:
         if row.expected and row.used_mg_l.value is None and month.calendar.bounds(row.day)[1] <= month.now:
             unknown.setdefault(row.dosing_point, []).append(month.day_words(row.day))
     return [
-        Hindrance(f"dose:{code}", f"{code}: the dose of {_count(len(days), 'day')} is not known ({_some(days)})", _url(month, f"dosing/{code}/"))
+        Hindrance(
+            f"dose:{code}",
+            f"{code}: the dose of {_count(len(days), 'day')} is not known ({_some(days)})",
+            _url(month, f"dosing/{code}/"),
+        )
         for code, days in unknown.items()
     ]
 
@@ -83,14 +103,22 @@ def _missing(month: Month) -> list[Hindrance]:
     for line in expected.lines(month):
         if line.missing:
             label, _, _ = values.printed(month, line.parameter)
-            out.append(Hindrance(
-                f"missing:{line.site}:{line.parameter}", f"{line.site} {label.lower()}: {line.missing} of {line.slots} values due are not on record",
-                _url(month, "round/")))
+            out.append(
+                Hindrance(
+                    f"missing:{line.site}:{line.parameter}",
+                    f"{line.site} {label.lower()}: {line.missing} of {line.slots} values due are not on record",
+                    _url(month, "round/"),
+                )
+            )
     return out
 
 
 def _waiting(month: Month) -> list[Hindrance]:
-    waiting = Job.objects.filter(book=month.book, state__in=(Job.State.QUEUED, Job.State.RUNNING)).exclude(kind__startswith="reports").count()
+    waiting = (
+        Job.objects.filter(book=month.book, state__in=(Job.State.QUEUED, Job.State.RUNNING))
+        .exclude(kind__startswith="reports")
+        .count()
+    )
     return [Hindrance("waiting", f"{_count(waiting, 'judgement')} of new records still to be done", "")] if waiting else []
 
 

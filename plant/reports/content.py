@@ -30,7 +30,18 @@ from plant.reports.pdf.document import Document, Section, Signature, Table, Text
 SECTIONS: dict[str, Callable[[Month], Section]] = {
     part.KEY: part.section
     for part in (
-        summary, daily, chemicals, stock, quality, disinfection, deviations, missing, corrections, settings, lots, method,
+        summary,
+        daily,
+        chemicals,
+        stock,
+        quality,
+        disinfection,
+        deviations,
+        missing,
+        corrections,
+        settings,
+        lots,
+        method,
     )
 }
 ALWAYS = ("missing", "corrections", "method")
@@ -76,7 +87,13 @@ def number_of(month: Month) -> str:
 
 
 def whole(
-    month: Month, found: Sequence[Section], *, revision: int, issued_at: dt.datetime, signed: Sequence[Signed], draft: bool = False,
+    month: Month,
+    found: Sequence[Section],
+    *,
+    revision: int,
+    issued_at: dt.datetime,
+    signed: Sequence[Signed],
+    draft: bool = False,
     first: Sequence[Section] = (),
 ) -> Document:
     """The document with its cover. ``first`` are sections set before all others (what a revision changes)."""
@@ -85,15 +102,31 @@ def whole(
     if month.explanations:
         everything.insert(len(first), _explanations(month))
     status = (
-        f"DRAFT of {month.local(month.now)}, not issued" if draft
-        else "Issued" if revision == 1 else f"Issued, revision {revision}; it replaces revision {revision - 1}")
+        f"DRAFT of {month.local(month.now)}, not issued"
+        if draft
+        else "Issued"
+        if revision == 1
+        else f"Issued, revision {revision}; it replaces revision {revision - 1}"
+    )
     return Document(
-        title="Monthly operating report", works_name=month.works.name, works_code=month.book.code, month=month.code,
-        month_words=month.words, number=number_of(month), revision=revision, status=status, draft=draft,
-        issued_at=issued_at.astimezone(dt.UTC).isoformat(timespec="seconds"), form_note=_form_note(month), cover=_cover(month, issued_at, head),
-        signatures=tuple(_signature(month, one, draft) for one in signed), sections=tuple(everything),
-        own_wording=str(month.form.get("wording", "")), page=page(month),
-        closing=_proof(month, head, draft))
+        title="Monthly operating report",
+        works_name=month.works.name,
+        works_code=month.book.code,
+        month=month.code,
+        month_words=month.words,
+        number=number_of(month),
+        revision=revision,
+        status=status,
+        draft=draft,
+        issued_at=issued_at.astimezone(dt.UTC).isoformat(timespec="seconds"),
+        form_note=_form_note(month),
+        cover=_cover(month, issued_at, head),
+        signatures=tuple(_signature(month, one, draft) for one in signed),
+        sections=tuple(everything),
+        own_wording=str(month.form.get("wording", "")),
+        page=page(month),
+        closing=_proof(month, head, draft),
+    )
 
 
 def page(month: Month) -> str:
@@ -121,11 +154,15 @@ def _cover(month: Month, issued_at: dt.datetime, head: Entry | None) -> tuple[tu
     known = f"entry {month.known}" + (f", recorded {month.local(head.recorded_at)}" if head else "")
     form, value = month.form, month.works_value
     rows = [
-        ("Works", f"{month.works.name} ({month.book.code})"), ("Address", str(value.get("address", ""))), ("Owner", str(value.get("owner", ""))),
+        ("Works", f"{month.works.name} ({month.book.code})"),
+        ("Address", str(value.get("address", ""))),
+        ("Owner", str(value.get("owner", ""))),
         ("Regulator", "\n".join(str(form[key]) for key in ("regulator", "regulator_address") if form.get(key))),
-        ("Permit number", str(form.get("permit_number", ""))), ("Report number", number_of(month)),
+        ("Permit number", str(form.get("permit_number", ""))),
+        ("Report number", number_of(month)),
         ("Month", f"{month.words}: {len(month.days)} operating days, {days} local time ({month.works.timezone})"),
-        ("Records known up to", known), ("Written", f"{month.local(issued_at)} local time"),
+        ("Records known up to", known),
+        ("Written", f"{month.local(issued_at)} local time"),
     ]
     return tuple((name, text) for name, text in rows if text)
 
@@ -137,12 +174,22 @@ def _signature(month: Month, one: Signed, draft: bool) -> Signature:
 
 
 def _explanations(month: Month) -> Section:
-    columns = (document.Column("Open at issue", number=False, wraps=True), document.Column("Explanation", number=False, wraps=True))
+    columns = (
+        document.Column("Open at issue", number=False, wraps=True),
+        document.Column("Explanation", number=False, wraps=True),
+    )
     rows = tuple(
-        (document.Cell(one["open"]), document.Cell(one["why"] or "not explained")) for _, one in sorted(month.explanations.items()))
-    return Section("explanations", "Open at issue, and why", (
-        Text("What was not complete when this report was prepared, with the explanation of the person who prepared it."),
-        Table("explanations", "", columns, rows, 1)))
+        (document.Cell(one["open"]), document.Cell(one["why"] or "not explained"))
+        for _, one in sorted(month.explanations.items())
+    )
+    return Section(
+        "explanations",
+        "Open at issue, and why",
+        (
+            Text("What was not complete when this report was prepared, with the explanation of the person who prepared it."),
+            Table("explanations", "", columns, rows, 1),
+        ),
+    )
 
 
 def _proof(month: Month, head: Entry | None, draft: bool) -> tuple[tuple[str, str], ...]:
@@ -153,9 +200,13 @@ def _proof(month: Month, head: Entry | None, draft: bool) -> tuple[tuple[str, st
         ("Written by", paper.RENDERER),
     ]
     if not draft:
-        rows.append((
-            "To check this file", "The works keeps the SHA-256 of this file; its page “Check a report” says whether a PDF is an issued one, "
-            "unaltered."))
+        rows.append(
+            (
+                "To check this file",
+                "The works keeps the SHA-256 of this file; its page “Check a report” says whether a PDF is an issued one, "
+                "unaltered.",
+            )
+        )
     return tuple(rows)
 
 

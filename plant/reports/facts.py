@@ -34,7 +34,9 @@ class Fact:
     @property
     def words(self) -> str:
         """Which figure this is, for a list of those that moved."""
-        return " · ".join(part for part in (self.table, self.row, f"{self.quantity} ({self.unit})" if self.unit else self.quantity) if part)
+        return " · ".join(
+            part for part in (self.table, self.row, f"{self.quantity} ({self.unit})" if self.unit else self.quantity) if part
+        )
 
 
 def facts(document: Document) -> Iterator[Fact]:
@@ -48,10 +50,10 @@ def facts(document: Document) -> Iterator[Fact]:
 def _of_table(section: Section, table: Table) -> Iterator[Fact]:
     seen: dict[str, int] = {}
     for row in table.rows:
-        label = ", ".join(cell.text for cell in row[:table.labels])
+        label = ", ".join(cell.text for cell in row[: table.labels])
         seen[label] = seen.get(label, 0) + 1
         name = label if seen[label] == 1 else f"{label} ({seen[label]})"
-        for column, cell in zip(table.columns[table.labels:], row[table.labels:], strict=True):
+        for column, cell in zip(table.columns[table.labels :], row[table.labels :], strict=True):
             if not cell.text:
                 continue
             quantity = " ".join(part for part in (column.group, column.head) if part)
@@ -85,7 +87,17 @@ def rows(document: Document) -> Iterator[list[str]]:
         full = "" if number is None else repr(fact.value)
         text = fact.printed if number is None else ""
         yield [
-            document.month, issue, fact.section, fact.table, fact.row, fact.quantity, fact.unit, number or "", full, text, fact.mark,
+            document.month,
+            issue,
+            fact.section,
+            fact.table,
+            fact.row,
+            fact.quantity,
+            fact.unit,
+            number or "",
+            full,
+            text,
+            fact.mark,
             fact.trail,
         ]
     yield [document.month, issue, "notice", "", "", "", "", "", "", NOTICE, "", ""]

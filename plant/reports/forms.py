@@ -14,8 +14,10 @@ LARGEST_PDF = 20 * 1024 * 1024
 
 def _password() -> forms.CharField:
     return forms.CharField(
-        label="Your password, as your signature", strip=False,
-        widget=forms.PasswordInput(attrs={"autocomplete": "current-password"}))
+        label="Your password, as your signature",
+        strip=False,
+        widget=forms.PasswordInput(attrs={"autocomplete": "current-password"}),
+    )
 
 
 class PrepareForm(forms.Form):
@@ -28,7 +30,8 @@ class PrepareForm(forms.Form):
             name = f"explain_{number}"
             self.keys[name] = item.key
             self.fields[name] = forms.CharField(
-                label=item.words, max_length=500, required=False, widget=forms.Textarea(attrs={"rows": 2}))
+                label=item.words, max_length=500, required=False, widget=forms.Textarea(attrs={"rows": 2})
+            )
         self.fields["password"] = _password()
 
     @property
@@ -44,8 +47,11 @@ class CertifyForm(forms.Form):
         super().__init__(*args, **kwargs)
         if revision:
             self.fields["reason"] = forms.CharField(
-                label="Why this revision is made", max_length=500, help_text="It is printed in the revision.",
-                widget=forms.Textarea(attrs={"rows": 2}))
+                label="Why this revision is made",
+                max_length=500,
+                help_text="It is printed in the revision.",
+                widget=forms.Textarea(attrs={"rows": 2}),
+            )
         self.fields["password"] = _password()
 
 
@@ -53,7 +59,10 @@ class CheckForm(forms.Form):
     """A PDF to be checked."""
 
     file = forms.FileField(
-        label="The PDF", help_text="It is read and forgotten, not kept.", widget=forms.ClearableFileInput(attrs={"accept": "application/pdf"}))
+        label="The PDF",
+        help_text="It is read and forgotten, not kept.",
+        widget=forms.ClearableFileInput(attrs={"accept": "application/pdf"}),
+    )
 
     def clean_file(self) -> Any:
         """Refuses what cannot be a report by its size."""

@@ -17,7 +17,10 @@ from plant.reports.month import Month
 from plant.works.described import ContactSegment
 
 DISINFECTANTS = {
-    "free_chlorine": "free chlorine", "chlorine_dioxide": "chlorine dioxide", "ozone": "ozone", "total_chlorine": "chloramines",
+    "free_chlorine": "free chlorine",
+    "chlorine_dioxide": "chlorine dioxide",
+    "ozone": "ozone",
+    "total_chlorine": "chloramines",
 }
 
 
@@ -55,7 +58,8 @@ def notes(month: Month, found: dict[dt.date, list[SegmentDay]]) -> tuple[str, ..
     """How it was computed, and which table cells nobody has opened."""
     evidence = sorted({words for results in found.values() for result in results for words in result.evidence})
     return (
-        "Lowest residual, highest pH and lowest temperature of the day, with the day's peak flow; required CT from the table row on the "
+        "Lowest residual, highest pH and lowest temperature of the day, with the day's peak flow; required CT from the "
+        "table row on the "
         "safe side (40 CFR 141.74(b)). The ratio is logs achieved over logs required and is never rounded up to 1.",
         *evidence,
     )
@@ -82,7 +86,14 @@ def _one(month: Month, segment: ContactSegment, day: dt.date) -> SegmentDay:
     known = SegmentDay(segment.code, residual, None, temperature, acidity, flow)
     if parameter is None or residual is None or temperature is None or not flow or lacking:
         return SegmentDay(
-            segment.code, residual, None, temperature, acidity, flow, remark=f"no {', '.join(lacking)} at {segment.sample_point}")
+            segment.code,
+            residual,
+            None,
+            temperature,
+            acidity,
+            flow,
+            remark=f"no {', '.join(lacking)} at {segment.sample_point}",
+        )
     if residual <= 0:
         return SegmentDay(segment.code, residual, None, temperature, acidity, flow, 0.0, None, 0.0, "no residual")
     try:
@@ -105,21 +116,33 @@ def _computed(segment: ContactSegment, disinfectant: str, known: SegmentDay, flo
         where = (known.temperature_c, known.ph, known.residual_mg_l)
         required = float(disinfection.required_ct_mg_min_l(organism, disinfectant, logs, *where))
         evidence += [
-            f"{organism} by {disinfectant}: {cell.evidence}" for cell in disinfection.cells_behind(organism, disinfectant, logs, *where)
+            f"{organism} by {disinfectant}: {cell.evidence}"
+            for cell in disinfection.cells_behind(organism, disinfectant, logs, *where)
         ]
         if required > 0 and (best is None or ct / required < best[0]):
             best = (ct / required, required)
     remark = flow_words if best else "; ".join(filter(None, (flow_words, "no required logs are stated")))
     return SegmentDay(
-        segment.code, known.residual_mg_l, t10, known.temperature_c, known.ph, known.peak_flow_m3_h, ct,
-        best[1] if best else None, best[0] if best else None, remark, tuple(dict.fromkeys(evidence)))
+        segment.code,
+        known.residual_mg_l,
+        t10,
+        known.temperature_c,
+        known.ph,
+        known.peak_flow_m3_h,
+        ct,
+        best[1] if best else None,
+        best[0] if best else None,
+        remark,
+        tuple(dict.fromkeys(evidence)),
+    )
 
 
 def _extreme(month: Month, site: str, parameter: str, start: dt.datetime, end: dt.datetime, *, lowest: bool) -> float | None:
     """The lowest or highest usable value of the day; below detection counts as zero."""
     found = [
         0.0 if point.qualifier == "<" else point.value
-        for point in _within(month, site, parameter, start, end) if point.usable and point.value is not None
+        for point in _within(month, site, parameter, start, end)
+        if point.usable and point.value is not None
     ]
     return (min if lowest else max)(found) if found else None
 
@@ -129,9 +152,11 @@ def _within(month: Month, site: str, parameter: str, start: dt.datetime, end: dt
 
 
 def _peak_flow(month: Month, meter: str, start: dt.datetime, end: dt.datetime) -> tuple[float | None, str]:
-    """The day's highest ``peak_hourly_flow``; without one, the highest mean flow between two totaliser readings, which is less."""
+    """The day's highest ``peak_hourly_flow``; without one, the highest mean flow between two counts, which is less."""
     read = [
-        point.value for point in _within(month, meter, "peak_hourly_flow", start, end) if point.usable and point.value is not None
+        point.value
+        for point in _within(month, meter, "peak_hourly_flow", start, end)
+        if point.usable and point.value is not None
     ]
     if read:
         return max(read), ""
@@ -139,11 +164,13 @@ def _peak_flow(month: Month, meter: str, start: dt.datetime, end: dt.datetime) -
     if stated is None:
         return None, ""
     counts = [
-        point for point in month.counts_with_day_before(meter)
+        point
+        for point in month.counts_with_day_before(meter)
         if start - dt.timedelta(days=1) <= point.at < end and point.usable and point.value is not None
     ]
     flows = [
-        flow for earlier, later in pairwise(counts)
+        flow
+        for earlier, later in pairwise(counts)
         if later.at > start and (flow := _mean_flow(earlier, later, stated["unit"])) is not None
     ]
     return (max(flows), "peak from totaliser steps") if flows else (None, "")

@@ -11,7 +11,11 @@ from plant.reports.pdf.document import Cell
 
 UNKNOWN = "–"
 _US = {
-    "ML": ("US_Mgal", "MG"), "kg": ("lb", "lb"), "°C": ("°F", "°F"), "m3/h": ("US_Mgal/d", "MGD"), "L": ("US_gal", "gal"),
+    "ML": ("US_Mgal", "MG"),
+    "kg": ("lb", "lb"),
+    "°C": ("°F", "°F"),
+    "m3/h": ("US_Mgal/d", "MGD"),
+    "L": ("US_gal", "gal"),
     "m": ("ft", "ft"),
 }
 _PRINTED = {"uS/cm": "µS/cm", "m3": "m³", "m3/h": "m³/h", "CFU/100mL": "CFU/100 mL", "": ""}

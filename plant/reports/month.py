@@ -172,7 +172,13 @@ class Month:
 
 
 def gather(
-    book: Book, year: int, month: int, *, now: dt.datetime, known: int | None = None, unchanged: bool = False,
+    book: Book,
+    year: int,
+    month: int,
+    *,
+    now: dt.datetime,
+    known: int | None = None,
+    unchanged: bool = False,
     explanations: dict[str, dict[str, str]] | None = None,
 ) -> Month:
     """The month as known at a seq (None: the head of the book). ``unchanged`` says that nothing recorded since that seq

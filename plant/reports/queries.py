@@ -80,10 +80,13 @@ def changed_since_issue(report: Report, month: Month, sections: tuple[Section, .
         return Since((), ())
     before = document(report)
     after = content.whole(
-        month, sections if sections is not None else content.sections(month), revision=report.revision, issued_at=report.issued_at, signed=())
-    moved = [
-        item for item in facts.moved(before, after, leave_out=FOLLOWS_LATER) if not item[0].startswith("use-year")
-    ]
+        month,
+        sections if sections is not None else content.sections(month),
+        revision=report.revision,
+        issued_at=report.issued_at,
+        signed=(),
+    )
+    moved = [item for item in facts.moved(before, after, leave_out=FOLLOWS_LATER) if not item[0].startswith("use-year")]
     if not found and not moved:
         return Since((), ())
     return Since(tuple(found or around), tuple(moved))
@@ -116,8 +119,17 @@ def months(book: Book, calendar: clock.Calendar, now: dt.datetime, *, due_day: i
         code = f"{day:%Y-%m}"
         report = issued.get(code)
         due = None if due_day is None else (end_day + dt.timedelta(days=1)).replace(day=due_day)
-        out.append(MonthState(
-            code, f"{day:%B %Y}", report, preparation(book, code), len(recorded_since(report, start, end)) if report else 0, now >= end, due))
+        out.append(
+            MonthState(
+                code,
+                f"{day:%B %Y}",
+                report,
+                preparation(book, code),
+                len(recorded_since(report, start, end)) if report else 0,
+                now >= end,
+                due,
+            )
+        )
         day = start_day - dt.timedelta(days=1)
     return out
 

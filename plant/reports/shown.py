@@ -93,10 +93,16 @@ def _table(table: Table, code: str) -> ShownBlock:
             groups.append((column.group, 1))
     totals = len(table.rows) - table.totals
     return ShownBlock(
-        "table", caption=table.caption, groups=tuple(groups) if any(name for name, _ in groups) else (), heads=table.columns, notes=table.notes,
+        "table",
+        caption=table.caption,
+        groups=tuple(groups) if any(name for name, _ in groups) else (),
+        heads=table.columns,
+        notes=table.notes,
         rows=tuple(
             (position >= totals, tuple(_cell(table, index, cell, code) for index, cell in enumerate(row)))
-            for position, row in enumerate(table.rows)))
+            for position, row in enumerate(table.rows)
+        ),
+    )
 
 
 def _cell(table: Table, index: int, cell: Cell, code: str) -> ShownCell:

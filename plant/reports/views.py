@@ -17,7 +17,8 @@ from plant.reports.pdf.document import Document
 from plant.works import access
 
 KINDS = {
-    "pdf": "application/pdf", "csv": "text/csv; charset=utf-8",
+    "pdf": "application/pdf",
+    "csv": "text/csv; charset=utf-8",
     "xlsx": "application/vnd.openxmlformats-officedocument.spreadsheetml.sheet",
 }
 NOT_SIGNED = "That is not your password. Nothing was signed; what you wrote is still here."
@@ -57,16 +58,32 @@ def _context(at: access.At, gathered: Month, issues: list[Any], report: Any, *, 
     working = newest is None or (since is not None and since.anything)
     must = [item for item in open_items if item.must]
     if draft:
-        made: Document = content.whole(gathered, sections or (), revision=0, issued_at=gathered.now, signed=content.NOBODY, draft=True)
+        made: Document = content.whole(
+            gathered, sections or (), revision=0, issued_at=gathered.now, signed=content.NOBODY, draft=True
+        )
     else:
         made = queries.document(report)
     changed_since_prepared = prepared is not None and bool(
-        queries.changes.since(at.book, gathered.start, gathered.end, after=prepared.known_seq))
+        queries.changes.since(at.book, gathered.start, gathered.end, after=prepared.known_seq)
+    )
     return {
-        "at": at, "month": gathered, "issues": issues, "report": report, "newest": newest, "since": since, "open_items": open_items, "must": must,
-        "prepared": prepared, "working": working, "document": made, "sections": shown.sections(made, at.code),
-        "changed_since_prepared": changed_since_prepared, "draft": draft, "notice": content.document.NOTICE,
-        "may_prepare": at.member.may(actions.PREPARED), "may_certify": at.member.may(actions.CERTIFIED),
+        "at": at,
+        "month": gathered,
+        "issues": issues,
+        "report": report,
+        "newest": newest,
+        "since": since,
+        "open_items": open_items,
+        "must": must,
+        "prepared": prepared,
+        "working": working,
+        "document": made,
+        "sections": shown.sections(made, at.code),
+        "changed_since_prepared": changed_since_prepared,
+        "draft": draft,
+        "notice": content.document.NOTICE,
+        "may_prepare": at.member.may(actions.PREPARED),
+        "may_certify": at.member.may(actions.CERTIFIED),
         "prepare_form": more.get("prepare_form") or forms.PrepareForm([item for item in open_items if not item.must]),
         "certify_form": more.get("certify_form") or forms.CertifyForm(revision=newest is not None),
     }
@@ -83,8 +100,14 @@ def prepare(request: HttpRequest, at: access.At, month: str) -> HttpResponse:
         try:
             _password_counts(request, form.cleaned_data["password"])
             actions.prepare(
-                book=at.book, year=year, month=number, by=request.user, password=form.cleaned_data["password"], explanations=form.explanations,
-                now=at.now)
+                book=at.book,
+                year=year,
+                month=number,
+                by=request.user,
+                password=form.cleaned_data["password"],
+                explanations=form.explanations,
+                now=at.now,
+            )
         except actions.WrongPassword:
             form.add_error("password", NOT_SIGNED)
         except (actions.NotReady, actions.MayNotSign) as problem:
@@ -106,8 +129,14 @@ def certify(request: HttpRequest, at: access.At, month: str) -> HttpResponse:
         try:
             _password_counts(request, form.cleaned_data["password"])
             done = actions.certify_and_issue(
-                book=at.book, year=year, month=number, by=request.user, password=form.cleaned_data["password"], now=at.now,
-                reason=form.cleaned_data.get("reason", ""))
+                book=at.book,
+                year=year,
+                month=number,
+                by=request.user,
+                password=form.cleaned_data["password"],
+                now=at.now,
+                reason=form.cleaned_data.get("reason", ""),
+            )
         except actions.WrongPassword:
             form.add_error("password", NOT_SIGNED)
         except (actions.NotPrepared, actions.ReasonMissing, actions.MayNotSign) as problem:

@@ -19,9 +19,13 @@ def to_xlsx(document: Document) -> bytes:
     """The same bytes for the same document: the time inside is that of the issue."""
     out = io.BytesIO()
     book = xlsxwriter.Workbook(out, {"in_memory": True, "strings_to_formulas": False, "strings_to_urls": False})
-    book.set_properties({
-        "title": f"{document.title}, {document.works_name}, {document.month_words}", "comments": NOTICE,
-        "created": dt.datetime.fromisoformat(document.issued_at).replace(tzinfo=None)})
+    book.set_properties(
+        {
+            "title": f"{document.title}, {document.works_name}, {document.month_words}",
+            "comments": NOTICE,
+            "created": dt.datetime.fromisoformat(document.issued_at).replace(tzinfo=None),
+        }
+    )
     bold, wrapped = book.add_format({"bold": True, "text_wrap": True}), book.add_format({"text_wrap": True, "valign": "top"})
     _cover(book, document, bold)
     used: set[str] = {"report"}
@@ -37,7 +41,10 @@ def to_xlsx(document: Document) -> bytes:
 def _cover(book: Any, document: Document, bold: Any) -> None:
     sheet = book.add_worksheet("report")
     lines = [(document.title, document.works_name), ("State", document.status), ("Form", document.form_note), *document.cover]
-    lines += [(one.meaning, ", ".join(part for part in (one.name, one.licence, one.signed_at, one.manner) if part)) for one in document.signatures]
+    lines += [
+        (one.meaning, ", ".join(part for part in (one.name, one.licence, one.signed_at, one.manner) if part))
+        for one in document.signatures
+    ]
     for number, (name, text) in enumerate([*lines, ("Note", NOTICE)]):
         sheet.write_string(number, 0, name, bold)
         sheet.write_string(number, 1, text.replace("\n", " "))
@@ -88,6 +95,6 @@ def _name(wanted: str, used: set[str]) -> str:
     name, count = base, 1
     while name.lower() in used:
         count += 1
-        name = f"{base[:LONGEST_NAME - len(str(count)) - 1]} {count}"
+        name = f"{base[: LONGEST_NAME - len(str(count)) - 1]} {count}"
     used.add(name.lower())
     return name

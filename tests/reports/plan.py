@@ -89,17 +89,27 @@ def bring(book: Book, rows: list[tuple[str, ...]], folder: Path, *, now: dt.date
     writer.writerows(rows)
     path.write_text(out.getvalue())
     counted = records.bring_in(
-        book=book, sheet=records.open_file(path), wanted=records.Wanted(), by=people.person("olga"), now=now, judge=False)
+        book=book, sheet=records.open_file(path), wanted=records.Wanted(), by=people.person("olga"), now=now, judge=False
+    )
     assert not counted.refused, counted
 
 
 def deliver(book: Book, *, now: dt.datetime, **more: Any) -> None:
     """The load of caustic that the plan's levels show."""
     load = Delivery(
-        taken_at=local(DELIVERED).astimezone(dt.UTC), vessel="NAOH-BULK", product="NAOH", quantity=DELIVERED_KG, unit="kg",
-        lot="NAOH-001", supplier="Invented Supplies", document="D 17", **more)
+        taken_at=local(DELIVERED).astimezone(dt.UTC),
+        vessel="NAOH-BULK",
+        product="NAOH",
+        quantity=DELIVERED_KG,
+        unit="kg",
+        lot="NAOH-001",
+        supplier="Invented Supplies",
+        document="D 17",
+        **more,
+    )
     ledger.append(
-        book=book, client_id="delivery", kind="line", received={"lot": load.lot}, rows=[load], by=people.person("olga"), now=now)
+        book=book, client_id="delivery", kind="line", received={"lot": load.lot}, rows=[load], by=people.person("olga"), now=now
+    )
 
 
 def works(folder: Path, first: dt.date, last: dt.date, *, now: dt.datetime) -> tuple[Book, list[tuple[str, ...]]]:

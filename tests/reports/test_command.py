@@ -34,7 +34,19 @@ def run(folder: Path, *options: str, now: str = NOW, month: str = "2026-03", nam
     told: Any = StringIO()
     output = folder / name
     call_command(
-        "issue_report", "--works", "TST", "--month", month, "--output", str(output), "--now", now, *options, stdout=said, stderr=told)
+        "issue_report",
+        "--works",
+        "TST",
+        "--month",
+        month,
+        "--output",
+        str(output),
+        "--now",
+        now,
+        *options,
+        stdout=said,
+        stderr=told,
+    )
     assert said.getvalue().strip() == str(output)
     return output.read_bytes(), told.getvalue()
 
@@ -52,8 +64,14 @@ def test_after_a_change_the_next_run_issues_a_revision(folder: Path) -> None:
     run(folder)
     book = Report.objects.get().book
     correct(
-        book, site="ENTRY", parameter="pH", at="2026-03-10T07:00", value="8.44", reason="read wrongly",
-        now=dt.datetime(2026, 4, 2, 12, tzinfo=dt.UTC))
+        book,
+        site="ENTRY",
+        parameter="pH",
+        at="2026-03-10T07:00",
+        value="8.44",
+        reason="read wrongly",
+        now=dt.datetime(2026, 4, 2, 12, tzinfo=dt.UTC),
+    )
     data, words = run(folder, "--reason", "pH of the 10th", now=LATER, name="second.pdf")
     assert "revision 2: issued" in words
     assert "pH of the 10th" in "".join(page.extract_text() for page in pypdf.PdfReader(folder / "second.pdf").pages)
@@ -85,12 +103,15 @@ def test_a_draft_of_the_running_month_may_be_written_but_not_issued(folder: Path
         run(folder, month="2026-04")
 
 
-@pytest.mark.parametrize(("options", "words"), [
-    ({"month": "2026-13"}, "is not a month"),
-    ({"month": "2031-01"}, "has not begun"),
-    ({"now": "2026-01-01T00:00"}, "--now is refused"),
-    ({"name": "nowhere/out.pdf"}, "can't be written"),
-])
+@pytest.mark.parametrize(
+    ("options", "words"),
+    [
+        ({"month": "2026-13"}, "is not a month"),
+        ({"month": "2031-01"}, "has not begun"),
+        ({"now": "2026-01-01T00:00"}, "--now is refused"),
+        ({"name": "nowhere/out.pdf"}, "can't be written"),
+    ],
+)
 def test_bad_input_is_one_clear_sentence(folder: Path, options: dict[str, str], words: str) -> None:
     with pytest.raises(CommandError, match=words):
         run(folder, **options)

@@ -158,7 +158,8 @@ def test_what_the_pdf_prints_is_what_the_figures_say(tmp_path: Path) -> None:
         start = label.split()
         of_day = [line[2:] for line in printed_lines if line[:2] == start and len(line) > 3]
         for quantity, value in (
-            ("Treated FT-TREATED", truth["volume_ml"]), ("CAUSTIC-PH used", truth["caustic_mg_l"]),
+            ("Treated FT-TREATED", truth["volume_ml"]),
+            ("CAUSTIC-PH used", truth["caustic_mg_l"]),
             ("PEROX-PRE product", truth["peroxide_kg"]),
         ):
             wanted = printed(value, lines["doses", label, quantity]["value"])

@@ -22,7 +22,9 @@ def lines(text: str) -> list[dict[str, str]]:
 
 def evil_document():
     rows = tuple((Cell(words), Cell("−1.25", -1.2512, "used:X:2026-10-01"), Cell("<0.05", 0.05), Cell(words)) for words in EVIL)
-    table = Table("evil", "Evil", (Column("Name", number=False), Column("change", "mg/L"), Column("low"), Column("Words")), rows)
+    table = Table(
+        "evil", "Evil", (Column("Name", number=False), Column("change", "mg/L"), Column("low"), Column("Words")), rows
+    )
     return documents.document(Section("s", "S", (table,)))
 
 
@@ -56,7 +58,9 @@ def test_one_row_a_fact_and_every_place_once() -> None:
 
 def test_what_moved_names_old_and_new() -> None:
     def made(value: str):
-        table = Table("t", "T", (Column("Day", number=False), Column("used", "mg/L")), ((Cell("01 Oct"), Cell(value, float(value))),))
+        table = Table(
+            "t", "T", (Column("Day", number=False), Column("used", "mg/L")), ((Cell("01 Oct"), Cell(value, float(value))),)
+        )
         return documents.document(Section("s", "S", (table,)))
 
     assert facts.moved(made("1.10"), made("1.25")) == [("t · 01 Oct · used (mg/L)", "1.10", "1.25")]

@@ -21,7 +21,11 @@ NOW = dt.datetime(2026, 4, 2, 10, tzinfo=dt.UTC)
 def test_paper_and_judgement_agree_day_by_day(tmp_path: Path) -> None:
     book, _ = plan.works(tmp_path, dt.date(2026, 2, 20), dt.date(2026, 3, 31), now=NOW)
     plan.bring(
-        book, [("ENTRY", f"2026-03-{day:02d}T09:00", "temperature", f"{6 + day / 3:.1f}", "°C", "") for day in range(1, 31)], tmp_path, now=NOW)
+        book,
+        [("ENTRY", f"2026-03-{day:02d}T09:00", "temperature", f"{6 + day / 3:.1f}", "°C", "") for day in range(1, 31)],
+        tmp_path,
+        now=NOW,
+    )
     month = gather(book, 2026, 3, now=NOW)
     segments = month.stated.contact_segments(month.at)
     assert segments

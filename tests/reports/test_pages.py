@@ -68,7 +68,12 @@ def test_unknown_kinds_and_revisions_are_not_found(book: Book) -> None:
 
 def test_no_signature_without_the_right(book: Book) -> None:
     for who, path in (
-        ("olga", "prepare"), ("ira", "prepare"), ("adam", "prepare"), ("sam", "certify"), ("olga", "certify"), ("ira", "certify"),
+        ("olga", "prepare"),
+        ("ira", "prepare"),
+        ("adam", "prepare"),
+        ("sam", "certify"),
+        ("olga", "certify"),
+        ("ira", "certify"),
     ):
         assert people.signed_in(who).post(f"{MONTH}{path}/", explained(book)).status_code == 403
     assert not Preparation.objects.exists()
@@ -120,7 +125,14 @@ def test_prepare_certify_download_and_check(book: Book) -> None:
 def test_a_change_after_issue_shows_in_the_list_and_on_the_page(book: Book) -> None:
     issue(book)
     correct(
-        book, site="ENTRY", parameter="pH", at="2026-03-10T07:00", value="8.44", reason="read wrongly", now=NOW + dt.timedelta(minutes=5))
+        book,
+        site="ENTRY",
+        parameter="pH",
+        at="2026-03-10T07:00",
+        value="8.44",
+        reason="read wrongly",
+        now=NOW + dt.timedelta(minutes=5),
+    )
     client = people.signed_in("mira")
     assert "a revision is due" in client.get("/w/TST/reports/").content.decode()
     page = client.get(MONTH).content.decode()
@@ -133,8 +145,15 @@ def test_the_due_day_of_the_form_is_kept_in_view(book: Book, monkeypatch: pytest
     from plant.works import actions as works
 
     works.state(
-        book=book, kind="report", subject="form", value={"regulator": "Water desk", "due_day": 10, "approval_reference": "F-7"},
-        effective_from=clock.BEGINNING, reason="stated", by=people.person("sam"), now=NOW)
+        book=book,
+        kind="report",
+        subject="form",
+        value={"regulator": "Water desk", "due_day": 10, "approval_reference": "F-7"},
+        effective_from=clock.BEGINNING,
+        reason="stated",
+        by=people.person("sam"),
+        now=NOW,
+    )
     client = people.signed_in("mira")
     assert "Due on 10 April." in client.get("/w/TST/reports/").content.decode()
     assert "Form approved under F-7." in client.get(MONTH).content.decode()
@@ -144,8 +163,14 @@ def test_the_due_day_of_the_form_is_kept_in_view(book: Book, monkeypatch: pytest
 
 def test_words_of_people_are_never_markup(book: Book) -> None:
     correct(
-        book, site="ENTRY", parameter="pH", at="2026-03-10T07:00", value="8.44", reason="<script>alert(1)</script>",
-        now=NOW - dt.timedelta(minutes=5))
+        book,
+        site="ENTRY",
+        parameter="pH",
+        at="2026-03-10T07:00",
+        value="8.44",
+        reason="<script>alert(1)</script>",
+        now=NOW - dt.timedelta(minutes=5),
+    )
     page = people.signed_in("mira").get(MONTH).content.decode()
     assert "<script>alert" not in page
     assert "&lt;script&gt;alert" in page

@@ -32,11 +32,18 @@ def test_same_content_same_bytes_through_json_and_in_another_process() -> None:
     made = documents.document()
     data = paper.render(made)
     assert paper.render(document.from_plain(json.loads(json.dumps(document.to_plain(made))))) == data
-    script = "import sys,hashlib; from tests.reports import documents; from plant.reports.pdf import paper; " \
-             "sys.stdout.write(hashlib.sha256(paper.render(documents.document())).hexdigest())"
+    script = (
+        "import sys,hashlib; from tests.reports import documents; from plant.reports.pdf import paper; "
+        "sys.stdout.write(hashlib.sha256(paper.render(documents.document())).hexdigest())"
+    )
     other = subprocess.run(
-        [sys.executable, "-c", script], capture_output=True, text=True, check=True, cwd=Path(__file__).parents[2],
-        env={"PYTHONHASHSEED": "77", "PATH": "/usr/bin:/bin", "TZ": "Asia/Tokyo"})
+        [sys.executable, "-c", script],
+        capture_output=True,
+        text=True,
+        check=True,
+        cwd=Path(__file__).parents[2],
+        env={"PYTHONHASHSEED": "77", "PATH": "/usr/bin:/bin", "TZ": "Asia/Tokyo"},
+    )
     assert other.stdout == hashlib.sha256(data).hexdigest()
 
 
@@ -138,7 +145,8 @@ def test_every_mark_of_a_page_has_its_element_and_the_other_way_round() -> None:
 def test_figures_carry_words_for_those_who_do_not_see_them() -> None:
     reader = read(paper.render(documents.document()))
     words = [
-        item.get_object()["/Alt"] for item in reader.root_object["/StructTreeRoot"]["/ParentTree"]["/Nums"][1]
+        item.get_object()["/Alt"]
+        for item in reader.root_object["/StructTreeRoot"]["/ParentTree"]["/Nums"][1]
         if item.get_object()["/S"] == "/Figure"
     ]
     assert len(words) == 4
@@ -174,20 +182,29 @@ def test_nothing_is_painted_outside_the_margins(page: str) -> None:
     """Long names, 31 days by 40 columns, words without blanks: the pixels of every margin stay white."""
     wide = documents.document(
         Section("wide", "Wide", (documents.doses(8), documents.words(6, "x" * 400), documents.strips(15))),
-        works_name="Państwowe Przedsiębiorstwo Wodociągów i Kanalizacji nad Bystrzycą " * 3, page=page,
-        cover=(("A name that is much longer than its column is wide", "Υ" * 300),))
+        works_name="Państwowe Przedsiębiorstwo Wodociągów i Kanalizacji nad Bystrzycą " * 3,
+        page=page,
+        cover=(("A name that is much longer than its column is wide", "Υ" * 300),),
+    )
     file = pypdfium2.PdfDocument(paper.render(wide))
     assert len(file) >= 6
     for sheet in file:
         picture = sheet.render(scale=1, grayscale=True).to_pil()
         width, height = picture.size
         margin = 40
-        for box in ((0, 0, margin, height), (width - margin, 0, width, height), (0, 0, width, 22), (0, height - 20, width, height)):
+        for box in (
+            (0, 0, margin, height),
+            (width - margin, 0, width, height),
+            (0, 0, width, 22),
+            (0, height - 20, width, height),
+        ):
             assert picture.crop(box).getextrema()[0] > 250
     file.close()
 
 
-@pytest.mark.parametrize("words", ["Zażółć gęślą jaźń", "Υπολειμματικό χλώριο", "Остаточный хлор", "Mg(OH)₂ ≤ 0.05 µg/L → 3 °dH"])
+@pytest.mark.parametrize(
+    "words", ["Zażółć gęślą jaźń", "Υπολειμματικό χλώριο", "Остаточный хлор", "Mg(OH)₂ ≤ 0.05 µg/L → 3 °dH"]
+)
 def test_other_scripts_are_printed_and_read_back(words: str) -> None:
     assert not faces.absent(words)
     assert words in "".join(texts(paper.render(documents.document(Section("s", words, (Text(words),))))))
@@ -199,7 +216,9 @@ def test_what_the_faces_cannot_print_is_known() -> None:
 
 def test_markup_in_words_stays_words() -> None:
     text = "<b>not bold</b> & <para>"
-    data = paper.render(documents.document(Section("s", text, (Text(text), Table("t", text, (Column(text),), ((Cell(text),),))))))
+    data = paper.render(
+        documents.document(Section("s", text, (Text(text), Table("t", text, (Column(text),), ((Cell(text),),)))))
+    )
     assert "".join(texts(data)).count("<b>not bold</b> &") >= 3
 
 

@@ -6,108 +6,159 @@ from django.db import migrations, models
 
 
 class Migration(migrations.Migration):
-
     initial = True
 
     dependencies = [
-        ('ledger', '0001_initial'),
+        ("ledger", "0001_initial"),
         migrations.swappable_dependency(settings.AUTH_USER_MODEL),
     ]
 
     operations = [
         migrations.CreateModel(
-            name='Report',
+            name="Report",
             fields=[
-                ('id', models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name='ID')),
-                ('seq', models.PositiveBigIntegerField()),
-                ('line', models.PositiveIntegerField()),
-                ('reason', models.TextField(blank=True)),
-                ('voided', models.BooleanField(default=False)),
-                ('month', models.CharField(max_length=7)),
-                ('number', models.CharField(max_length=40)),
-                ('revision', models.PositiveSmallIntegerField()),
-                ('known_seq', models.PositiveBigIntegerField()),
-                ('head_hash', models.CharField(max_length=64)),
-                ('renderer', models.CharField(max_length=40)),
-                ('content_hash', models.CharField(max_length=64)),
-                ('pdf_hash', models.CharField(max_length=64)),
-                ('prepared_name', models.CharField(max_length=160)),
-                ('prepared_licence', models.CharField(blank=True, max_length=160)),
-                ('prepared_at', models.DateTimeField(null=True)),
-                ('certified_name', models.CharField(max_length=160)),
-                ('certified_licence', models.CharField(blank=True, max_length=160)),
-                ('issued_at', models.DateTimeField()),
-                ('manner', models.CharField(max_length=40)),
-                ('explanations', models.JSONField(default=dict)),
-                ('book', models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name='+', to='ledger.book')),
-                ('certified_by', models.ForeignKey(null=True, on_delete=django.db.models.deletion.PROTECT, related_name='+', to=settings.AUTH_USER_MODEL)),
-                ('entry', models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name='+', to='ledger.entry')),
-                ('prepared_by', models.ForeignKey(null=True, on_delete=django.db.models.deletion.PROTECT, related_name='+', to=settings.AUTH_USER_MODEL)),
-                ('supersedes', models.OneToOneField(null=True, on_delete=django.db.models.deletion.PROTECT, related_name='superseded_by', to='reports.report')),
+                ("id", models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name="ID")),
+                ("seq", models.PositiveBigIntegerField()),
+                ("line", models.PositiveIntegerField()),
+                ("reason", models.TextField(blank=True)),
+                ("voided", models.BooleanField(default=False)),
+                ("month", models.CharField(max_length=7)),
+                ("number", models.CharField(max_length=40)),
+                ("revision", models.PositiveSmallIntegerField()),
+                ("known_seq", models.PositiveBigIntegerField()),
+                ("head_hash", models.CharField(max_length=64)),
+                ("renderer", models.CharField(max_length=40)),
+                ("content_hash", models.CharField(max_length=64)),
+                ("pdf_hash", models.CharField(max_length=64)),
+                ("prepared_name", models.CharField(max_length=160)),
+                ("prepared_licence", models.CharField(blank=True, max_length=160)),
+                ("prepared_at", models.DateTimeField(null=True)),
+                ("certified_name", models.CharField(max_length=160)),
+                ("certified_licence", models.CharField(blank=True, max_length=160)),
+                ("issued_at", models.DateTimeField()),
+                ("manner", models.CharField(max_length=40)),
+                ("explanations", models.JSONField(default=dict)),
+                ("book", models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name="+", to="ledger.book")),
+                (
+                    "certified_by",
+                    models.ForeignKey(
+                        null=True, on_delete=django.db.models.deletion.PROTECT, related_name="+", to=settings.AUTH_USER_MODEL
+                    ),
+                ),
+                ("entry", models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name="+", to="ledger.entry")),
+                (
+                    "prepared_by",
+                    models.ForeignKey(
+                        null=True, on_delete=django.db.models.deletion.PROTECT, related_name="+", to=settings.AUTH_USER_MODEL
+                    ),
+                ),
+                (
+                    "supersedes",
+                    models.OneToOneField(
+                        null=True,
+                        on_delete=django.db.models.deletion.PROTECT,
+                        related_name="superseded_by",
+                        to="reports.report",
+                    ),
+                ),
             ],
             options={
-                'abstract': False,
-                'base_manager_name': 'objects',
+                "abstract": False,
+                "base_manager_name": "objects",
             },
         ),
         migrations.CreateModel(
-            name='ReportFile',
+            name="ReportFile",
             fields=[
-                ('id', models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name='ID')),
-                ('content', models.TextField()),
-                ('pdf', models.BinaryField()),
-                ('report', models.OneToOneField(on_delete=django.db.models.deletion.PROTECT, related_name='file', to='reports.report')),
+                ("id", models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name="ID")),
+                ("content", models.TextField()),
+                ("pdf", models.BinaryField()),
+                (
+                    "report",
+                    models.OneToOneField(on_delete=django.db.models.deletion.PROTECT, related_name="file", to="reports.report"),
+                ),
             ],
             options={
-                'abstract': False,
-                'base_manager_name': 'objects',
+                "abstract": False,
+                "base_manager_name": "objects",
             },
         ),
         migrations.CreateModel(
-            name='Preparation',
+            name="Preparation",
             fields=[
-                ('id', models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name='ID')),
-                ('seq', models.PositiveBigIntegerField()),
-                ('line', models.PositiveIntegerField()),
-                ('reason', models.TextField(blank=True)),
-                ('voided', models.BooleanField(default=False)),
-                ('month', models.CharField(max_length=7)),
-                ('known_seq', models.PositiveBigIntegerField()),
-                ('figures_hash', models.CharField(max_length=64)),
-                ('prepared_name', models.CharField(max_length=160)),
-                ('prepared_licence', models.CharField(blank=True, max_length=160)),
-                ('prepared_at', models.DateTimeField()),
-                ('explanations', models.JSONField(default=dict)),
-                ('book', models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name='+', to='ledger.book')),
-                ('entry', models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name='+', to='ledger.entry')),
-                ('prepared_by', models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name='+', to=settings.AUTH_USER_MODEL)),
-                ('supersedes', models.OneToOneField(null=True, on_delete=django.db.models.deletion.PROTECT, related_name='superseded_by', to='reports.preparation')),
+                ("id", models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name="ID")),
+                ("seq", models.PositiveBigIntegerField()),
+                ("line", models.PositiveIntegerField()),
+                ("reason", models.TextField(blank=True)),
+                ("voided", models.BooleanField(default=False)),
+                ("month", models.CharField(max_length=7)),
+                ("known_seq", models.PositiveBigIntegerField()),
+                ("figures_hash", models.CharField(max_length=64)),
+                ("prepared_name", models.CharField(max_length=160)),
+                ("prepared_licence", models.CharField(blank=True, max_length=160)),
+                ("prepared_at", models.DateTimeField()),
+                ("explanations", models.JSONField(default=dict)),
+                ("book", models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name="+", to="ledger.book")),
+                ("entry", models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name="+", to="ledger.entry")),
+                (
+                    "prepared_by",
+                    models.ForeignKey(
+                        on_delete=django.db.models.deletion.PROTECT, related_name="+", to=settings.AUTH_USER_MODEL
+                    ),
+                ),
+                (
+                    "supersedes",
+                    models.OneToOneField(
+                        null=True,
+                        on_delete=django.db.models.deletion.PROTECT,
+                        related_name="superseded_by",
+                        to="reports.preparation",
+                    ),
+                ),
             ],
             options={
-                'abstract': False,
-                'base_manager_name': 'objects',
-                'indexes': [models.Index(fields=['book', 'month', 'seq'], name='preparation_by_month')],
-                'constraints': [models.UniqueConstraint(fields=('entry', 'line'), name='preparation_line_once'), models.CheckConstraint(condition=models.Q(('supersedes__isnull', True), models.Q(('reason', ''), _negated=True), _connector='OR'), name='preparation_correction_has_reason'), models.CheckConstraint(condition=models.Q(('voided', False), ('supersedes__isnull', False), _connector='OR'), name='preparation_void_of_something')],
+                "abstract": False,
+                "base_manager_name": "objects",
+                "indexes": [models.Index(fields=["book", "month", "seq"], name="preparation_by_month")],
+                "constraints": [
+                    models.UniqueConstraint(fields=("entry", "line"), name="preparation_line_once"),
+                    models.CheckConstraint(
+                        condition=models.Q(
+                            ("supersedes__isnull", True), models.Q(("reason", ""), _negated=True), _connector="OR"
+                        ),
+                        name="preparation_correction_has_reason",
+                    ),
+                    models.CheckConstraint(
+                        condition=models.Q(("voided", False), ("supersedes__isnull", False), _connector="OR"),
+                        name="preparation_void_of_something",
+                    ),
+                ],
             },
         ),
         migrations.AddIndex(
-            model_name='report',
-            index=models.Index(fields=['book', 'month'], name='report_by_month'),
+            model_name="report",
+            index=models.Index(fields=["book", "month"], name="report_by_month"),
         ),
         migrations.AddConstraint(
-            model_name='report',
-            constraint=models.UniqueConstraint(fields=('entry', 'line'), name='report_line_once'),
+            model_name="report",
+            constraint=models.UniqueConstraint(fields=("entry", "line"), name="report_line_once"),
         ),
         migrations.AddConstraint(
-            model_name='report',
-            constraint=models.CheckConstraint(condition=models.Q(('supersedes__isnull', True), models.Q(('reason', ''), _negated=True), _connector='OR'), name='report_correction_has_reason'),
+            model_name="report",
+            constraint=models.CheckConstraint(
+                condition=models.Q(("supersedes__isnull", True), models.Q(("reason", ""), _negated=True), _connector="OR"),
+                name="report_correction_has_reason",
+            ),
         ),
         migrations.AddConstraint(
-            model_name='report',
-            constraint=models.CheckConstraint(condition=models.Q(('voided', False), ('supersedes__isnull', False), _connector='OR'), name='report_void_of_something'),
+            model_name="report",
+            constraint=models.CheckConstraint(
+                condition=models.Q(("voided", False), ("supersedes__isnull", False), _connector="OR"),
+                name="report_void_of_something",
+            ),
         ),
         migrations.AddConstraint(
-            model_name='report',
-            constraint=models.UniqueConstraint(fields=('book', 'month', 'revision'), name='report_revision_once'),
+            model_name="report",
+            constraint=models.UniqueConstraint(fields=("book", "month", "revision"), name="report_revision_once"),
         ),
     ]

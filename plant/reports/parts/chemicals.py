@@ -20,8 +20,11 @@ def section(month: Month) -> Section:
     blocks: list[Block] = [
         _table(month, "use-month", f"Use per volume treated, {month.words}", month.periods),
         _table(
-            month, "use-year", f"Year to date, {month.year_first:%Y-%m-%d} to {month.last:%Y-%m-%d}",
-            [month.year_to_date[row.dosing_point] for row in month.periods if row.dosing_point in month.year_to_date]),
+            month,
+            "use-year",
+            f"Year to date, {month.year_first:%Y-%m-%d} to {month.last:%Y-%m-%d}",
+            [month.year_to_date[row.dosing_point] for row in month.periods if row.dosing_point in month.year_to_date],
+        ),
     ]
     maximum = _maximum(month)
     if maximum is not None:
@@ -34,15 +37,24 @@ def strips(month: Month) -> Picture:
     facts = []
     for row in month.periods:
         point = month.points_by_code.get(row.dosing_point)
-        facts.append({
-            "title": f"{row.dosing_point}, mg/L {daily.basis_words(row.dose_basis)}" if point else row.dosing_point,
-            "unit": "mg/L", "used": measures.steady(row.used_mg_l.value), "design": measures.steady(row.design_mg_l.value),
-            "need": measures.steady(row.need_mg_l.value), "used_sd": measures.steady(row.used_mg_l.sd), "tolerance_pct": _tolerance(month, row.dosing_point),
-            "why_unknown": "; ".join(row.remarks),
-        })
+        facts.append(
+            {
+                "title": f"{row.dosing_point}, mg/L {daily.basis_words(row.dose_basis)}" if point else row.dosing_point,
+                "unit": "mg/L",
+                "used": measures.steady(row.used_mg_l.value),
+                "design": measures.steady(row.design_mg_l.value),
+                "need": measures.steady(row.need_mg_l.value),
+                "used_sd": measures.steady(row.used_mg_l.sd),
+                "tolerance_pct": _tolerance(month, row.dosing_point),
+                "why_unknown": "; ".join(row.remarks),
+            }
+        )
     return Picture(
-        "dose_strips", {"strips": facts}, "Used, designed and needed dose of each dosing point over the month.",
-        "Dose of the month: used (dot), design (band), need (notch)")
+        "dose_strips",
+        {"strips": facts},
+        "Used, designed and needed dose of each dosing point over the month.",
+        "Dose of the month: used (dot), design (band), need (notch)",
+    )
 
 
 def _tolerance(month: Month, code: str) -> float:
@@ -57,10 +69,19 @@ def _table(month: Month, name: str, caption: str, rows: list[PeriodDose]) -> Tab
     show = month.measures
     per = f"{show.label('kg')}/{show.label('ML')}"
     columns = (
-        Column("Dosing point", number=False), Column("Product", number=False), Column("Treated", show.label("ML")),
-        Column("product", show.label("kg")), Column("product per volume", per), Column("as dosed", show.label("kg")),
-        Column("used", "mg/L"), Column("± 2 sd", "mg/L"), Column("design", "mg/L"), Column("need", "mg/L"),
-        Column("used / design", "%"), Column("days", "known/due"), Column("stated as", number=False),
+        Column("Dosing point", number=False),
+        Column("Product", number=False),
+        Column("Treated", show.label("ML")),
+        Column("product", show.label("kg")),
+        Column("product per volume", per),
+        Column("as dosed", show.label("kg")),
+        Column("used", "mg/L"),
+        Column("± 2 sd", "mg/L"),
+        Column("design", "mg/L"),
+        Column("need", "mg/L"),
+        Column("used / design", "%"),
+        Column("days", "known/due"),
+        Column("stated as", number=False),
     )
     body = []
     for row in rows:
@@ -69,24 +90,41 @@ def _table(month: Month, name: str, caption: str, rows: list[PeriodDose]) -> Tab
         volume, product = show.shown(row.volume_ml.value, "ML"), show.shown(row.product_kg.value, "kg")
         active = show.shown(row.active_kg.value, "kg")
         each = None if product is None or not volume else product / volume
-        share = None if row.used_mg_l.value is None or not row.design_mg_l.value else 100 * row.used_mg_l.value / row.design_mg_l.value
-        body.append((
-            Cell(row.dosing_point), Cell(row.product),
-            measures.cell(volume, measures.decimals([volume], figures=5, most=3), key=row.volume_ml.key),
-            measures.cell(product, measures.decimals([product], figures=5, most=2), key=row.product_kg.key),
-            measures.cell(each, measures.decimals([each]), key=row.product_kg.key),
-            measures.cell(active, measures.decimals([active], figures=5, most=2), key=row.active_kg.key),
-            measures.cell(row.used_mg_l.value, places, key=row.used_mg_l.key),
-            measures.cell(None if row.used_mg_l.sd is None else 2 * row.used_mg_l.sd, places, key=row.used_mg_l.key),
-            measures.cell(row.design_mg_l.value, places, key=row.design_mg_l.key),
-            measures.cell(row.need_mg_l.value, places, key=row.need_mg_l.key),
-            measures.cell(share, 0, key=row.used_mg_l.key),
-            Cell(f"{row.days_counted}/{row.days_expected}", None), Cell(daily.basis_words(row.dose_basis)),
-        ))
-    return Table(name, caption, columns, tuple(body), 2, 0, (
-        "Dose is mass over volume of the days on which both are known, never a mean of daily doses; design and need are "
-        "weighted by the water treated. “As dosed” is the mass in the basis the dose is stated in. "
-        f"1 mg/L is 1 kg/ML{' and 8.3454 lb/MG' if show.system == 'us' else ''}.",))
+        share = (
+            None
+            if row.used_mg_l.value is None or not row.design_mg_l.value
+            else 100 * row.used_mg_l.value / row.design_mg_l.value
+        )
+        body.append(
+            (
+                Cell(row.dosing_point),
+                Cell(row.product),
+                measures.cell(volume, measures.decimals([volume], figures=5, most=3), key=row.volume_ml.key),
+                measures.cell(product, measures.decimals([product], figures=5, most=2), key=row.product_kg.key),
+                measures.cell(each, measures.decimals([each]), key=row.product_kg.key),
+                measures.cell(active, measures.decimals([active], figures=5, most=2), key=row.active_kg.key),
+                measures.cell(row.used_mg_l.value, places, key=row.used_mg_l.key),
+                measures.cell(None if row.used_mg_l.sd is None else 2 * row.used_mg_l.sd, places, key=row.used_mg_l.key),
+                measures.cell(row.design_mg_l.value, places, key=row.design_mg_l.key),
+                measures.cell(row.need_mg_l.value, places, key=row.need_mg_l.key),
+                measures.cell(share, 0, key=row.used_mg_l.key),
+                Cell(f"{row.days_counted}/{row.days_expected}", None),
+                Cell(daily.basis_words(row.dose_basis)),
+            )
+        )
+    return Table(
+        name,
+        caption,
+        columns,
+        tuple(body),
+        2,
+        0,
+        (
+            "Dose is mass over volume of the days on which both are known, never a mean of daily doses; design and need are "
+            "weighted by the water treated. “As dosed” is the mass in the basis the dose is stated in. "
+            f"1 mg/L is 1 kg/ML{' and 8.3454 lb/MG' if show.system == 'us' else ''}.",
+        ),
+    )
 
 
 def _maximum(month: Month) -> Table | None:
@@ -101,18 +139,37 @@ def _maximum(month: Month) -> Table | None:
         highest = _highest(days, month)
         worst, last, counted = highest if highest else (None, None, 0)
         places = measures.decimals([worst, product.certified_maximum_mg_per_L], most=2)
-        body.append((
-            Cell(row.dosing_point), Cell(row.product), measures.cell(worst, places),
-            Cell(measures.UNKNOWN if last is None else month.day_words(last)), Cell(str(counted), float(counted)),
-            measures.cell(product.certified_maximum_mg_per_L, places),
-        ))
+        body.append(
+            (
+                Cell(row.dosing_point),
+                Cell(row.product),
+                measures.cell(worst, places),
+                Cell(measures.UNKNOWN if last is None else month.day_words(last)),
+                Cell(str(counted), float(counted)),
+                measures.cell(product.certified_maximum_mg_per_L, places),
+            )
+        )
     if not body:
         return None
-    return Table("maximum", f"Highest dose as product over {SEVEN_DAYS} days", (
-        Column("Dosing point", number=False), Column("Product", number=False), Column("highest", "mg/L as product"),
-        Column("seven days ending", number=False), Column("days known"), Column("certified maximum", "mg/L as product"),
-    ), tuple(body), 2, 0, (f"Mass over volume of the seven operating days ending on the day named. Units: mg/L; {show.label('kg')} "
-                           "figures stand above.",))
+    return Table(
+        "maximum",
+        f"Highest dose as product over {SEVEN_DAYS} days",
+        (
+            Column("Dosing point", number=False),
+            Column("Product", number=False),
+            Column("highest", "mg/L as product"),
+            Column("seven days ending", number=False),
+            Column("days known"),
+            Column("certified maximum", "mg/L as product"),
+        ),
+        tuple(body),
+        2,
+        0,
+        (
+            f"Mass over volume of the seven operating days ending on the day named. Units: mg/L; {show.label('kg')} "
+            "figures stand above.",
+        ),
+    )
 
 
 def _highest(days: list[DayDose], month: Month) -> tuple[float, object, int] | None:
@@ -120,13 +177,23 @@ def _highest(days: list[DayDose], month: Month) -> tuple[float, object, int] | N
     for position, row in enumerate(days):
         if row.day < month.first:
             continue
-        week = days[max(0, position - SEVEN_DAYS + 1):position + 1]
-        mean = doses.product_over([
-            doses.Dosed(
-                item.used_mg_l.value, item.used_mg_l.sd, item.design_mg_l.value, item.need_mg_l.value,
-                item.volume_ml.value, item.active_kg.value, item.product_kg.value, item.weak)
-            for item in week
-        ], days=SEVEN_DAYS)
+        week = days[max(0, position - SEVEN_DAYS + 1) : position + 1]
+        mean = doses.product_over(
+            [
+                doses.Dosed(
+                    item.used_mg_l.value,
+                    item.used_mg_l.sd,
+                    item.design_mg_l.value,
+                    item.need_mg_l.value,
+                    item.volume_ml.value,
+                    item.active_kg.value,
+                    item.product_kg.value,
+                    item.weak,
+                )
+                for item in week
+            ],
+            days=SEVEN_DAYS,
+        )
         if mean is not None:
             found.append((mean[0], row.day, mean[1]))
     return max(found, key=lambda item: item[0]) if found else None

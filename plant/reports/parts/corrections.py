@@ -10,8 +10,12 @@ from plant.reports.pdf.document import Cell, Column, Section, Table
 
 KEY, TITLE = "corrections", "Corrections"
 COLUMNS = (
-    Column("What", number=False, wraps=True), Column("Of", number=False), Column("Was", number=False, wraps=True),
-    Column("Is", number=False, wraps=True), Column("By", number=False), Column("Recorded", number=False),
+    Column("What", number=False, wraps=True),
+    Column("Of", number=False),
+    Column("Was", number=False, wraps=True),
+    Column("Is", number=False, wraps=True),
+    Column("By", number=False),
+    Column("Recorded", number=False),
     Column("Why", number=False, wraps=True),
 )
 
@@ -19,18 +23,35 @@ COLUMNS = (
 def section(month: Month) -> Section:
     """Everything in the month that was corrected, withdrawn or settled before this report."""
     found = changes.corrections(month.book, month.start, month.end, until=month.known)
-    return Section(KEY, TITLE, (
-        Table("corrections", "Records corrected, withdrawn or settled", COLUMNS, rows(month, found), 1, 0, (
-            "What was observed is never overwritten: both values stay in the book.",) if found else (),
-            "No record of the month was corrected, withdrawn or settled."),))
+    return Section(
+        KEY,
+        TITLE,
+        (
+            Table(
+                "corrections",
+                "Records corrected, withdrawn or settled",
+                COLUMNS,
+                rows(month, found),
+                1,
+                0,
+                ("What was observed is never overwritten: both values stay in the book.",) if found else (),
+                "No record of the month was corrected, withdrawn or settled.",
+            ),
+        ),
+    )
 
 
 def rows(month: Month, found: Iterable[changes.Change]) -> tuple[tuple[Cell, ...], ...]:
     """Changes as rows of a table."""
     return tuple(
         (
-            Cell(change.what), Cell(month.local(change.of)), Cell(change.old, key=_key(change)), Cell(change.new, key=_key(change)),
-            Cell(change.who), Cell(month.local(change.recorded_at)), Cell(change.why or "no reason given"),
+            Cell(change.what),
+            Cell(month.local(change.of)),
+            Cell(change.old, key=_key(change)),
+            Cell(change.new, key=_key(change)),
+            Cell(change.who),
+            Cell(month.local(change.recorded_at)),
+            Cell(change.why or "no reason given"),
         )
         for change in found
     )

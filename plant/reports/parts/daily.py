@@ -21,7 +21,9 @@ def section(month: Month) -> Section:
         blocks.append(_doses(month))
     else:
         blocks.append(Text("No dosing point is stated."))
-    blocks += [_water(month, point.code, point.name) for point in month.stated.sample_points(month.at) if _read(month, point.code)]
+    blocks += [
+        _water(month, point.code, point.name) for point in month.stated.sample_points(month.at) if _read(month, point.code)
+    ]
     return Section(KEY, TITLE, tuple(blocks))
 
 
@@ -38,14 +40,17 @@ def _doses(month: Month) -> Table:
     meters = _meters(month, codes)
     columns = [Column("Day", number=False)]
     columns += [Column(f"Treated {meter}", show.label("ML")) for meter in meters]
-    series: list[tuple[str, str, str, list[Figure | None], Figure | None]] = []
-    for code in meters.values():
-        series.append(("ML", "", "", [_figure(by_day.get((day, code)), "volume_ml") for day in month.days], periods[code].volume_ml))
+    series: list[tuple[str, str, str, list[Figure | None], Figure | None]] = [
+        ("ML", "", "", [_figure(by_day.get((day, code)), "volume_ml") for day in month.days], periods[code].volume_ml)
+        for code in meters.values()
+    ]
     for code in codes:
         rows = [by_day.get((day, code)) for day in month.days]
         total = periods[code]
         for head, field, unit in (
-            ("product", "product_kg", "kg"), ("used", "used_mg_l", "mg/L"), ("design", "design_mg_l", "mg/L"),
+            ("product", "product_kg", "kg"),
+            ("used", "used_mg_l", "mg/L"),
+            ("design", "design_mg_l", "mg/L"),
             ("need", "need_mg_l", "mg/L"),
         ):
             columns.append(Column(head, show.label(unit), code))
@@ -55,14 +60,19 @@ def _doses(month: Month) -> Table:
                 series.append((unit, code, "sd", [_twice_sd(figure) for figure in series[-1][3]], _twice_sd(total.used_mg_l)))
     places = _places(month, series)
     body = [
-        (Cell(month.day_words(day)), *(
-            _cell(month, one, one[3][position], places[index], _mark(by_day.get((day, one[1])), one[2]))
-            for index, one in enumerate(series)))
+        (
+            Cell(month.day_words(day)),
+            *(
+                _cell(month, one, one[3][position], places[index], _mark(by_day.get((day, one[1])), one[2]))
+                for index, one in enumerate(series)
+            ),
+        )
         for position, day in enumerate(month.days)
     ]
     body.append((Cell("Month"), *(_cell(month, one, one[4], places[index], "") for index, one in enumerate(series))))
     return Table(
-        "doses", "Water treated and product dosed, by operating day", tuple(columns), tuple(body), 1, 1, _notes(month, codes))
+        "doses", "Water treated and product dosed, by operating day", tuple(columns), tuple(body), 1, 1, _notes(month, codes)
+    )
 
 
 def _meters(month: Month, codes: list[str]) -> dict[str, str]:
@@ -101,7 +111,9 @@ def _places(month: Month, series: list[tuple[str, str, str, list[Figure | None],
     return out
 
 
-def _cell(month: Month, one: tuple[str, str, str, list[Figure | None], Figure | None], figure: Figure | None, places: int, mark: str) -> Cell:
+def _cell(
+    month: Month, one: tuple[str, str, str, list[Figure | None], Figure | None], figure: Figure | None, places: int, mark: str
+) -> Cell:
     if figure is None:
         return Cell(measures.UNKNOWN, None, "", mark)
     return measures.cell(month.measures.shown(figure.value, one[0]), places, key=figure.key, mark=mark)
@@ -123,8 +135,10 @@ def _notes(month: Month, codes: list[str]) -> tuple[str, ...]:
         row = next(item for item in rows if item.dosing_point == code)
         point, product = month.points_by_code.get(code), month.products.get(row.product)
         names.append(
-            f"{code}: {product.name if product else row.product}" + (f", {point.name}" if point else "")
-            + f"; doses in mg/L {basis_words(row.dose_basis)}.")
+            f"{code}: {product.name if product else row.product}"
+            + (f", {point.name}" if point else "")
+            + f"; doses in mg/L {basis_words(row.dose_basis)}."
+        )
     marks = {
         "w": "w: weak, the day's use is under 5 % of the vessel; the seven-day figure is the one judged.",
         "c": "c: rests on a corrected record.",
@@ -135,8 +149,11 @@ def _notes(month: Month, codes: list[str]) -> tuple[str, ...]:
     notes = [" ".join(names), *(words for letter, words in marks.items() if letter in used)]
     if interpolated:
         notes.append(
-            f"On {interpolated} of {len(month.days)} days a reading was interpolated to the start or end of the operating day.")
-    long = [f"{month.day_words(day)} has {hours:g} hours" for day in month.days if (hours := month.calendar.hours_in(day)) != 24]
+            f"On {interpolated} of {len(month.days)} days a reading was interpolated to the start or end of the operating day."
+        )
+    long = [
+        f"{month.day_words(day)} has {hours:g} hours" for day in month.days if (hours := month.calendar.hours_in(day)) != 24
+    ]
     if long:
         notes.append("Change of clocks: " + "; ".join(long) + ".")
     notes.append(f"{measures.UNKNOWN}: not known; the reasons stand under Missing data. The month's dose is mass over volume.")
@@ -169,8 +186,15 @@ def _water(month: Month, site: str, name: str) -> Table:
         for what, by_day, places in fields:
             cells.append(_water_cell(month, what, by_day.get(day, []), places))
         body.append(tuple(cells))
-    return Table(f"water-{site}", f"{site}, {name}: each operating day", tuple(columns), tuple(body), 1, 0, (
-        "Readings that are doubtful and not settled, or set aside, are left out here and counted under Water quality.",))
+    return Table(
+        f"water-{site}",
+        f"{site}, {name}: each operating day",
+        tuple(columns),
+        tuple(body),
+        1,
+        0,
+        ("Readings that are doubtful and not settled, or set aside, are left out here and counted under Water quality.",),
+    )
 
 
 def _water_cell(month: Month, what: str, points: list[Point], places: int) -> Cell:

@@ -18,16 +18,43 @@ def section(month: Month) -> Section:
     rows = tuple(_row(month, number, view) for number, view in enumerate(found, start=1))
     life = tuple(row for number, view in enumerate(found, start=1) for row in _life(month, number, view))
     blocks = [
-        Table("deviations", "Outside a stated limit, worst first", (
-            Column("No."), Column("Level", number=False), Column("What", number=False, wraps=True), Column("Since", number=False),
-            Column("Found", number=False, wraps=True), Column("Limit", number=False, wraps=True), Column("State", number=False),
-            Column("hours to close"), Column("Likely causes", number=False, wraps=True),
-        ), rows, 1, 0, (), "No deviation was raised for a day of the month."),
+        Table(
+            "deviations",
+            "Outside a stated limit, worst first",
+            (
+                Column("No."),
+                Column("Level", number=False),
+                Column("What", number=False, wraps=True),
+                Column("Since", number=False),
+                Column("Found", number=False, wraps=True),
+                Column("Limit", number=False, wraps=True),
+                Column("State", number=False),
+                Column("hours to close"),
+                Column("Likely causes", number=False, wraps=True),
+            ),
+            rows,
+            1,
+            0,
+            (),
+            "No deviation was raised for a day of the month.",
+        ),
     ]
     if life:
-        blocks.append(Table("deviation-events", "Who was told, cause, action, and the reading back inside", (
-            Column("No."), Column("When", number=False), Column("Step", number=False), Column("By", number=False),
-            Column("Words", number=False, wraps=True)), life, 1))
+        blocks.append(
+            Table(
+                "deviation-events",
+                "Who was told, cause, action, and the reading back inside",
+                (
+                    Column("No."),
+                    Column("When", number=False),
+                    Column("Step", number=False),
+                    Column("By", number=False),
+                    Column("Words", number=False, wraps=True),
+                ),
+                life,
+                1,
+            )
+        )
     owed = [f"No. {number}" for number, view in enumerate(found, start=1) if view.tellings_owed]
     if owed:
         blocks.append(Text("Somebody is still to be told of: " + ", ".join(owed) + ".", "caution"))
@@ -40,13 +67,19 @@ def views(month: Month) -> list[DeviationView]:
 
 
 def _row(month: Month, number: int, view: DeviationView) -> tuple[Cell, ...]:
-    ended = [event.at for event in view.events if event.kind == "closed" or (event.kind == "corrected_away" and event.day is None)]
+    ended = [
+        event.at for event in view.events if event.kind == "closed" or (event.kind == "corrected_away" and event.day is None)
+    ]
     hours = (ended[-1] - view.since).total_seconds() / 3600 if ended else None
     what = " ".join(part.replace("_", " ") for part in (view.subject, view.parameter, f"({view.kind})") if part)
     days = f" ({len(view.days)} days, to {month.day_words(view.last_day)})" if len(view.days) > 1 else ""
     return (
-        Cell(str(number), float(number), f"deviation:{view.ref}"), Cell(view.level), Cell(what), Cell(month.local(view.since)),
-        Cell(f"{view.value}{days}"), Cell(view.limit),
+        Cell(str(number), float(number), f"deviation:{view.ref}"),
+        Cell(view.level),
+        Cell(what),
+        Cell(month.local(view.since)),
+        Cell(f"{view.value}{days}"),
+        Cell(view.limit),
         Cell(view.state.replace("_", " ") + (", correction awaits approval" if view.awaiting_approval else "")),
         Cell(measures.UNKNOWN) if hours is None else measures.cell(hours, 1),
         Cell(", ".join(name.replace("_", " ") for name in view.likely_causes)),
@@ -54,15 +87,29 @@ def _row(month: Month, number: int, view: DeviationView) -> tuple[Cell, ...]:
 
 
 STEPS = {
-    "acknowledged": "acknowledged", "told": "told", "cause": "cause", "action": "action", "verified": "back inside", "closed": "closed",
-    "comment": "comment", "corrected_away": "corrected away", "approved": "approved",
+    "acknowledged": "acknowledged",
+    "told": "told",
+    "cause": "cause",
+    "action": "action",
+    "verified": "back inside",
+    "closed": "closed",
+    "comment": "comment",
+    "corrected_away": "corrected away",
+    "approved": "approved",
 }
 
 
 def _life(month: Month, number: int, view: DeviationView) -> list[tuple[Cell, ...]]:
     return [
-        (Cell(str(number), float(number)), Cell(month.local(event.at)), Cell(STEPS[event.kind]), Cell(event.by or "the program"), Cell(_said(event)))
-        for event in view.events if event.kind in STEPS
+        (
+            Cell(str(number), float(number)),
+            Cell(month.local(event.at)),
+            Cell(STEPS[event.kind]),
+            Cell(event.by or "the program"),
+            Cell(_said(event)),
+        )
+        for event in view.events
+        if event.kind in STEPS
     ]
 
 

@@ -52,11 +52,23 @@ def _lowest(month: Month, site: str, parameter: str, points: list[Point]) -> Tab
         lowest = min(recorded or found, key=values.order)
         grabs = len(found) - len(recorded)
         words = "recorder's minimum of the day" if recorded else f"lowest of {grabs} grab reading{'s' if grabs != 1 else ''}"
-        body.append((
-            Cell(month.day_words(day)), values.cell(month, lowest, places), Cell(month.local(lowest.at)[11:]), Cell(words)))
-    return Table(f"lowest-{site}-{parameter}", f"{site}: lowest {label.lower()} of each operating day", (
-        Column("Day", number=False), Column("lowest", unit), Column("at", "local"), Column("Rests on", number=False),
-    ), tuple(body), 1, 0, ("Grab readings can miss the lowest value of a day; only a recorder sees it.",))
+        body.append(
+            (Cell(month.day_words(day)), values.cell(month, lowest, places), Cell(month.local(lowest.at)[11:]), Cell(words))
+        )
+    return Table(
+        f"lowest-{site}-{parameter}",
+        f"{site}: lowest {label.lower()} of each operating day",
+        (
+            Column("Day", number=False),
+            Column("lowest", unit),
+            Column("at", "local"),
+            Column("Rests on", number=False),
+        ),
+        tuple(body),
+        1,
+        0,
+        ("Grab readings can miss the lowest value of a day; only a recorder sees it.",),
+    )
 
 
 def _dips(month: Month) -> Table | None:
@@ -67,7 +79,9 @@ def _dips(month: Month) -> Table | None:
     for limit in month.stated.limits(month.at):
         if limit.subject not in entries or limit.parameter not in RESIDUALS:
             continue
-        low = limit.keys.get("limit") if limit.kind == "held_below" else limit.keys.get("low") if limit.kind == "bound" else None
+        low = (
+            limit.keys.get("limit") if limit.kind == "held_below" else limit.keys.get("low") if limit.kind == "bound" else None
+        )
         if low is None:
             continue
         asked = True
@@ -75,23 +89,49 @@ def _dips(month: Month) -> Table | None:
         points = [point for point in month.series.get((limit.subject, limit.parameter), []) if point.decimal is not None]
         observed = [
             Observed(point.at, point.decimal, point.qualifier, point.ref)
-            for point in points if point.settled != "set_aside" and point.decimal is not None
+            for point in points
+            if point.settled != "set_aside" and point.decimal is not None
         ]
         label, unit, _ = values.printed(month, limit.parameter)
         for dip in durations.dips(observed, lambda item, bound=bound: bounds.below(item, bound)):
             until = dip.end or min(month.end, month.now)
-            body.append((
-                Cell(limit.subject), Cell(label), Cell(f"{low:g} {unit}"), Cell(limit.level), Cell(month.local(dip.start)),
-                Cell(month.local(dip.end) if dip.end else "not back by the end"), measures.cell(dip.hours(until), 2),
-                Cell(dip.worst.text, float(dip.worst.value), f"reading:{dip.worst.ref}")))
+            body.append(
+                (
+                    Cell(limit.subject),
+                    Cell(label),
+                    Cell(f"{low:g} {unit}"),
+                    Cell(limit.level),
+                    Cell(month.local(dip.start)),
+                    Cell(month.local(dip.end) if dip.end else "not back by the end"),
+                    measures.cell(dip.hours(until), 2),
+                    Cell(dip.worst.text, float(dip.worst.value), f"reading:{dip.worst.ref}"),
+                )
+            )
     if not asked:
         return None
-    return Table("dips", "Times below a stated minimum residual", (
-        Column("Site", number=False), Column("Residual", number=False), Column("below", number=False), Column("level", number=False),
-        Column("from", number=False), Column("first reading back", number=False), Column("hours"), Column("lowest"),
-    ), tuple(body), 2, 0, (
-        "From the first reading below to the first reading back (40 CFR 141.72(b)(2)); doubtful readings that nobody has settled are "
-        "included. Who was told stands under Deviations.",), "No reading lay below a stated minimum.")
+    return Table(
+        "dips",
+        "Times below a stated minimum residual",
+        (
+            Column("Site", number=False),
+            Column("Residual", number=False),
+            Column("below", number=False),
+            Column("level", number=False),
+            Column("from", number=False),
+            Column("first reading back", number=False),
+            Column("hours"),
+            Column("lowest"),
+        ),
+        tuple(body),
+        2,
+        0,
+        (
+            "From the first reading below to the first reading back (40 CFR 141.72(b)(2)); doubtful readings that "
+            "nobody has settled are "
+            "included. Who was told stands under Deviations.",
+        ),
+        "No reading lay below a stated minimum.",
+    )
 
 
 def _contact(month: Month) -> list[Block]:
@@ -101,19 +141,54 @@ def _contact(month: Month) -> list[Block]:
     days = inactivation.days(month)
     body = []
     for day in month.days:
-        for result in days[day]:
-            body.append((
-                Cell(month.day_words(day)), Cell(result.segment), measures.cell(result.residual_mg_l, 2), measures.cell(result.t10_min, 1),
-                measures.cell(month.measures.shown(result.temperature_c, "°C"), 1), measures.cell(result.ph, 2),
-                measures.cell(month.measures.shown(result.peak_flow_m3_h, "m3/h"), 1), measures.cell(result.ct_mg_min_l, 1),
-                measures.cell(result.ct_required_mg_min_l, 1), measures.cell(result.ratio, 2), Cell(result.remark)))
+        body += [_segment(month, day, result) for result in days[day]]
         if len(segments) > 1:
             total = inactivation.total(days[day])
-            body.append((Cell(month.day_words(day)), Cell("all segments"), *(Cell("") for _ in range(7)), measures.cell(total, 2), Cell("")))
+            body.append(
+                (
+                    Cell(month.day_words(day)),
+                    Cell("all segments"),
+                    *(Cell("") for _ in range(7)),
+                    measures.cell(total, 2),
+                    Cell(""),
+                )
+            )
     return [
-        Table("ct", "Inactivation by CT, by operating day and segment", (
-            Column("Day", number=False), Column("Segment", number=False), Column("residual", "mg/L"), Column("T10", "min"),
-            Column("temp.", month.measures.label("°C")), Column("pH"), Column("peak flow", month.measures.label("m3/h")),
-            Column("CT", "mg·min/L"), Column("CT required", "mg·min/L"), Column("ratio"), Column("Remarks", number=False, wraps=True),
-        ), tuple(body), 2, 0, inactivation.notes(month, days)),
+        Table(
+            "ct",
+            "Inactivation by CT, by operating day and segment",
+            (
+                Column("Day", number=False),
+                Column("Segment", number=False),
+                Column("residual", "mg/L"),
+                Column("T10", "min"),
+                Column("temp.", month.measures.label("°C")),
+                Column("pH"),
+                Column("peak flow", month.measures.label("m3/h")),
+                Column("CT", "mg·min/L"),
+                Column("CT required", "mg·min/L"),
+                Column("ratio"),
+                Column("Remarks", number=False, wraps=True),
+            ),
+            tuple(body),
+            2,
+            0,
+            inactivation.notes(month, days),
+        ),
     ]
+
+
+def _segment(month: Month, day: dt.date, result: inactivation.SegmentDay) -> tuple[Cell, ...]:
+    return (
+        Cell(month.day_words(day)),
+        Cell(result.segment),
+        measures.cell(result.residual_mg_l, 2),
+        measures.cell(result.t10_min, 1),
+        measures.cell(month.measures.shown(result.temperature_c, "°C"), 1),
+        measures.cell(result.ph, 2),
+        measures.cell(month.measures.shown(result.peak_flow_m3_h, "m3/h"), 1),
+        measures.cell(result.ct_mg_min_l, 1),
+        measures.cell(result.ct_required_mg_min_l, 1),
+        measures.cell(result.ratio, 2),
+        Cell(result.remark),
+    )

@@ -93,9 +93,6 @@ def _in_service(month: Month, site: str, start: dt.datetime, end: dt.datetime) -
 
 
 def _standing_lines(month: Month, at: dt.datetime) -> tuple[described.RoundLine, ...]:
-    found = []
-    for vessel in month.stated.vessels(at):
-        found.append((vessel.code, "weight" if vessel.on_scale else "level"))
-    for meter in month.stated.meters(at):
-        found.append((meter.code, "totaliser"))
+    found = [(vessel.code, "weight" if vessel.on_scale else "level") for vessel in month.stated.vessels(at)]
+    found += [(meter.code, "totaliser") for meter in month.stated.meters(at)]
     return tuple(described.RoundLine(f"{site}:{parameter}", site, parameter, "day") for site, parameter in found)

@@ -1,9 +1,10 @@
-"""Water quality: what was due, what is there, what is doubtful; lowest, middle, highest; means only where they mean something."""
+"""Water quality: what was due, what is there, what is doubtful; lowest, middle, highest; means where they mean something."""
 
 from __future__ import annotations
 
 import datetime as dt
 from decimal import Decimal
+from itertools import pairwise
 from statistics import fmean, median
 
 from plant.deviations.rules import bounds, running, shares
@@ -45,12 +46,19 @@ def substitute(month: Month) -> str:
 
 def _how(month: Month) -> str:
     means = SUBSTITUTES[substitute(month)]
-    stated = "as stated by the works" if "censored_in_means" in month.works_value else "no setting is stated; common practice, no source"
+    stated = (
+        "as stated by the works"
+        if "censored_in_means" in month.works_value
+        else "no setting is stated; common practice, no source"
+    )
     return (
-        f"Lowest, middle (median), highest and mean are of settled readings; a second mean includes the doubtful ones that nobody has "
+        "Lowest, middle (median), highest and mean are of settled readings; a second mean includes the doubtful ones "
+        "that nobody has "
         f"settled. “<x” enters a mean as {means} ({stated}); “>x” as x. pH is never averaged. Late: entered more than "
-        f"{values.LATE_HOURS} hours after it was taken. Missing: due by the round and neither a value nor a result in words is there. "
-        f"Doubtful: marked at entry and not settled. A dash under due means that no line of the round asks for it.")
+        f"{values.LATE_HOURS} hours after it was taken. Missing: due by the round and neither a value nor a result in "
+        "words is there. "
+        f"Doubtful: marked at entry and not settled. A dash under due means that no line of the round asks for it."
+    )
 
 
 def _site(month: Month, site: str, name: str, due: dict[tuple[str, str], expected.Due]) -> Table | None:
@@ -63,12 +71,25 @@ def _site(month: Month, site: str, name: str, due: dict[tuple[str, str], expecte
         body.append(_row(month, parameter, points, line))
     if not body:
         return None
-    counted = [Column(head) for head in ("due", "present", "missing", "late", "corrected", "below/ above", "doubtful", "set aside")]
+    counted = [
+        Column(head) for head in ("due", "present", "missing", "late", "corrected", "below/ above", "doubtful", "set aside")
+    ]
     means = [Column("mean")] + ([Column("mean with doubtful")] if any(len(row) > WIDTH for row in body) else [])
     width = WIDTH + len(means) - 1
-    return Table(f"quality-{site}", f"{site}, {name}", (
-        Column("Parameter", number=False), *counted, Column("lowest"), Column("middle"), Column("highest"), *means,
-    ), tuple((*row, Cell(""))[:width] for row in body), 1)
+    return Table(
+        f"quality-{site}",
+        f"{site}, {name}",
+        (
+            Column("Parameter", number=False),
+            *counted,
+            Column("lowest"),
+            Column("middle"),
+            Column("highest"),
+            *means,
+        ),
+        tuple((*row, Cell(""))[:width] for row in body),
+        1,
+    )
 
 
 def _row(month: Month, parameter: str, points: list[Point], line: expected.Due | None) -> tuple[Cell, ...]:
@@ -88,7 +109,8 @@ def _row(month: Month, parameter: str, points: list[Point], line: expected.Due |
     )
     averaged = parameter.partition("|")[0] not in NEVER_AVERAGED
     return (
-        Cell(f"{label}, {unit}" if unit else label), *counts,
+        Cell(f"{label}, {unit}" if unit else label),
+        *counts,
         values.cell(month, min(usable, key=values.order), places) if usable else Cell(measures.UNKNOWN),
         _middle(month, usable, places),
         values.cell(month, max(usable, key=values.order), places) if usable else Cell(measures.UNKNOWN),
@@ -107,7 +129,7 @@ def _middle(month: Month, usable: list[Point], places: int) -> Cell:
         return Cell(measures.UNKNOWN)
     ordered = sorted(usable, key=values.order)
     half = len(ordered) // 2
-    middle = ordered[half:half + 1] if len(ordered) % 2 else ordered[half - 1:half + 1]
+    middle = ordered[half : half + 1] if len(ordered) % 2 else ordered[half - 1 : half + 1]
     qualifier = next((point.qualifier for point in reversed(middle) if point.qualifier), "")
     known = month.parameters.get(usable[0].parameter)
     value = month.measures.shown(median(point.value or 0.0 for point in middle), known.unit if known else usable[0].unit)
@@ -132,7 +154,9 @@ def _observed(points: list[Point]) -> list[Observed]:
 
 
 def _of_limit(month: Month, limit: Limit) -> list[Point]:
-    return [point for point in month.series.get((limit.subject, limit.parameter), []) if point.statistic in ("reading", "day_max")]
+    return [
+        point for point in month.series.get((limit.subject, limit.parameter), []) if point.statistic in ("reading", "day_max")
+    ]
 
 
 def _shares(month: Month) -> Table | None:
@@ -148,16 +172,32 @@ def _shares(month: Month) -> Table | None:
         settled = [point for point in points if point.usable]
         verdicts = [bounds.above(item, bound) for item in _observed(settled)]
         share = shares.share_met(verdicts)
-        above = [point for point, verdict in zip([p for p in settled if p.decimal is not None], verdicts, strict=True) if verdict]
+        above = [
+            point for point, verdict in zip([p for p in settled if p.decimal is not None], verdicts, strict=True) if verdict
+        ]
         row += [_count(share.of), _count(share.met), measures.cell(share.pct, 1), Cell(f"{limit.keys['at_least_pct']:g}")]
         row.append(Cell("; ".join(f"{month.local(point.at)[5:]} {values.cell(month, point, places).text}" for point in above)))
         body.append(tuple(row))
     if not body:
         return None
-    return Table("shares", "Share of the month's measurements at or below a limit", (
-        Column("Site", number=False), Column("Parameter", number=False), Column("limit", number=False), Column("measured"),
-        Column("at or below"), Column("share", "%"), Column("stated", "%"), Column("above the limit: when, value", number=False, wraps=True),
-    ), tuple(body), 2, 0, ("By counting (40 CFR 141.173(a), 141.551), not by an interpolated percentile.",))
+    return Table(
+        "shares",
+        "Share of the month's measurements at or below a limit",
+        (
+            Column("Site", number=False),
+            Column("Parameter", number=False),
+            Column("limit", number=False),
+            Column("measured"),
+            Column("at or below"),
+            Column("share", "%"),
+            Column("stated", "%"),
+            Column("above the limit: when, value", number=False, wraps=True),
+        ),
+        tuple(body),
+        2,
+        0,
+        ("By counting (40 CFR 141.173(a), 141.551), not by an interpolated percentile.",),
+    )
 
 
 def _running(month: Month) -> Table | None:
@@ -169,22 +209,47 @@ def _running(month: Month) -> Table | None:
         means = _monthly_means(month, limit, months)
         known = [mean for mean in means if mean is not None]
         label, unit, places = values.printed(month, limit.parameter)
-        quarters = [running.quarter_mean(means[first:first + 3]) for first in range(0, months, 3)] if months == 12 else []
+        quarters = [running.quarter_mean(means[first : first + 3]) for first in range(0, months, 3)] if months == 12 else []
         value = running.annual(quarters).value if quarters else (fmean(known) if known else None)
         parameter = month.parameters.get(limit.parameter)
         value = month.measures.shown(value, parameter.unit if parameter else limit.unit)
-        stated = ", ".join(f"{word} {limit.keys[key]:g}" for key, word in (("low", "at least"), ("high", "at most")) if key in limit.keys)
-        body.append((
-            Cell(limit.subject), Cell(label), _count(months), _count(len(known)), measures.cell(value, places + 1),
-            Cell(unit), Cell(stated)))
+        stated = ", ".join(
+            f"{word} {limit.keys[key]:g}" for key, word in (("low", "at least"), ("high", "at most")) if key in limit.keys
+        )
+        body.append(
+            (
+                Cell(limit.subject),
+                Cell(label),
+                _count(months),
+                _count(len(known)),
+                measures.cell(value, places + 1),
+                Cell(unit),
+                Cell(stated),
+            )
+        )
     if not body:
         return None
-    return Table("running", f"Running means up to {month.words}", (
-        Column("Site", number=False), Column("Parameter", number=False), Column("months"), Column("with readings"), Column("mean"),
-        Column("Unit", number=False), Column("stated limit", number=False),
-    ), tuple(body), 2, 0, (
-        "Means of monthly means of all samples; over twelve months by quarter (40 CFR 141.133(c)(1)(i)). Months without samples are "
-        "left out of the mean and counted.",))
+    return Table(
+        "running",
+        f"Running means up to {month.words}",
+        (
+            Column("Site", number=False),
+            Column("Parameter", number=False),
+            Column("months"),
+            Column("with readings"),
+            Column("mean"),
+            Column("Unit", number=False),
+            Column("stated limit", number=False),
+        ),
+        tuple(body),
+        2,
+        0,
+        (
+            "Means of monthly means of all samples; over twelve months by quarter (40 CFR 141.133(c)(1)(i)). Months "
+            "without samples are "
+            "left out of the mean and counted.",
+        ),
+    )
 
 
 def _monthly_means(month: Month, limit: Limit, months: int) -> list[float | None]:
@@ -197,10 +262,11 @@ def _monthly_means(month: Month, limit: Limit, months: int) -> list[float | None
     edges = [month.calendar.start_of(date) for date in starts] + [month.end]
     points = readings.series(month.book, limit.subject, limit.parameter, start=edges[0], end=edges[-1], known=month.ask)
     share = {"zero": 0.0, "half": 0.5, "full": 1.0}[substitute(month)]
-    for start, end in zip(edges, edges[1:], strict=False):
+    for start, end in pairwise(edges):
         numbers = [
             (point.value or 0.0) * (share if point.qualifier == "<" else 1.0)
-            for point in points if start <= point.at < end and point.value is not None and point.settled != "set_aside"
+            for point in points
+            if start <= point.at < end and point.value is not None and point.settled != "set_aside"
         ]
         out.append(fmean(numbers) if numbers else None)
     return out

@@ -18,14 +18,35 @@ def section(month: Month) -> Section:
     for earlier, saying in found:
         was, now = changes.difference(None if earlier.withdrawn else earlier.value, None if saying.withdrawn else saying.value)
         name, recorded = who[saying.seq]
-        body.append((
-            Cell(month.local(saying.effective_from)), Cell(changes.setting(saying.kind, saying.subject)), Cell(was), Cell(now), Cell(name),
-            Cell(recorded), Cell(saying.reason)))
-    table = Table("settings", "Settings in force from within the month", (
-        Column("From", number=False), Column("Setting", number=False, wraps=True), Column("Was", number=False, wraps=True),
-        Column("Is", number=False, wraps=True), Column("By", number=False), Column("Recorded", number=False),
-        Column("Why", number=False, wraps=True),
-    ), tuple(body), 1, 0, (), "No setting was changed in the month.")
+        body.append(
+            (
+                Cell(month.local(saying.effective_from)),
+                Cell(changes.setting(saying.kind, saying.subject)),
+                Cell(was),
+                Cell(now),
+                Cell(name),
+                Cell(recorded),
+                Cell(saying.reason),
+            )
+        )
+    table = Table(
+        "settings",
+        "Settings in force from within the month",
+        (
+            Column("From", number=False),
+            Column("Setting", number=False, wraps=True),
+            Column("Was", number=False, wraps=True),
+            Column("Is", number=False, wraps=True),
+            Column("By", number=False),
+            Column("Recorded", number=False),
+            Column("Why", number=False, wraps=True),
+        ),
+        tuple(body),
+        1,
+        0,
+        (),
+        "No setting was changed in the month.",
+    )
     if not first_ones:
         return Section(KEY, TITLE, (table,))
     return Section(KEY, TITLE, (table, Text(f"{first_ones} settings were stated for the first time in the month.")))

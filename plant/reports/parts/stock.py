@@ -22,26 +22,54 @@ def _products(month: Month) -> Table:
     body = []
     for row in month.reconciliation:
         amounts = [
-            show.shown(amount, "kg") for amount in (
-                row.opening_kg, row.received_kg, row.witnessed_kg, row.closing_kg, row.unexplained_kg,
-                None if row.unexplained_sd_kg is None else 2 * row.unexplained_sd_kg, row.used_by_dips_kg)
+            show.shown(amount, "kg")
+            for amount in (
+                row.opening_kg,
+                row.received_kg,
+                row.witnessed_kg,
+                row.closing_kg,
+                row.unexplained_kg,
+                None if row.unexplained_sd_kg is None else 2 * row.unexplained_sd_kg,
+                row.used_by_dips_kg,
+            )
         ]
         places = measures.decimals(amounts, figures=5, most=1)
         cells = [measures.cell(amount, places) for amount in amounts]
         if row.unexplained_kg is None:
             cells[4] = Cell("no second witness" if row.witnessed_kg is None else measures.UNKNOWN)
         product = month.products.get(row.product)
-        body.append((
-            Cell(row.product), *cells, Cell(str(row.deliveries), float(row.deliveries)),
-            Cell("; ".join(([product.name] if product else []) + list(row.remarks))),
-        ))
-    return Table("reconciliation", "Opening + received − witnessed use − closing = unexplained, as product", (
-        Column("Product", number=False), Column("opening", kg), Column("received", kg), Column("witnessed use", kg),
-        Column("closing", kg), Column("unexplained", kg), Column("± 2 sd", kg), Column("used by dips", kg), Column("deliveries"),
-        Column("Remarks", number=False, wraps=True),
-    ), tuple(body), 1, 0, (
-        "A positive unexplained amount is stock that should be there and is not. “No second witness” means that nothing but the "
-        "dips says what was used, so that a loss cannot be told from use.",))
+        body.append(
+            (
+                Cell(row.product),
+                *cells,
+                Cell(str(row.deliveries), float(row.deliveries)),
+                Cell("; ".join(([product.name] if product else []) + list(row.remarks))),
+            )
+        )
+    return Table(
+        "reconciliation",
+        "Opening + received − witnessed use − closing = unexplained, as product",
+        (
+            Column("Product", number=False),
+            Column("opening", kg),
+            Column("received", kg),
+            Column("witnessed use", kg),
+            Column("closing", kg),
+            Column("unexplained", kg),
+            Column("± 2 sd", kg),
+            Column("used by dips", kg),
+            Column("deliveries"),
+            Column("Remarks", number=False, wraps=True),
+        ),
+        tuple(body),
+        1,
+        0,
+        (
+            "A positive unexplained amount is stock that should be there and is not. “No second witness” means that "
+            "nothing but the "
+            "dips says what was used, so that a loss cannot be told from use.",
+        ),
+    )
 
 
 def _vessels(month: Month) -> Table:
@@ -50,19 +78,43 @@ def _vessels(month: Month) -> Table:
     body = []
     for row in month.stock:
         amounts = [
-            show.shown(amount, "kg") for amount in (
-                row.book_kg, row.dip_kg, row.difference_kg, None if row.difference_sd_kg is None else 2 * row.difference_sd_kg)
+            show.shown(amount, "kg")
+            for amount in (
+                row.book_kg,
+                row.dip_kg,
+                row.difference_kg,
+                None if row.difference_sd_kg is None else 2 * row.difference_sd_kg,
+            )
         ]
         places = measures.decimals(amounts, figures=5, most=1)
         strength = measures.decimals([row.strength], figures=4)
-        body.append((
-            Cell(row.vessel), Cell(row.product), *(measures.cell(amount, places) for amount in amounts),
-            measures.cell(row.strength, strength),
-            measures.cell(row.days_of_supply, 0), Cell(month.local(row.dip_at) if row.dip_at else "no dip"),
-            Cell("; ".join([f"strength in {row.strength_basis.replace('_', ' ')}", *row.remarks])),
-        ))
-    return Table("vessels", f"Vessels at the end of the month, {month.local(month.end)}", (
-        Column("Vessel", number=False), Column("Product", number=False), Column("book", kg), Column("dip", kg),
-        Column("book − dip", kg), Column("± 2 sd", kg), Column("strength"),
-        Column("supply", "days"), Column("last dip", number=False), Column("Remarks", number=False, wraps=True),
-    ), tuple(body), 2, 0)
+        body.append(
+            (
+                Cell(row.vessel),
+                Cell(row.product),
+                *(measures.cell(amount, places) for amount in amounts),
+                measures.cell(row.strength, strength),
+                measures.cell(row.days_of_supply, 0),
+                Cell(month.local(row.dip_at) if row.dip_at else "no dip"),
+                Cell("; ".join([f"strength in {row.strength_basis.replace('_', ' ')}", *row.remarks])),
+            )
+        )
+    return Table(
+        "vessels",
+        f"Vessels at the end of the month, {month.local(month.end)}",
+        (
+            Column("Vessel", number=False),
+            Column("Product", number=False),
+            Column("book", kg),
+            Column("dip", kg),
+            Column("book − dip", kg),
+            Column("± 2 sd", kg),
+            Column("strength"),
+            Column("supply", "days"),
+            Column("last dip", number=False),
+            Column("Remarks", number=False, wraps=True),
+        ),
+        tuple(body),
+        2,
+        0,
+    )

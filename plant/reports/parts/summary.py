@@ -33,7 +33,9 @@ def _water(month: Month) -> str:
         if point is not None:
             seen.setdefault(point.meter, row.volume_ml.value)
     parts = [
-        f"{measures.significant(show.shown(volume, 'ML'), 4)} {show.label('ML')} by {meter}" if volume is not None else f"an unknown volume by {meter}"
+        f"{measures.significant(show.shown(volume, 'ML'), 4)} {show.label('ML')} by {meter}"
+        if volume is not None
+        else f"an unknown volume by {meter}"
         for meter, volume in seen.items()
     ]
     if not parts:
@@ -53,34 +55,65 @@ def _outside(month: Month) -> str:
 def _records(month: Month) -> str:
     lines = expected.lines(month)
     due, missing = sum(line.slots for line in lines), sum(line.missing for line in lines)
-    corrected = sum(1 for change in changes.corrections(month.book, month.start, month.end, until=month.known) if change.kind != "settlement")
+    corrected = sum(
+        1
+        for change in changes.corrections(month.book, month.start, month.end, until=month.known)
+        if change.kind != "settlement"
+    )
     late = sum(1 for point in month.points if values.is_late(month, point))
     doubtful = sum(1 for point in month.points if point.doubtful)
-    asked = f"{due} values were due by the round, {missing} of them are not on record. " if due else "No round is stated, so nothing was due. "
+    asked = (
+        f"{due} values were due by the round, {missing} of them are not on record. "
+        if due
+        else "No round is stated, so nothing was due. "
+    )
     return (
-        f"{asked}{len(month.points)} readings are on record: {corrected} corrected, {late} entered more than {values.LATE_HOURS} hours late, "
-        f"{doubtful} doubtful and not settled.")
+        f"{asked}{len(month.points)} readings are on record: {corrected} corrected, {late} entered more than "
+        f"{values.LATE_HOURS} hours late, "
+        f"{doubtful} doubtful and not settled."
+    )
 
 
 def _doses(month: Month) -> Table:
     body = []
     for row in month.periods:
         places = measures.decimals([row.used_mg_l.value, row.design_mg_l.value, row.need_mg_l.value], figures=4, most=3)
-        share = None if row.used_mg_l.value is None or not row.design_mg_l.value else 100 * row.used_mg_l.value / row.design_mg_l.value
+        share = (
+            None
+            if row.used_mg_l.value is None or not row.design_mg_l.value
+            else 100 * row.used_mg_l.value / row.design_mg_l.value
+        )
         product = month.products.get(row.product)
-        body.append((
-            Cell(row.dosing_point), Cell(product.name if product else row.product),
-            measures.cell(row.used_mg_l.value, places, key=row.used_mg_l.key),
-            measures.cell(None if row.used_mg_l.sd is None else 2 * row.used_mg_l.sd, places, key=row.used_mg_l.key),
-            measures.cell(row.design_mg_l.value, places, key=row.design_mg_l.key),
-            measures.cell(row.need_mg_l.value, places, key=row.need_mg_l.key), measures.cell(share, 0, key=row.used_mg_l.key),
-            Cell(f"{row.days_counted}/{row.days_expected}"), Cell(daily.basis_words(row.dose_basis)),
-        ))
-    return Table("summary-doses", "Dose of the month", (
-        Column("Dosing point", number=False), Column("Product", number=False), Column("used", "mg/L"), Column("± 2 sd", "mg/L"),
-        Column("design", "mg/L"), Column("need", "mg/L"), Column("used / design", "%"), Column("days", "known/due"),
-        Column("stated as", number=False),
-    ), tuple(body), 2)
+        body.append(
+            (
+                Cell(row.dosing_point),
+                Cell(product.name if product else row.product),
+                measures.cell(row.used_mg_l.value, places, key=row.used_mg_l.key),
+                measures.cell(None if row.used_mg_l.sd is None else 2 * row.used_mg_l.sd, places, key=row.used_mg_l.key),
+                measures.cell(row.design_mg_l.value, places, key=row.design_mg_l.key),
+                measures.cell(row.need_mg_l.value, places, key=row.need_mg_l.key),
+                measures.cell(share, 0, key=row.used_mg_l.key),
+                Cell(f"{row.days_counted}/{row.days_expected}"),
+                Cell(daily.basis_words(row.dose_basis)),
+            )
+        )
+    return Table(
+        "summary-doses",
+        "Dose of the month",
+        (
+            Column("Dosing point", number=False),
+            Column("Product", number=False),
+            Column("used", "mg/L"),
+            Column("± 2 sd", "mg/L"),
+            Column("design", "mg/L"),
+            Column("need", "mg/L"),
+            Column("used / design", "%"),
+            Column("days", "known/due"),
+            Column("stated as", number=False),
+        ),
+        tuple(body),
+        2,
+    )
 
 
 def _entry(month: Month) -> Table | None:
@@ -94,12 +127,29 @@ def _entry(month: Month) -> Table | None:
             if not usable:
                 continue
             label, unit, places = values.printed(month, parameter)
-            body.append((
-                Cell(point.code), Cell(label), Cell(str(len(usable)), float(len(usable))),
-                values.cell(month, min(usable, key=values.order), places), values.cell(month, max(usable, key=values.order), places), Cell(unit)))
+            body.append(
+                (
+                    Cell(point.code),
+                    Cell(label),
+                    Cell(str(len(usable)), float(len(usable))),
+                    values.cell(month, min(usable, key=values.order), places),
+                    values.cell(month, max(usable, key=values.order), places),
+                    Cell(unit),
+                )
+            )
     if not body:
         return None
-    return Table("summary-entry", "Water leaving the works", (
-        Column("Site", number=False), Column("Parameter", number=False), Column("readings"), Column("lowest"), Column("highest"),
-        Column("Unit", number=False),
-    ), tuple(body), 2)
+    return Table(
+        "summary-entry",
+        "Water leaving the works",
+        (
+            Column("Site", number=False),
+            Column("Parameter", number=False),
+            Column("readings"),
+            Column("lowest"),
+            Column("highest"),
+            Column("Unit", number=False),
+        ),
+        tuple(body),
+        2,
+    )

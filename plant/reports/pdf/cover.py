@@ -39,7 +39,8 @@ def closing(root: Element, document: Document, width: float) -> list[Flowable]:
         return []
     part = Element("Sect", root)
     return [
-        CondPageBreak(90), words.heading(part, "What proves this report", "section", level=0, key="proof", tag="H2"),
+        CondPageBreak(90),
+        words.heading(part, "What proves this report", "section", level=0, key="proof", tag="H2"),
         *pairs(part, document.closing, width),
     ]
 
@@ -59,9 +60,7 @@ class PairLine(Flowable):  # type: ignore[misc]
         self.width = width
         self.left = width * NAME_SHARE
         self.name = simpleSplit(name, faces.REGULAR, ink.BODY, self.left - 8)
-        self.value = [
-            line for given in value.split("\n") for line in _lines(given, faces.REGULAR, ink.BODY, width - self.left)
-        ]
+        self.value = [line for given in value.split("\n") for line in _lines(given, faces.REGULAR, ink.BODY, width - self.left)]
         self.height = max(len(self.name), len(self.value)) * LINE + 2.4
 
     def wrap(self, available_width: float, available_height: float) -> tuple[float, float]:
@@ -152,8 +151,10 @@ class SignatureRow(Flowable):  # type: ignore[misc]
 def _signature_lines(signature: Signature, room: float) -> list[tuple[str, str, float]]:
     out: list[tuple[str, str, float]] = []
     for text, face, size in (
-        (signature.meaning, faces.REGULAR, ink.SMALL), (signature.name, faces.SEMIBOLD, 10.5),
-        (signature.licence, faces.REGULAR, ink.BODY), (signature.signed_at, faces.REGULAR, ink.BODY),
+        (signature.meaning, faces.REGULAR, ink.SMALL),
+        (signature.name, faces.SEMIBOLD, 10.5),
+        (signature.licence, faces.REGULAR, ink.BODY),
+        (signature.signed_at, faces.REGULAR, ink.BODY),
         (signature.manner, faces.REGULAR, ink.SMALL),
     ):
         if text:

@@ -53,7 +53,9 @@ def grids(parent: Element, table: Table, page_width: float) -> list[Grid]:
 
 def _natural(table: Table, index: int, page_width: float) -> float:
     column = table.columns[index]
-    body = max((faces.width(row[index].text, _face(table, number), ink.CELL) for number, row in enumerate(table.rows)), default=0.0)
+    body = max(
+        (faces.width(row[index].text, _face(table, number), ink.CELL) for number, row in enumerate(table.rows)), default=0.0
+    )
     if column.wraps:
         body = max(NARROWEST_WORDS, min(body, page_width * 0.8))
     elif index < table.labels:
@@ -71,12 +73,19 @@ def _face(table: Table, row: int) -> str:
 def _parts(table: Table, natural: list[float], page_width: float) -> list[list[int]]:
     """Column numbers of each part. Neighbours of one group stay together unless the group alone is too wide."""
     labels = list(range(table.labels))
-    least = [NARROWEST_WORDS + 2 * PAD_X if column.wraps else width for column, width in zip(table.columns, natural, strict=True)]
+    least = [
+        NARROWEST_WORDS + 2 * PAD_X if column.wraps else width for column, width in zip(table.columns, natural, strict=True)
+    ]
     room = page_width - sum(least[index] for index in labels)
     blocks: list[list[int]] = []
     for index in range(table.labels, len(table.columns)):
         group = table.columns[index].group
-        if blocks and group and table.columns[blocks[-1][-1]].group == group and sum(least[i] for i in blocks[-1]) + least[index] <= room:
+        if (
+            blocks
+            and group
+            and table.columns[blocks[-1][-1]].group == group
+            and sum(least[i] for i in blocks[-1]) + least[index] <= room
+        ):
             blocks[-1].append(index)
         else:
             blocks.append([index])
@@ -97,7 +106,14 @@ class Grid(Flowable):  # type: ignore[misc]
     """One part of a table, or what is left of it after a page break."""
 
     def __init__(
-        self, element: Element, table: Table, indexes: list[int], natural: list[float], page_width: float, number: int, of: int,
+        self,
+        element: Element,
+        table: Table,
+        indexes: list[int],
+        natural: list[float],
+        page_width: float,
+        number: int,
+        of: int,
     ) -> None:
         super().__init__()
         self.element, self.table, self.indexes, self.number, self.of = element, table, indexes, number, of
@@ -134,7 +150,7 @@ class Grid(Flowable):  # type: ignore[misc]
         most = max(len(part) for part in lines)
         pieces = []
         for start in range(0, most, MOST_LINES):
-            piece = tuple(part[start:start + MOST_LINES] for part in lines)
+            piece = tuple(part[start : start + MOST_LINES] for part in lines)
             height = max(len(part) for part in piece) * LINE_CELL + 2 * PAD_Y
             marked = cells if start == 0 else tuple(Cell() for _ in cells)
             pieces.append(Row(marked, piece, height, bold, position))
@@ -142,13 +158,13 @@ class Grid(Flowable):  # type: ignore[misc]
 
     def wrap(self, available_width: float, available_height: float) -> tuple[float, float]:
         self.width = sum(self.widths)
-        self.height = self.group_height + self.head_height + sum(row.height for row in self.rows[self.first:])
+        self.height = self.group_height + self.head_height + sum(row.height for row in self.rows[self.first :])
         return self.width, self.height
 
     def split(self, available_width: float, available_height: float) -> list[Any]:
         room = available_height - self.group_height - self.head_height
         count = 0
-        for row in self.rows[self.first:]:
+        for row in self.rows[self.first :]:
             if row.height > room:
                 break
             room -= row.height
@@ -174,7 +190,7 @@ class Grid(Flowable):  # type: ignore[misc]
         top = self.height
         self._grounds(top)
         top = self._head(top, continued)
-        for row in self.rows[self.first:]:
+        for row in self.rows[self.first :]:
             line = Element("TR", self.element)
             for number, (cell, lines) in enumerate(zip(row.cells, row.lines, strict=True)):
                 label = number < self.table.labels
@@ -190,7 +206,7 @@ class Grid(Flowable):  # type: ignore[misc]
         y = top - self.group_height - self.head_height
         canvas.setFillColor(ink.STRIPE)
         last = len(self.table.rows) - self.table.totals
-        for row in self.rows[self.first:]:
+        for row in self.rows[self.first :]:
             if row.position % 2 and row.position < last:
                 canvas.rect(0, y - row.height, self.width, row.height, stroke=0, fill=1)
             if row.position == last and row is not self.rows[self.first]:
@@ -283,7 +299,9 @@ def _spread(columns: list[Column], natural: list[float], page_width: float) -> l
         room = page_width - fixed
         wanted = sum(natural[index] for index in wrapping)
         if wanted > room:
-            return [_share(natural, wrapping, index, room) if index in wrapping else width for index, width in enumerate(natural)]
+            return [
+                _share(natural, wrapping, index, room) if index in wrapping else width for index, width in enumerate(natural)
+            ]
         return [
             width + (room - wanted if index == wrapping[-1] else 0.0) if index in wrapping else width
             for index, width in enumerate(natural)

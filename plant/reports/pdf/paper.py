@@ -36,17 +36,36 @@ def render(document: Document) -> bytes:
     title = f"{document.title}, {document.works_name}, {document.month_words}"
     # The template would put its own names over those of the canvas.
     template = BaseDocTemplate(
-        out, pagesize=(page_width, page_height), title=title, author=document.works_name, subject=document.number,
-        creator="Weirbook", leftMargin=SIDE, rightMargin=SIDE, topMargin=TOP, bottomMargin=FOOT)
-    frame = Frame(SIDE, FOOT, width, page_height - TOP - FOOT, id="page", leftPadding=0, rightPadding=0, topPadding=0, bottomPadding=0)
+        out,
+        pagesize=(page_width, page_height),
+        title=title,
+        author=document.works_name,
+        subject=document.number,
+        creator="Weirbook",
+        leftMargin=SIDE,
+        rightMargin=SIDE,
+        topMargin=TOP,
+        bottomMargin=FOOT,
+    )
+    frame = Frame(
+        SIDE, FOOT, width, page_height - TOP - FOOT, id="page", leftPadding=0, rightPadding=0, topPadding=0, bottomPadding=0
+    )
     template.addPageTemplates(PageTemplate("page", [frame]))
     story = cover.flowables(root, document, width)
     for number, section in enumerate(document.sections, start=1):
         story += _section(root, section, number, width)
     story += cover.closing(root, document, width)
-    template.build(story, canvasmaker=functools.partial(
-        TaggedCanvas, title=title, language=document.language, when=dt.datetime.fromisoformat(document.issued_at), root=root,
-        running=functools.partial(_running_lines, document)))
+    template.build(
+        story,
+        canvasmaker=functools.partial(
+            TaggedCanvas,
+            title=title,
+            language=document.language,
+            when=dt.datetime.fromisoformat(document.issued_at),
+            root=root,
+            running=functools.partial(_running_lines, document),
+        ),
+    )
     return out.getvalue()
 
 
@@ -98,7 +117,7 @@ def _table(part: Element, table: Table, width: float) -> list[Flowable]:
 
 
 def _room_for(laid: grid.Grid, width: float) -> float:
-    """What must be left for a table to begin: a short one whole; of a month of days more than half, rather than torn near its head."""
+    """What must be left for a table to begin: a short one whole; of a month of days more than half."""
     height = laid.wrap(width, 0)[1]
     if len(laid.rows) <= 8 and height < 60 * mm:
         return height + 10 * mm
@@ -113,7 +132,9 @@ def _running_lines(document: Document, canvas: TaggedCanvas, page: int, pages: i
     issue = f"{document.number}, revision {document.revision}" if not document.draft else "DRAFT, not issued"
     canvas.setFont(faces.REGULAR, 7.4)
     canvas.setFillColor(ink.QUIET)
-    canvas.drawString(SIDE, head, _fitting(f"{document.works_name} · {document.title}, {document.month_words}", right - SIDE - 150))
+    canvas.drawString(
+        SIDE, head, _fitting(f"{document.works_name} · {document.title}, {document.month_words}", right - SIDE - 150)
+    )
     canvas.setFont(faces.SEMIBOLD, 7.4)
     canvas.setFillColor(ink.INK)
     canvas.drawRightString(right, head, issue)

@@ -14,8 +14,19 @@ from plant.reports.pdf.tagged import Element, literal
 from plant.scene import strip
 
 PAPER = {
-    "ink": ink.INK, "quiet": ink.QUIET, "line": ink.HAIR, "edge": ink.LINE, "water": ink.WATER, "band": ink.BAND, "need": "#7A4F00",
-    "alert": "#8A5200", "action": "#B02A1B", "regulatory": "#7B1E63", "settled": "#2B6A4B", "card": "#FFFFFF", "paper": "#FFFFFF",
+    "ink": ink.INK,
+    "quiet": ink.QUIET,
+    "line": ink.HAIR,
+    "edge": ink.LINE,
+    "water": ink.WATER,
+    "band": ink.BAND,
+    "need": "#7A4F00",
+    "alert": "#8A5200",
+    "action": "#B02A1B",
+    "regulatory": "#7B1E63",
+    "settled": "#2B6A4B",
+    "card": "#FFFFFF",
+    "paper": "#FFFFFF",
 }
 SCALE = 0.62  # one pixel of a scene in points: text of 14 px comes to 8.7 pt
 GAP = 16.0
@@ -41,7 +52,7 @@ def flowables(part: Element, picture: Picture, width: float) -> list[Flowable]:
     title = [words.words(part, picture.caption, "caption", tag="H3")] if picture.caption else []
     made = scenes(picture)
     across = max(1, int((width + GAP) // (max(one.width for _, one in made) * SCALE + GAP))) if made else 1
-    rows = [PictureRow(part, made[first:first + across], width, across) for first in range(0, len(made), across)]
+    rows = [PictureRow(part, made[first : first + across], width, across) for first in range(0, len(made), across)]
     if not rows:
         return [*title, words.words(part, picture.alt)]
     if len(rows) <= WHOLE_ROWS:
@@ -58,7 +69,8 @@ class PictureRow(Flowable):  # type: ignore[misc]
         self.each = (width - GAP * (across - 1)) / across
         self.made = made
         self.elements = [
-            Element("Figure", part, f"/Alt {literal(f'{above}. {one.summary}' if above else one.summary)}") for above, one in made
+            Element("Figure", part, f"/Alt {literal(f'{above}. {one.summary}' if above else one.summary)}")
+            for above, one in made
         ]
         self.scale = min(SCALE, self.each / max(one.width for _, one in made))
         self.above = 12.0 if any(above for above, _ in made) else 0.0

@@ -53,8 +53,14 @@ class TaggedCanvas(Canvas):  # type: ignore[misc]
     """Canvas with structure, title, language, issue time, and running lines painted once the number of pages is known."""
 
     def __init__(
-        self, *args: Any, title: str, language: str, when: dt.datetime,
-        root: Element, running: Callable[[TaggedCanvas, int, int], None], **kwargs: Any,
+        self,
+        *args: Any,
+        title: str,
+        language: str,
+        when: dt.datetime,
+        root: Element,
+        running: Callable[[TaggedCanvas, int, int], None],
+        **kwargs: Any,
     ) -> None:
         faces.register()
         kwargs |= {"initialFontName": faces.REGULAR, "lang": language, "invariant": 1, "pageCompression": 1}
@@ -135,8 +141,8 @@ class TaggedCanvas(Canvas):  # type: ignore[misc]
         )
         parents = self._numbered(Raw(f"<</Nums[{numbers}]>>".encode()))
         tree.body = (
-            f"<</Type/StructTreeRoot/K {self.root.number} 0 R/ParentTree {parents} 0 R"
-            f"/ParentTreeNextKey {len(self._pages)}>>").encode()
+            f"<</Type/StructTreeRoot/K {self.root.number} 0 R/ParentTree {parents} 0 R/ParentTreeNextKey {len(self._pages)}>>"
+        ).encode()
         document.Catalog.StructTreeRoot = tree
         document.Catalog.MarkInfo = Raw(b"<</Marked true>>")
 
@@ -144,8 +150,11 @@ class TaggedCanvas(Canvas):  # type: ignore[misc]
         marks = [kid for kid in element.kids if not isinstance(kid, Element)]
         one_page = len({page for page, _ in marks}) == 1
         kids = " ".join(
-            f"{kid.number} 0 R" if isinstance(kid, Element)
-            else str(kid[1]) if one_page else f"<</Type/MCR/Pg {pages[kid[0]]} 0 R/MCID {kid[1]}>>"
+            f"{kid.number} 0 R"
+            if isinstance(kid, Element)
+            else str(kid[1])
+            if one_page
+            else f"<</Type/MCR/Pg {pages[kid[0]]} 0 R/MCID {kid[1]}>>"
             for kid in element.kids
         )
         page = f"/Pg {pages[marks[0][0]]} 0 R" if one_page else ""

@@ -15,7 +15,8 @@ from plant.reports.pdf.tagged import Element
 def style(name: str, size: float, *, face: str = faces.REGULAR, colour: str = ink.INK, **more: Any) -> ParagraphStyle:
     """A paragraph style of the house. Long words break rather than run out of the page."""
     return ParagraphStyle(
-        name, fontName=face, fontSize=size, leading=round(size * ink.LEADING, 1), textColor=colour, splitLongWords=1, **more)
+        name, fontName=face, fontSize=size, leading=round(size * ink.LEADING, 1), textColor=colour, splitLongWords=1, **more
+    )
 
 
 STYLES = {

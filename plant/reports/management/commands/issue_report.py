@@ -48,8 +48,14 @@ class Command(commands.WorksCommand):
     def _issued(self, asked: commands.Asked, year: int, month: int, options: dict[str, Any]) -> tuple[Document, bytes, str]:
         try:
             done = actions.issue_from_shell(
-                book=asked.book, year=year, month=month, now=asked.now, prepared_by=_person(options["prepared_by"]),
-                certified_by=_person(options["certified_by"]), reason=options["reason"])
+                book=asked.book,
+                year=year,
+                month=month,
+                now=asked.now,
+                prepared_by=_person(options["prepared_by"]),
+                certified_by=_person(options["certified_by"]),
+                reason=options["reason"],
+            )
         except (actions.NotReady, actions.MayNotSign) as problem:
             raise CommandError(f"nothing was issued: {problem}") from None
         report = done.report
