@@ -92,7 +92,7 @@ def gather(day: Day, code: str, since: dt.date) -> Clues | None:
         response_sds=None if sds is None else sds * direction,
         feeder=_feeder(day, code, since),
         negative=any((row.used_mg_l.value or 0.0) < 0 or "negative use" in row.remarks for row in after),
-        given_back=_given_back(newest),
+        given_back=given_back(newest),
         empty=_empty(day, point),
         still=max((_still(day, vessel) for vessel in point.vessels), default=0),
         delivered_days_before=lot[0],
@@ -170,7 +170,7 @@ def _feeder(day: Day, code: str, since: dt.date) -> float | None:
     return None
 
 
-def _given_back(newest: Sequence[DayDose]) -> bool:
+def given_back(newest: Sequence[DayDose]) -> bool:
     """Whether the last two days are off to opposite sides by nearly the same: one reading between them is wrong."""
     ratios = [row.ratio for row in newest]
     if len(ratios) < 2 or any(ratio is None for ratio in ratios):

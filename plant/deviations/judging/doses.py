@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
+import dataclasses
 import datetime as dt
 import math
 from collections.abc import Iterator, Sequence
 
-from plant.deviations import defaults, findings
+from plant.deviations import clues, defaults, findings
 from plant.deviations.evidence import Day
 from plant.deviations.findings import Finding
 from plant.deviations.rules import doses, drift
@@ -57,6 +58,9 @@ def dose_vs(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
     found = doses.difference([_dosed(row) for row in rows], to=to)
     pct = float(limit.keys.get("pct", defaults.DOSE_PCT))
     sds = DEFAULT_SDS if defaults.is_default(limit.code) else STATED_SDS
+    if (found is None or not doses.off_by(found, pct=pct, sds=sds)) and rows[-1].weak and clues.given_back(rows[-2:]):
+        # A day may be weak only because a wrong reading took its use away: the day before had it.
+        found = doses.difference([dataclasses.replace(_dosed(rows[-1]), weak=False)], to=to)
     if found is None or not doses.off_by(found, pct=pct, sds=sds):
         return
     span = f"over {found.days} days" if found.days > 1 else f"on {rows[-1].day.isoformat()}"

@@ -175,9 +175,9 @@ def watch(
     statistic, length = _largest(values, [middle_sd * gain for gain in per_day], window)
     most = [CLIP * math.hypot(spread, day.gauge_sd) for day in mine]
     raw = [min(max(day.off - middle, -cap), cap) for day, cap in zip(mine, most, strict=True)]
-    size = sum(raw[-length:]) / length
     limit = threshold(mean_days_between_false_alarms)
-    on = statistic > limit and _lasts(raw, length, size)
+    on = statistic > limit and _lasts(raw, length, sum(raw[-length:]) / length)
+    size = median(day.off for day in mine[-length:]) - middle
     return Shift(on, first + len(mine) - length, size, statistic, limit, middle, spread)
 
 
