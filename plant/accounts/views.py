@@ -5,6 +5,7 @@ from __future__ import annotations
 from django.contrib import messages
 from django.contrib.auth import views as auth_views
 from django.contrib.auth.decorators import login_not_required
+from django.contrib.auth.forms import PasswordChangeForm
 from django.http import HttpRequest, HttpResponse
 from django.shortcuts import redirect
 from django.urls import reverse_lazy
@@ -32,7 +33,7 @@ class Password(auth_views.PasswordChangeView):
     form_class = forms.PasswordForm
     success_url = reverse_lazy("accounts:password")
 
-    def form_valid(self, form: forms.PasswordForm) -> HttpResponse:
+    def form_valid(self, form: PasswordChangeForm) -> HttpResponse:
         messages.success(self.request, "Your password is changed. Wherever else you were signed in, you no longer are.")
         return super().form_valid(form)
 
@@ -59,7 +60,7 @@ def theme(request: HttpRequest) -> HttpResponse:
 
 
 # Read by the walk over all addresses. "public" needs no sign-in, "anyone" needs one and nothing more.
-sign_in.permission = "public"
-theme.permission = "public"
-sign_out.permission = "anyone"
-password.permission = "anyone"
+sign_in.permission = "public"  # type: ignore[attr-defined]
+theme.permission = "public"  # type: ignore[attr-defined]
+sign_out.permission = "anyone"  # type: ignore[attr-defined]
+password.permission = "anyone"  # type: ignore[attr-defined]

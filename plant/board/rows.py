@@ -28,17 +28,35 @@ READING_HEADER = (
     "corrected", "ref",
 )  # fmt: skip
 BASES = {
-    "g_per_L_available_chlorine": "g/L available chlorine",
+    "g_per_L_available_chlorine": "g/L as Cl₂",
     "trade_pct": "trade %",
-    "weight_pct_available_chlorine": "weight % available chlorine",
+    "weight_pct_available_chlorine": "weight % as Cl₂",
     "weight_pct": "weight %",
 }
 
 
+def said_every_day(rows: Sequence[DayDose]) -> list[str]:
+    """Remarks that each of many days carries: said once over the table rather than in every row of it."""
+    spoken = [row.remarks for row in rows if row.remarks]
+    if len(spoken) < 7:
+        return []
+    return [remark for remark in spoken[-1] if all(remark in other for other in spoken)]
+
+
 def doses(
-    rows: Iterable[DayDose], *, works: described.Works, now: dt.datetime, calendar: clock.Calendar, code: str, spread: bool
+    rows: Iterable[DayDose],
+    *,
+    works: described.Works,
+    now: dt.datetime,
+    calendar: clock.Calendar,
+    code: str,
+    spread: bool,
+    leave_out: Sequence[str] = (),
 ) -> list[dict[str, Any]]:
-    """Rows of the table of days; ``spread`` shows two standard uncertainties beside the dose used."""
+    """Rows of the table of days; ``spread`` shows two standard uncertainties beside the dose used.
+
+    ``leave_out`` are remarks that stand elsewhere on the page.
+    """
 
     def cell(one: Figure, *, with_spread: bool = False) -> Cell:
         words = str(shown.figure(one, works, spread=with_spread))
@@ -54,7 +72,7 @@ def doses(
             "design": cell(row.design_mg_l),
             "need": cell(row.need_mg_l),
             "ratio": Cell(row.ratio, "" if row.ratio is None else f"{100 * row.ratio:.0f} %"),
-            "remarks": "; ".join(row.remarks),
+            "remarks": "; ".join(remark for remark in row.remarks if remark not in leave_out),
             "corrected": row.corrected,
         }
         for row in rows
@@ -77,8 +95,6 @@ def stock(
     *,
     works: described.Works,
     names: Mapping[str, str],
-    now: dt.datetime,
-    calendar: clock.Calendar,
 ) -> list[dict[str, Any]]:
     """Rows of the table of vessels."""
 
@@ -100,15 +116,12 @@ def stock(
         out.append(
             {
                 "vessel": names.get(row.vessel, row.vessel),
-                "product": names.get(row.product, row.product),
                 "book": kg(row.book_kg),
                 "dip": kg(row.dip_kg),
                 "difference": difference,
                 "active": kg(row.active_kg),
                 "usable": kg(row.usable_active_kg),
                 "strength": strength,
-                "days": Cell(row.days_of_supply, "not known" if row.days_of_supply is None else f"{row.days_of_supply:.0f}"),
-                "order_by": Cell(row.order_by, "" if row.order_by is None else shown.day(row.order_by, now, calendar)),
                 "remarks": "; ".join(row.remarks),
             }
         )

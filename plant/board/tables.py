@@ -44,15 +44,12 @@ class StockTable(tables.Table):
     """One row a vessel."""
 
     vessel = tables.Column()
-    product = tables.Column()
     book = Shown(verbose_name="Book")
     dip = Shown(verbose_name="Dip")
     difference = Shown(verbose_name="Difference")
     active = Shown(verbose_name="Active")
     usable = Shown(verbose_name="Usable active")
     strength = Shown(verbose_name="Strength now")
-    days = Shown(verbose_name="Days of supply")
-    order_by = Shown(verbose_name="Order by")
     remarks = tables.Column(orderable=False, attrs=WORDS, default="")
 
     class Meta:

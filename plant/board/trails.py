@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from dataclasses import dataclass
+from typing import cast
 
 from django.db.models import Q
 
@@ -46,8 +47,8 @@ class OpenedTrail:
 
     title: str
     figure: Figure
-    shown: shown.Shown
-    shown_spread: shown.Shown
+    value: shown.Shown
+    value_spread: shown.Shown
     steps: tuple[Opened, ...]
 
 
@@ -85,8 +86,8 @@ def _named(refs: Iterable[str]) -> list[Q]:
     out = []
     for first in range(0, len(pairs), SOME):
         condition = Q(pk__in=[])
-        for seq, lines in pairs[first : first + SOME]:
-            condition |= Q(seq=seq, line__in=lines)
+        for number, lines in pairs[first : first + SOME]:
+            condition |= Q(seq=number, line__in=lines)
         out.append(condition)
     return out
 
@@ -101,8 +102,9 @@ def _readings(at: access.At, refs: set[str]) -> dict[str, Reference]:
             label = known[row.parameter].label if row.parameter in known else row.parameter
             typed = "not taken" if row.state == "not_taken" else f"{row.typed} {shown.unit_name(row.typed_unit)}".strip()
             remark = ""
-            if row.supersedes is not None:
-                remark = f"corrected: was {row.supersedes.typed} {row.supersedes.typed_unit}, because {row.reason}"
+            before = cast("Reading | None", row.supersedes)
+            if before is not None:
+                remark = f"corrected: was {before.typed} {before.typed_unit}, because {row.reason}"
             out[row.ref] = Reference(
                 row.ref,
                 f"{row.site}, {label.lower()}: typed {typed}",

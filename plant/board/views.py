@@ -74,9 +74,7 @@ def stock(request: HttpRequest, at: access.At) -> HttpResponse:
     if wanted in exports.FORMATS:
         return exports.answer(wanted, f"{at.code}-stock", rows.STOCK_HEADER, rows.stock_export(found))
     page = store.store(stated, products, found, now=now, calendar=calendar)
-    table = tables.StockTable(
-        rows.stock(found, works=stated.works(now), names=queries.names(stated, now), now=now, calendar=calendar)
-    )
+    table = tables.StockTable(rows.stock(found, works=stated.works(now), names=queries.names(stated, now)))
     RequestConfig(request, paginate=False).configure(table)
     columns = [(column, painted(column.picture, f"column-{column.code}")) for column in page.columns]
     context = {
@@ -120,8 +118,17 @@ def _dosing_context(
     happened = one_point.events(at.book, stated, point, found, now=now, calendar=calendar, code=at.code)
     flags = one_point.flags(happened, calendar, "#events")
     levels = one_point.levels_by_day(at.book, point.code, found)
+    every_day = rows.said_every_day(found)
     table = tables.DoseTable(
-        rows.doses(reversed(found), works=stated.works(now), now=now, calendar=calendar, code=at.code, spread=not operator)
+        rows.doses(
+            reversed(found),
+            works=stated.works(now),
+            now=now,
+            calendar=calendar,
+            code=at.code,
+            spread=not operator,
+            leave_out=every_day,
+        )
     )
     RequestConfig(request, paginate={"per_page": 31}).configure(table)
 
@@ -162,6 +169,7 @@ def _dosing_context(
         "summary": wide.summary,
         "tolerance": tolerance,
         "events": happened,
+        "every_day": every_day,
         "table": table,
     }
 

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+
 from plant import scene
 from plant.scene import numbers
 
@@ -92,7 +94,7 @@ def level_column(
     return scene.Scene(width, Y0 + BOX_H + 12, title, summary, tuple(shapes))
 
 
-def _hatched(mid: float, foot: float, top: float, half, over_water: bool) -> list[scene.Shape]:  # type: ignore[no-untyped-def]
+def _hatched(mid: float, foot: float, top: float, half: Callable[[float], float], over_water: bool) -> list[scene.Shape]:
     """Slanting lines between two heights, kept inside the outline (worked out, since painters do not clip)."""
     role = "card" if over_water else "edge"
     shapes: list[scene.Shape] = [scene.Line(mid - half(top), top, mid + half(top), top, stroke=role, width=1.5)]

@@ -44,8 +44,7 @@ def dose_strip(
     right = _numbers(width - numbers_w, used, used_sd if whisker else None, design, need, opens or {})
     summary = _summary(unit, used, used_sd if whisker else None, design, need, weak, why_unknown)
     if top <= 0:
-        shapes = (*_unknown(x0, x1, "nothing known yet"), *right)
-        return scene.Scene(width, HEIGHT, title, summary, shapes)
+        return scene.Scene(width, HEIGHT, title, summary, (*_unknown(x0, x1, "nothing known yet"), *right))
 
     def at(value: float) -> float:
         return x0 + (x1 - x0) * min(max(value, 0.0), top) / top
@@ -73,8 +72,7 @@ def dose_strip(
         if used_sd and whisker:
             left, end = at(used - 2 * used_sd), at(used + 2 * used_sd)
             shapes.append(scene.Line(left, SCALE_Y, end, SCALE_Y, stroke="water", width=3))
-            for tip in (left, end):
-                shapes.append(scene.Line(tip, SCALE_Y - 6, tip, SCALE_Y + 6, stroke="water", width=2))
+            shapes += [scene.Line(tip, SCALE_Y - 6, tip, SCALE_Y + 6, stroke="water", width=2) for tip in (left, end)]
         fill = "card" if weak else "water"
         shapes.append(scene.Circle(x, SCALE_Y, 7, fill=fill, stroke="water", width=2.5))
     return scene.Scene(width, HEIGHT, title, summary, (*shapes, *right))
@@ -104,7 +102,7 @@ def _numbers(
     shapes: list[scene.Shape] = []
     for index, (name, words, fill, bold) in enumerate(rows):
         y = 19 + index * ROW_H
-        row = (scene.Text(x, y, name, "quiet"), scene.Text(x + 50, y, words, fill, bold=bold))
+        row: tuple[scene.Shape, ...] = (scene.Text(x, y, name, "quiet"), scene.Text(x + 50, y, words, fill, bold=bold))
         href = opens.get(name, "")
         if href:
             # Invisible, as large as a finger's mark may be small: the whole row opens.

@@ -60,7 +60,8 @@ def with_history(*, days: int, now: dt.datetime) -> Book:
             levels["HYPO-BULK"] -= 1.1 * kg / HYPO_ACTIVE_KG_L / HYPO_L_PER_MM / 1000
             levels["NAOH-BULK"] -= 8.0 * kg / NAOH_ACTIVE_KG_L / 1000
             levels["PEROX-IBC"] -= 2.0 * kg / PEROX_ACTIVE
-        rows += _deliveries(local(day, 10), levels) if local(day, 12) <= now else []
+            if hour == 7 and local(day, 10) <= now:
+                rows += _deliveries(local(day, 10), levels)
         if rows:
             recorded = min(now, local(day, 20))
             ledger.append(

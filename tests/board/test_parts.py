@@ -11,7 +11,7 @@ from zoneinfo import ZoneInfo
 import pytest
 
 from plant import clock
-from plant.board import dosing_point, exports, missing, pictures, shown, store
+from plant.board import dosing_point, exports, missing, pictures, rows, shown, store
 from plant.dosing.figures import DayDose, Figure, VesselStock
 from plant.readings.queries import Point
 from plant.scene import column, window
@@ -159,9 +159,22 @@ class TestAnswers:
         assert "nothing was expected" in dosing_point.answers(day_dose(expected=False))
 
     def test_a_change_of_design_starts_a_new_band(self):
-        rows = [day_dose(day=dt.date(2026, 3, n), design_mg_l=Figure(1.1 if n < 4 else 1.2, "mg/L")) for n in range(1, 7)]
-        picture = pictures.dose_run(rows, name="x", calendar=CALENDAR, tolerance=20, flags=[], levels={}, width=800)
+        days = [day_dose(day=dt.date(2026, 3, n), design_mg_l=Figure(1.1 if n < 4 else 1.2, "mg/L")) for n in range(1, 7)]
+        picture = pictures.dose_run(days, name="x", calendar=CALENDAR, tolerance=20, flags=[], levels={}, width=800)
         assert len([one for one in picture.shapes if getattr(one, "fill", "") == "band"]) == 2
+
+
+class TestRemarks:
+    def test_what_every_day_says_is_said_once(self):
+        days = [day_dose(remarks=("need: closed to air", *(("weak",) if n % 2 else ()))) for n in range(8)]
+        assert rows.said_every_day(days) == ["need: closed to air"]
+        shown_rows = rows.doses(
+            days, works=SI, now=NOW, calendar=CALENDAR, code="TST", spread=True, leave_out=rows.said_every_day(days)
+        )
+        assert [row["remarks"] for row in shown_rows[:2]] == ["", "weak"]
+
+    def test_a_few_days_say_it_themselves(self):
+        assert rows.said_every_day([day_dose(remarks=("x",))] * 6) == []
 
 
 TODAY = dt.date(2026, 3, 10)
@@ -241,8 +254,8 @@ def test_the_builder_of_these_tests_tells_the_truth(db):
     from plant.dosing import queries as dosing
 
     book = books.with_history(days=12, now=NOW)
-    rows = dosing.comparison(book, TODAY - dt.timedelta(days=8), TODAY - dt.timedelta(days=2))
-    caustic = [row for row in rows if row.dosing_point == "CAUSTIC-PH"]
+    found = dosing.comparison(book, TODAY - dt.timedelta(days=8), TODAY - dt.timedelta(days=2))
+    caustic = [row for row in found if row.dosing_point == "CAUSTIC-PH"]
     assert [row.volume_ml.value for row in caustic] == [pytest.approx(6.0)] * 7
     for row in caustic:
         assert row.used_mg_l.value == pytest.approx(8.0, rel=0.06)
