@@ -6,8 +6,9 @@ from __future__ import annotations
 
 import bisect
 import datetime as dt
-from collections.abc import Iterable, Iterator
+from collections.abc import Callable, Iterable, Iterator
 from dataclasses import dataclass
+from functools import partial
 from typing import Any
 from zoneinfo import ZoneInfo
 
@@ -19,7 +20,7 @@ class NotStated(LookupError):
     """Nothing is stated of this subject at this moment."""
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Saying:
     """One statement: what holds of a subject from a moment on, until the next one."""
 
@@ -47,6 +48,8 @@ class Stated:
         for saying in sorted(sayings, key=lambda item: (item.effective_from, item.seq, item.line)):
             self._by.setdefault(saying.kind, {}).setdefault(saying.subject, []).append(saying)
         self._calendar: dict[tuple[str, str], clock.Calendar] = {}
+        self._made: dict[Saying, Any] = {}
+        self._subjects: dict[str, tuple[str, ...]] = {}
 
     def adding(self, sayings: Iterable[Saying]) -> Stated:
         """The same with more said, for looking before anything is written."""
@@ -70,8 +73,11 @@ class Stated:
 
     def subjects(self, kind: str) -> tuple[str, ...]:
         """All subjects of a kind, in the order in which they were first stated."""
-        chains = self._by.get(kind, {})
-        return tuple(sorted(chains, key=lambda code: min((item.seq, item.line) for item in chains[code])))
+        if kind not in self._subjects:
+            chains = self._by.get(kind, {})
+            first = {code: min((item.seq, item.line) for item in chain) for code, chain in chains.items()}
+            self._subjects[kind] = tuple(sorted(first, key=first.__getitem__))
+        return self._subjects[kind]
 
     def in_force(self, kind: str, at: dt.datetime) -> Iterator[tuple[str, dict[str, Any]]]:
         """Subject and value of all that is in force of a kind."""
@@ -95,8 +101,8 @@ class Stated:
 
     def works(self, at: dt.datetime) -> described.Works:
         """The works itself. Raises NotStated before anything is stated."""
-        for subject, value in self.in_force("works", at):
-            return described.build(described.Works, subject, value)
+        for found in self._parts("works", at):
+            return found
         raise NotStated("nothing is stated of this works yet: load a works file first")
 
     def calendar(self, at: dt.datetime) -> clock.Calendar:
@@ -109,55 +115,54 @@ class Stated:
 
     def shifts(self, at: dt.datetime) -> tuple[clock.Shift, ...]:
         """The shift pattern, by starting time."""
-        found = [clock.Shift(name, dt.time.fromisoformat(value["starts"])) for name, value in self.in_force("shift", at)]
-        return tuple(sorted(found, key=lambda shift: shift.starts))
+        return tuple(sorted(self._parts("shift", at), key=lambda shift: shift.starts))
 
     def sample_points(self, at: dt.datetime) -> tuple[described.SamplePoint, ...]:
         """In the order of the water."""
         stages = ("raw", "process", "entry", "network")
-        found = [described.build(described.SamplePoint, code, value) for code, value in self.in_force("sample_point", at)]
-        return tuple(sorted(found, key=lambda point: stages.index(point.stage)))
+        return tuple(sorted(self._parts("sample_point", at), key=lambda point: stages.index(point.stage)))
 
     def meters(self, at: dt.datetime) -> tuple[described.Meter, ...]:
-        return tuple(described.build(described.Meter, code, value) for code, value in self.in_force("meter", at))
+        return self._parts("meter", at)
 
     def products(self, at: dt.datetime) -> tuple[described.Product, ...]:
-        return tuple(described.build(described.Product, code, value) for code, value in self.in_force("product", at))
+        return self._parts("product", at)
 
     def vessels(self, at: dt.datetime) -> tuple[described.Vessel, ...]:
-        return tuple(described.vessel(code, value) for code, value in self.in_force("vessel", at))
+        return self._parts("vessel", at)
 
     def dosing_points(self, at: dt.datetime) -> tuple[described.DosingPoint, ...]:
-        return tuple(described.build(described.DosingPoint, code, value) for code, value in self.in_force("dosing_point", at))
+        return self._parts("dosing_point", at)
 
     def limits(self, at: dt.datetime) -> tuple[described.Limit, ...]:
-        return tuple(described.limit(code, value) for code, value in self.in_force("limit", at))
+        return self._parts("limit", at)
 
     def round_lines(self, at: dt.datetime) -> tuple[described.RoundLine, ...]:
         """In walking order."""
-        found = [described.build(described.RoundLine, code, value) for code, value in self.in_force("round_line", at)]
-        return tuple(sorted(found, key=lambda line: line.order))
+        return tuple(sorted(self._parts("round_line", at), key=lambda line: line.order))
 
     def contact_segments(self, at: dt.datetime) -> tuple[described.ContactSegment, ...]:
-        return tuple(
-            described.build(described.ContactSegment, code, value) for code, value in self.in_force("contact_segment", at)
-        )
+        return self._parts("contact_segment", at)
 
     def meter(self, code: str, at: dt.datetime) -> described.Meter:
         """Raises NotStated."""
-        return described.build(described.Meter, code, self._needed("meter", code, at))
+        found: described.Meter = self._part("meter", code, at)
+        return found
 
     def product(self, code: str, at: dt.datetime) -> described.Product:
         """Raises NotStated."""
-        return described.build(described.Product, code, self._needed("product", code, at))
+        found: described.Product = self._part("product", code, at)
+        return found
 
     def vessel(self, code: str, at: dt.datetime) -> described.Vessel:
         """Raises NotStated."""
-        return described.vessel(code, self._needed("vessel", code, at))
+        found: described.Vessel = self._part("vessel", code, at)
+        return found
 
     def dosing_point(self, code: str, at: dt.datetime) -> described.DosingPoint:
         """Raises NotStated."""
-        return described.build(described.DosingPoint, code, self._needed("dosing_point", code, at))
+        found: described.DosingPoint = self._part("dosing_point", code, at)
+        return found
 
     def design_dose_mg_l(self, dosing_point: str, at: dt.datetime) -> float | None:
         """The dose in force, mg/L in the product's dose basis; None when none is stated."""
@@ -176,8 +181,37 @@ class Stated:
                 return kind
         return None
 
-    def _needed(self, kind: str, code: str, at: dt.datetime) -> dict[str, Any]:
-        value = self.value(kind, code, at)
-        if value is None:
+    def _part(self, kind: str, code: str, at: dt.datetime) -> Any:
+        saying = self.saying(kind, code, at)
+        if saying is None or saying.withdrawn:
             raise NotStated(f"no {kind.replace('_', ' ')} {code!r} is stated at {at:%Y-%m-%d %H:%M} UTC")
-        return value
+        return self._built(saying)
+
+    def _parts(self, kind: str, at: dt.datetime) -> tuple[Any, ...]:
+        """The parts of a kind in force, in the order in which they were first stated."""
+        sayings = (self.saying(kind, subject, at) for subject in self.subjects(kind))
+        return tuple(self._built(saying) for saying in sayings if saying is not None and not saying.withdrawn)
+
+    def _built(self, saying: Saying) -> Any:
+        # Parts are frozen and asked for thousands of times a page: each saying is built once.
+        if saying not in self._made:
+            self._made[saying] = _MAKE[saying.kind](saying.subject, saying.value)
+        return self._made[saying]
+
+
+def _shift(name: str, value: dict[str, Any]) -> clock.Shift:
+    return clock.Shift(name, dt.time.fromisoformat(value["starts"]))
+
+
+_MAKE: dict[str, Callable[[str, dict[str, Any]], Any]] = {
+    "works": partial(described.build, described.Works),
+    "shift": _shift,
+    "sample_point": partial(described.build, described.SamplePoint),
+    "meter": partial(described.build, described.Meter),
+    "product": partial(described.build, described.Product),
+    "vessel": described.vessel,
+    "dosing_point": partial(described.build, described.DosingPoint),
+    "limit": described.limit,
+    "round_line": partial(described.build, described.RoundLine),
+    "contact_segment": partial(described.build, described.ContactSegment),
+}
