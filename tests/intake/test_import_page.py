@@ -121,3 +121,13 @@ def test_a_token_of_nobody_s_is_refused(sam):
 @pytest.mark.parametrize(("who", "status"), [("olga", 403), ("ira", 403), ("mira", 200), ("adam", 200), ("stan", 404)])
 def test_is_for_those_who_may_import(sam, who, status):
     assert people.signed_in(who).get("/w/TST/import/").status_code == status
+
+
+def test_a_million_lines_are_refused_at_once_with_the_way_to_take_them(sam):
+    head = b"site,timestamp,parameter,value,unit\n"
+    content = head + b"ENTRY,2026-03-28,pH,7,\n" * 1_000_000
+    answered = send(sam, content)
+    assert answered.status_code == 422
+    assert "here at most" in answered.content.decode()
+    assert "manage.py import_records" in answered.content.decode()
+    assert Reading.objects.count() == 0

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import datetime as dt
+import gc
 from io import StringIO
 from pathlib import Path
 
@@ -18,6 +19,17 @@ from plant.works import load
 from plant.works import queries as works
 
 DATA = Path(__file__).resolve().parents[1] / "data"
+BARE_CITY = """
+[works]
+code = "CITY"
+name = "City network"
+timezone = "America/New_York"
+operating_day_starts = "00:00"
+[[parameter]]
+name = "coliform"
+unit = "MPN/100mL"
+"""
+"""A works of which no station is stated yet."""
 
 
 def in_force(book):
@@ -243,7 +255,7 @@ class TestFilesThatAreNotSheets:
 
 class TestAStopInTheMiddle:
     def many(self, sheet, count=250):
-        start = dt.datetime(2026, 1, 1)  # noqa: DTZ001  # local, as a file has it
+        start = dt.datetime(2026, 1, 1)  # local, as a file has it
         return sheet(
             *[f"ENTRY,{start + dt.timedelta(hours=hour):%Y-%m-%dT%H:%M},pH,{7 + hour % 50 / 100:.2f}," for hour in range(count)]
         )
@@ -289,8 +301,7 @@ class TestAStopInTheMiddle:
 class TestRealOpenData:
     @pytest.fixture
     def city(self, db, now):
-        data = (DATA / "open" / "city.toml").read_bytes()
-        return load.load(data=data, by=None, now=now).book
+        return load.load(data=BARE_CITY.encode(), by=None, now=now).book
 
     def test_a_month_of_a_city(self, city, bring):
         spelling = ground.Spelling(units=sheets.pairs(DATA / "open" / "units.csv"))
@@ -371,3 +382,27 @@ class TestTheCommand:
         path = sheet("NOWHERE,2026-03-28T07:00,pH,7.3,")
         with pytest.raises(CommandError, match="nothing was kept"):
             self.run(path, "--works", "EXA", "--all-or-nothing")
+
+
+def test_a_long_file_is_taken_an_entry_at_a_time_and_never_held_in_memory(example, tmp_path, now, monkeypatch):
+    """Six thousand lines in six entries of a thousand; what is held at once doesn't grow with the file."""
+    monkeypatch.setattr(records, "ENTRY_LINES", 1000)
+    path = tmp_path / "long.csv"
+    start = dt.datetime(2020, 1, 1)
+    with path.open("w") as file:
+        file.write("site,timestamp,parameter,value,unit\n")
+        for minute in range(6_000):
+            file.write(f"ENTRY,{start + dt.timedelta(minutes=5 * minute):%Y-%m-%dT%H:%M}Z,pH,{7 + minute % 90 / 100:.2f},\n")
+    sheet = records.open_file(path)
+    alive = []
+
+    def watch(text):
+        alive.append(sum(isinstance(thing, Reading) for thing in gc.get_objects()))
+
+    counted = records.bring_in(
+        book=example, sheet=sheet, wanted=records.Wanted(), by=None, now=now, progress=watch, judge=False
+    )
+    assert (counted.lines, counted.added) == (6_000, 6_000)
+    assert Entry.objects.filter(kind="file").count() == 6
+    assert len(alive) == 6
+    assert max(alive) <= 2_000

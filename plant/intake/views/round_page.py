@@ -16,7 +16,9 @@ from plant.intake.views import wall
 from plant.ledger import actions as ledger
 from plant.works import access
 
-MOST_OPEN = 6
+MOST_OPEN = 3
+AT_THE_FIELD = frozenset({"bound", "held_below", "held_above", "rate_of_change", "stuck", "stock_loss", "suspicious_reading"})
+"""Kinds of deviation that somebody on the round can look at; what was not read is listed by itself."""
 LEVELS = ("regulatory", "action", "alert", "target")
 
 
@@ -55,6 +57,15 @@ def page(request: HttpRequest, at: access.At) -> HttpResponse:
     return _show(request, at, walked, typed, client_id, answers=answers, problems=problems, general=general, status=422)
 
 
+def _for_the_round(at: access.At) -> list[deviations.DeviationView]:
+    loud = ("regulatory", "action")
+    return [
+        view
+        for view in deviations.open_ones(at.book)
+        if view.kind != "missing" and (view.level in loud or view.kind in AT_THE_FIELD)
+    ]
+
+
 def _taken(request: HttpRequest, at: access.At, sent: rounds.Sent, count: int) -> HttpResponse:
     values = f"{count} value{'s' if count != 1 else ''}"
     messages.success(request, f"{values} in the book." if sent.taken.created else f"{values} had been sent already.")
@@ -80,7 +91,7 @@ def _show(
         for number, line in enumerate(walked.lines)
     ]
     calendar = at.stated.calendar(at.now)
-    open_ones = sorted(deviations.open_ones(at.book), key=lambda view: (LEVELS.index(view.level), view.since))
+    open_ones = sorted(_for_the_round(at), key=lambda view: (LEVELS.index(view.level), view.since))
     context = {
         "round": walked,
         "rows": rows,
