@@ -17,7 +17,7 @@ KINDS = {
     "stuck": "the gauge shows what it showed at the start",
     "wrong_reading": "one value is written down ``size`` times what was read (a lost decimal point)",
     "missing_round": "nobody does the rounds",
-    "not_taken": "the line is left empty, with a reason",
+    "not_taken": "the line is left empty; ``words`` is the reason given, if any",
     "unbooked_delivery": "the next load is not booked, or booked only ``size`` days later",
     "wrong_booking": "the next load is booked as ``size`` times its quantity and corrected the day after",
     "raw_water_change": "calcium rises by ``size`` mg/L and alkalinity with it",

@@ -110,7 +110,7 @@ class Demo:
                     self.append(name, "correction", rows.sent(row), list(entry), self.operator(item), later, "tablet")
 
                 yield Event(later, correct)
-            elif row.text and rows.reading(row).marks:
+            elif rows.doubtful(row):
                 later = item.written + dt.timedelta(hours=3)
                 if later > self.history.until - dt.timedelta(days=_NEVER_SETTLED_DAYS):
                     continue

@@ -14,6 +14,13 @@ from plant.stock.models import Delivery, Transfer
 from plant.works.parameters import PARAMETERS
 
 _UNITLESS = {"pH": ""}
+_NOT_STATED = "reason not stated"
+
+
+def doubtful(row: Row) -> bool:
+    """Whether a line as written can hardly be true."""
+    number = row.text.lstrip("<")
+    return bool(number) and not PARAMETERS[row.parameter].possible(float(number))
 
 
 def reading(row: Row, text: str | None = None) -> Reading:
@@ -23,7 +30,7 @@ def reading(row: Row, text: str | None = None) -> Reading:
         site=row.site, parameter=row.parameter, taken_at=row.at, typed=typed, typed_unit=row.unit, note=row.note, marks=[]
     )
     if not typed:
-        out.state = Reading.State.NOT_TAKEN
+        out.state, out.note = Reading.State.NOT_TAKEN, row.note or _NOT_STATED
         return out
     out.qualifier = "<" if typed.startswith("<") else ""
     out.value_text = typed.lstrip("<")

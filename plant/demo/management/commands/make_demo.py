@@ -24,7 +24,7 @@ class Command(BaseCommand):
 
     def add_arguments(self, parser: CommandParser) -> None:
         parser.add_argument("--seed", type=int, default=20)
-        parser.add_argument("--months", type=int, default=MONTHS, help="whole months before the present one")
+        parser.add_argument("--months", type=int, default=MONTHS, help="whole months, beside the present one")
         commands.add_now(parser)
 
     def handle(self, *args: Any, **options: Any) -> None:
@@ -34,7 +34,8 @@ class Command(BaseCommand):
         calendar = clock.Calendar(ZoneInfo(plan.timezone), plan.day_starts)
         now = commands.set_now(options["now"], calendar, None)
         last = calendar.day_of(now)
-        first = months_before(last, options["months"])
+        month_is_over = (last + dt.timedelta(days=1)).day == 1
+        first = months_before(last, options["months"] + (0 if month_is_over else 1))
         days = (last - first).days + 1
         history = simulate.simulate(
             plan, seed=options["seed"], first=first, last=last, incidents=kestrel.incidents(days), until=now
