@@ -114,7 +114,7 @@ def test_the_lowest_of_a_day_says_of_how_many_grab_readings(tmp_path: Path) -> N
         found = reckoned.of(frame, "ENTRY", "free_chlorine", day, day)
         count = int((found["value"] != "").sum())
         words = f"lowest of {count} grab reading{'s' if count != 1 else ''}"
-        assert lines["lowest-ENTRY-free_chlorine", f"{day:%d %b}", "Rests on"]["text"] == words
+        assert lines["lowest-ENTRY", f"{day:%d %b}", "Free chlorine rests on"]["text"] == words
 
 
 def test_missing_values_are_listed_with_the_reason_given_or_its_lack(tmp_path: Path) -> None:

@@ -14,9 +14,7 @@ COLUMNS = (
     Column("Of", number=False),
     Column("Was", number=False, wraps=True),
     Column("Is", number=False, wraps=True),
-    Column("By", number=False),
-    Column("Recorded", number=False),
-    Column("Why", number=False, wraps=True),
+    Column("By, recorded, why", number=False, wraps=True),
 )
 
 
@@ -49,9 +47,7 @@ def rows(month: Month, found: Iterable[changes.Change]) -> tuple[tuple[Cell, ...
             Cell(month.local(change.of)),
             Cell(change.old, key=_key(change)),
             Cell(change.new, key=_key(change)),
-            Cell(change.who),
-            Cell(month.local(change.recorded_at)),
-            Cell(change.why or "no reason given"),
+            Cell(f"{change.who}, {month.local(change.recorded_at)}: {change.why or 'no reason given'}"),
         )
         for change in found
     )

@@ -174,12 +174,19 @@ def _water(month: Month, site: str, name: str) -> Table:
             if point.usable:
                 by_day.setdefault(month.calendar.day_of(point.at), []).append(point)
         label, unit, places = values.printed(month, parameter)
-        if max((len(found) for found in by_day.values()), default=0) <= 1:
-            columns.append(Column("value", unit, label))
+        counts = {len(found) for found in by_day.values()}
+        if max(counts, default=0) <= 1:
+            columns.append(Column(label, unit))
             fields.append(("one", by_day, places))
+            continue
+        if len(counts) == 1:
+            # The same number on every day needs no column of its own.
+            label = f"{label}, {counts.pop()} a day"
         else:
-            columns += [Column("n", "", label), Column("lowest", unit, label), Column("highest", unit, label)]
-            fields += [("count", by_day, places), ("lowest", by_day, places), ("highest", by_day, places)]
+            columns.append(Column("n", "", label))
+            fields.append(("count", by_day, places))
+        columns += [Column("lowest", unit, label), Column("highest", unit, label)]
+        fields += [("lowest", by_day, places), ("highest", by_day, places)]
     body = []
     for day in month.days:
         cells = [Cell(month.day_words(day))]

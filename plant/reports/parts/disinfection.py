@@ -23,10 +23,9 @@ def section(month: Month) -> Section:
     for point in month.stated.sample_points(month.at):
         if point.stage != "entry":
             continue
-        for parameter in RESIDUALS:
-            points = month.series.get((point.code, parameter), [])
-            if points:
-                blocks.append(_lowest(month, point.code, parameter, points))
+        read = [(name, found) for name in RESIDUALS if (found := month.series.get((point.code, name)))]
+        if read:
+            blocks.append(_lowest(month, point.code, read))
     if not blocks:
         blocks.append(Text("No residual was read at an entry point in the month."))
     dips = _dips(month)
@@ -36,39 +35,42 @@ def section(month: Month) -> Section:
     return Section(KEY, TITLE, tuple(blocks))
 
 
-def _lowest(month: Month, site: str, parameter: str, points: list[Point]) -> Table:
-    label, unit, places = values.printed(month, parameter)
-    by_day: dict[dt.date, list[Point]] = {}
-    for point in points:
-        if point.usable and point.statistic in ("reading", "day_min"):
-            by_day.setdefault(month.calendar.day_of(point.at), []).append(point)
-    body = []
-    for day in month.days:
-        found = by_day.get(day, [])
-        if not found:
-            body.append((Cell(month.day_words(day)), Cell(measures.UNKNOWN), Cell(measures.UNKNOWN), Cell("no usable reading")))
-            continue
-        recorded = [point for point in found if point.statistic == "day_min"]
-        lowest = min(recorded or found, key=values.order)
-        grabs = len(found) - len(recorded)
-        words = "recorder's minimum of the day" if recorded else f"lowest of {grabs} grab reading{'s' if grabs != 1 else ''}"
-        body.append(
-            (Cell(month.day_words(day)), values.cell(month, lowest, places), Cell(month.local(lowest.at)[11:]), Cell(words))
-        )
+def _lowest(month: Month, site: str, read: list[tuple[str, list[Point]]]) -> Table:
+    """Each residual's lowest of the day, when it was read, and what it rests on."""
+    columns = [Column("Day", number=False)]
+    body: list[list[Cell]] = [[Cell(month.day_words(day))] for day in month.days]
+    for parameter, points in read:
+        label, unit, places = values.printed(month, parameter)
+        columns += [
+            Column("lowest", unit, label),
+            Column("at", "local", label, number=False),
+            Column("rests on", "", label, number=False),
+        ]
+        by_day: dict[dt.date, list[Point]] = {}
+        for point in points:
+            if point.usable and point.statistic in ("reading", "day_min"):
+                by_day.setdefault(month.calendar.day_of(point.at), []).append(point)
+        for cells, day in zip(body, month.days, strict=True):
+            cells += _lowest_of_day(month, by_day.get(day, []), places)
     return Table(
-        f"lowest-{site}-{parameter}",
-        f"{site}: lowest {label.lower()} of each operating day",
-        (
-            Column("Day", number=False),
-            Column("lowest", unit),
-            Column("at", "local"),
-            Column("Rests on", number=False),
-        ),
-        tuple(body),
+        f"lowest-{site}",
+        f"{site}: lowest residual of each operating day",
+        tuple(columns),
+        tuple(tuple(cells) for cells in body),
         1,
         0,
         ("Grab readings can miss the lowest value of a day; only a recorder sees it.",),
     )
+
+
+def _lowest_of_day(month: Month, found: list[Point], places: int) -> list[Cell]:
+    if not found:
+        return [Cell(measures.UNKNOWN), Cell(measures.UNKNOWN), Cell("no usable reading")]
+    recorded = [point for point in found if point.statistic == "day_min"]
+    lowest = min(recorded or found, key=values.order)
+    grabs = len(found) - len(recorded)
+    words = "recorder's minimum of the day" if recorded else f"lowest of {grabs} grab reading{'s' if grabs != 1 else ''}"
+    return [values.cell(month, lowest, places), Cell(month.local(lowest.at)[11:]), Cell(words)]
 
 
 def _dips(month: Month) -> Table | None:

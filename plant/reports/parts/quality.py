@@ -176,7 +176,8 @@ def _shares(month: Month) -> Table | None:
             point for point, verdict in zip([p for p in settled if p.decimal is not None], verdicts, strict=True) if verdict
         ]
         row += [_count(share.of), _count(share.met), measures.cell(share.pct, 1), Cell(f"{limit.keys['at_least_pct']:g}")]
-        row.append(Cell("; ".join(f"{month.local(point.at)[5:]} {values.cell(month, point, places).text}" for point in above)))
+        listed = "; ".join(f"{month.local(point.at)[5:]} {values.cell(month, point, places).text}" for point in above)
+        row.append(Cell(listed or "none"))
         body.append(tuple(row))
     if not body:
         return None

@@ -24,9 +24,7 @@ def section(month: Month) -> Section:
                 Cell(changes.setting(saying.kind, saying.subject)),
                 Cell(was),
                 Cell(now),
-                Cell(name),
-                Cell(recorded),
-                Cell(saying.reason),
+                Cell(f"{name}, {recorded}: {saying.reason or 'no reason given'}"),
             )
         )
     table = Table(
@@ -37,9 +35,7 @@ def section(month: Month) -> Section:
             Column("Setting", number=False, wraps=True),
             Column("Was", number=False, wraps=True),
             Column("Is", number=False, wraps=True),
-            Column("By", number=False),
-            Column("Recorded", number=False),
-            Column("Why", number=False, wraps=True),
+            Column("By, stated, why", number=False, wraps=True),
         ),
         tuple(body),
         1,

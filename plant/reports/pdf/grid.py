@@ -22,7 +22,8 @@ MARK_WIDTH = 5.0
 LINE_CELL = 9.4
 LINE_HEAD = 8.8
 WIDEST_LABEL = 0.30  # of the page, before a label wraps
-NARROWEST_WORDS = 74.0
+NARROWEST_WORDS = 56.0
+WIDEST_WORD = 110.0  # before a word is broken
 LITTLE_ROOM = 300.0  # below it a table rather begins on the next page than with one or two rows
 MOST_LINES = 50  # of one row, before it is parted
 
@@ -41,41 +42,55 @@ class Row:
     position: int
 
 
+@dataclass(frozen=True)
+class Width:
+    """How wide a column would like to be, and the least it can bear: a number never breaks, words do."""
+
+    natural: float
+    least: float
+
+
 def grids(parent: Element, table: Table, page_width: float) -> list[Grid]:
     """The table as one flowable, or in several parts one below the other, each with the label columns."""
-    natural = [_natural(table, index, page_width) for index in range(len(table.columns))]
-    parts = _parts(table, natural, page_width)
+    widths = [_width(table, index, page_width) for index in range(len(table.columns))]
+    parts = _parts(table, widths, page_width)
     return [
-        Grid(Element("Table", parent), table, part, natural, page_width, number, len(parts))
+        Grid(Element("Table", parent), table, part, widths, page_width, number, len(parts))
         for number, part in enumerate(parts, start=1)
     ]
 
 
-def _natural(table: Table, index: int, page_width: float) -> float:
+def _width(table: Table, index: int, page_width: float) -> Width:
     column = table.columns[index]
     body = max(
         (faces.width(row[index].text, _face(table, number), ink.CELL) for number, row in enumerate(table.rows)), default=0.0
     )
-    if column.wraps:
-        body = max(NARROWEST_WORDS, min(body, page_width * 0.8))
-    elif index < table.labels:
-        body = min(body, page_width * WIDEST_LABEL)
     words = (column.head + " " + column.unit).split()
     head = max((faces.width(word, faces.SEMIBOLD, ink.HEAD) for word in words), default=0.0)
+    if column.wraps:
+        body = min(body, page_width * 0.8)
+        longest = max((_longest_word(row[index].text) for row in table.rows), default=0.0)
+        least = max(min(body, NARROWEST_WORDS), min(longest, WIDEST_WORD), head)
+        return Width(max(body, least) + 2 * PAD_X, least + 2 * PAD_X)
+    if index < table.labels:
+        body = min(body, page_width * WIDEST_LABEL)
     marks = MARK_WIDTH if any(row[index].mark for row in table.rows) else 0.0
-    return max(body + marks, head) + 2 * PAD_X
+    natural = max(body + marks, head) + 2 * PAD_X
+    return Width(natural, natural)
+
+
+def _longest_word(text: str) -> float:
+    return max((faces.width(word, faces.REGULAR, ink.CELL) for word in text.split()), default=0.0)
 
 
 def _face(table: Table, row: int) -> str:
     return faces.SEMIBOLD if row >= len(table.rows) - table.totals else faces.REGULAR
 
 
-def _parts(table: Table, natural: list[float], page_width: float) -> list[list[int]]:
+def _parts(table: Table, widths: list[Width], page_width: float) -> list[list[int]]:
     """Column numbers of each part. Neighbours of one group stay together unless the group alone is too wide."""
     labels = list(range(table.labels))
-    least = [
-        NARROWEST_WORDS + 2 * PAD_X if column.wraps else width for column, width in zip(table.columns, natural, strict=True)
-    ]
+    least = [width.least for width in widths]
     room = page_width - sum(least[index] for index in labels)
     blocks: list[list[int]] = []
     for index in range(table.labels, len(table.columns)):
@@ -110,7 +125,7 @@ class Grid(Flowable):  # type: ignore[misc]
         element: Element,
         table: Table,
         indexes: list[int],
-        natural: list[float],
+        widths: list[Width],
         page_width: float,
         number: int,
         of: int,
@@ -118,7 +133,7 @@ class Grid(Flowable):  # type: ignore[misc]
         super().__init__()
         self.element, self.table, self.indexes, self.number, self.of = element, table, indexes, number, of
         self.columns = [table.columns[index] for index in indexes]
-        self.widths = _spread(self.columns, [natural[index] for index in indexes], page_width)
+        self.widths = _spread(self.columns, [widths[index] for index in indexes], page_width)
         self.heads = [self._head_lines(column, width) for column, width in zip(self.columns, self.widths, strict=True)]
         self.head_height = max(len(lines) for lines in self.heads) * LINE_HEAD + 2 * PAD_Y
         self.grouped = any(column.group for column in self.columns)
@@ -291,31 +306,20 @@ class Grid(Flowable):  # type: ignore[misc]
             canvas.drawString(left + width - PAD_X - MARK_WIDTH + 1, top - PAD_Y - ink.CELL + 2.8, cell.mark)
 
 
-def _spread(columns: list[Column], natural: list[float], page_width: float) -> list[float]:
+def _spread(columns: list[Column], widths: list[Width], page_width: float) -> list[float]:
     """Widths of a part: words share the room that is left; without words a narrow table is loosened a little."""
+    wanted = sum(width.natural for width in widths)
     wrapping = [index for index, column in enumerate(columns) if column.wraps]
-    fixed = sum(width for index, width in enumerate(natural) if index not in wrapping)
-    if wrapping:
-        room = page_width - fixed
-        wanted = sum(natural[index] for index in wrapping)
-        if wanted > room:
-            return [
-                _share(natural, wrapping, index, room) if index in wrapping else width for index, width in enumerate(natural)
-            ]
-        return [
-            width + (room - wanted if index == wrapping[-1] else 0.0) if index in wrapping else width
-            for index, width in enumerate(natural)
-        ]
-    loose = min((page_width - fixed) / len(columns), 14.0)
-    return [width + max(loose, 0.0) for width in natural]
-
-
-def _share(natural: list[float], wrapping: list[int], index: int, room: float) -> float:
-    least = NARROWEST_WORDS + 2 * PAD_X
-    if room <= least * len(wrapping):
-        return room / len(wrapping)
-    surplus = sum(natural[i] - least for i in wrapping) or 1.0
-    return least + (room - least * len(wrapping)) * (natural[index] - least) / surplus
+    if not wrapping or wanted <= page_width:
+        loose = max(min((page_width - wanted) / len(columns), 14.0), 0.0)
+        return [width.natural + loose for width in widths]
+    room = page_width - sum(width.least for width in widths)
+    if room <= 0:
+        # Words alone give way where even the least of all columns is too much.
+        short = room / len(wrapping)
+        return [width.least + (short if index in wrapping else 0.0) for index, width in enumerate(widths)]
+    surplus = sum(width.natural - width.least for width in widths)
+    return [width.least + room * (width.natural - width.least) / surplus for width in widths]
 
 
 def _broken(text: str, face: str, room: float) -> list[str]:
