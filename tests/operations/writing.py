@@ -1,4 +1,5 @@
-"""A writer for the tests: `python -m tests.operations.writing NUMBER SECONDS` adds rounds to the works TST as fast as it can.
+"""A writer for the tests: `python -m tests.operations.writing NUMBER SECONDS STOP` adds rounds to the works TST as fast as it can,
+until the seconds are over or there is a file STOP.
 
 Straight through the door of the program, without a web server, so that the database is what is tried. Prints JSON:
 entries written, errors by their words, and the seconds each took.
@@ -8,6 +9,7 @@ import json
 import sys
 import time
 import uuid
+from pathlib import Path
 
 import django
 
@@ -38,7 +40,7 @@ def main() -> None:
     book = queries.book("TST")
     written, errors, seconds = [], [], []
     number = 0
-    while time.monotonic() < end:
+    while time.monotonic() < end and not Path(sys.argv[3]).exists():
         number += 1
         now, ident = clock.now(), str(uuid.uuid4())
         began = time.monotonic()
