@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import datetime as dt
 
-from plant.demo.plan import Feed, Incident, Line, Plan, Season, Waters
+from plant.demo.plan import Block, Feed, Incident, Line, Plan, Season, Waters
 
 _WATERS = Waters(
     flow_ml_d=Season(12.0, 1.6, 0.35, 6.0),
@@ -225,7 +225,7 @@ _LINES = (
 
 _REGULATOR = [{"who": "Regulator, drinking water desk", "within_hours": 24}]
 _SOURCE = "invented permit of the demo works"
-_LIMITS = [
+_LIMITS: list[Block] = [
     {"code": "entry-free-chlorine-low", "sample_point": "ENTRY", "parameter": "free_chlorine", "kind": "bound",
      "level": "action", "low": "0.30", "unit": "mg/L", "source": _SOURCE},
     {"code": "entry-free-chlorine-high", "sample_point": "ENTRY", "parameter": "free_chlorine", "kind": "bound",

@@ -39,7 +39,9 @@ def blocks(plan: Plan) -> dict[str, list[Block]]:
 
 
 def _due(due: str) -> str | list[str]:
-    return {"evening": "day", "week": ["Tue"]}.get(due, due)
+    if due == "week":
+        return ["Tue"]
+    return "day" if due == "evening" else due
 
 
 def dated(history: Simulated) -> dict[str, list[Block]]:

@@ -161,11 +161,11 @@ def checked(stated: Stated, changes: Sequence[Change]) -> list[Change]:
             if key in told or key in before:
                 continue
             told.add(key)
-            index = indexes.get(key[:2])
-            own = index is not None and (moment == clean[index].effective_from or moment.year < 1950)
+            found = indexes.get(key[:2])
+            own = found is not None and (moment == clean[found].effective_from or moment.year < 1950)
             words = misfit.message if own else f"{misfit.message} (from {moment:%Y-%m-%d %H:%M} UTC)"
-            name = "" if index is not None else f"{misfit.kind.replace('_', ' ')} {misfit.subject}: "
-            problems.append((len(clean) if index is None else index, name + words))
+            name = "" if found is not None else f"{misfit.kind.replace('_', ' ')} {misfit.subject}: "
+            problems.append((len(clean) if found is None else found, name + words))
     if problems:
         raise Refused(problems)
     return clean

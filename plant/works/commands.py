@@ -169,7 +169,7 @@ class WorksCommand(BaseCommand, abc.ABC):
 
     def write_csv(self, header: Sequence[str], rows: Iterable[Sequence[Any]]) -> None:
         """A CSV table to standard output; None is an empty cell."""
-        writer = csv.writer(self.stdout, lineterminator="\n")  # type: ignore[arg-type]  # csv asks for write only
+        writer = csv.writer(self.stdout, lineterminator="\n")
         writer.writerow(header)
         writer.writerows(["" if cell is None else cell for cell in row] for row in rows)
 

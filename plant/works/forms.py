@@ -46,7 +46,8 @@ class ChangeForm(forms.Form):
         self.subject = ""
         initial = {"effective_from": self.calendar.local(now).strftime("%Y-%m-%dT%H:%M")}
         initial |= {key.name: words.typed(key, (value or {}).get(key.name)) for key in self._keys()}
-        super().__init__(*args, initial=initial | kwargs.pop("initial", {}), **kwargs)
+        kwargs["initial"] = initial | kwargs.get("initial", {})
+        super().__init__(*args, **kwargs)
         fields = {}
         if new and not self.kind.kept:
             fields = {f"named_{name}": self._naming(name) for name in self._names()}
