@@ -168,6 +168,7 @@ def _water(month: Month, site: str, name: str) -> Table:
     """Each day's number of readings, lowest and highest; one column where there is never more than one reading a day."""
     columns = [Column("Day", number=False)]
     fields: list[tuple[str, dict[dt.date, list[Point]], int]] = []
+    steady: dict[int, list[str]] = {}
     for parameter, points in values.of_site(month, site):
         by_day: dict[dt.date, list[Point]] = {}
         for point in points:
@@ -181,7 +182,7 @@ def _water(month: Month, site: str, name: str) -> Table:
             continue
         if len(counts) == 1:
             # The same number on every day needs no column of its own.
-            label = f"{label}, {counts.pop()} a day"
+            steady.setdefault(counts.pop(), []).append(label)
         else:
             columns.append(Column("n", "", label))
             fields.append(("count", by_day, places))
@@ -200,7 +201,10 @@ def _water(month: Month, site: str, name: str) -> Table:
         tuple(body),
         1,
         0,
-        ("Readings that are doubtful and not settled, or set aside, are left out here and counted under Water quality.",),
+        (
+            *(f"{count} readings on each day read: {', '.join(labels)}." for count, labels in sorted(steady.items())),
+            "Readings that are doubtful and not settled, or set aside, are left out here and counted under Water quality.",
+        ),
     )
 
 

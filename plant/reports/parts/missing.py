@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from itertools import groupby
 
+from plant.dosing.figures import DayDose
 from plant.reports.month import Month
 from plant.reports.parts import expected, values
 from plant.reports.pdf.document import Cell, Column, Section, Table, Text
@@ -74,7 +75,7 @@ def _days(month: Month) -> Table:
         (row for row in month.doses if row.expected and row.used_mg_l.value is None),
         key=lambda row: (row.dosing_point, row.day),
     )
-    for (code, why), group in groupby(rows, key=lambda row: (row.dosing_point, "; ".join(row.remarks))):
+    for (code, why), group in groupby(rows, key=lambda row: (row.dosing_point, _why(row))):
         days = [row.day for row in group]
         body.append(
             (
@@ -99,3 +100,8 @@ def _days(month: Month) -> Table:
         (),
         "The dose of every dosing point in service is known on every day.",
     )
+
+
+def _why(row: DayDose) -> str:
+    """What is said of the dose used; what is said of the need alone stands elsewhere."""
+    return "; ".join(remark for remark in row.remarks if not remark.startswith("need:"))

@@ -22,6 +22,7 @@ SIZES = {"A4": A4, "Letter": LETTER}
 SIDE = 17 * mm
 TOP = 21 * mm
 FOOT = 19 * mm
+WHOLE_TABLE = 180 * mm  # lower tables are not torn
 
 
 def render(document: Document) -> bytes:
@@ -117,11 +118,9 @@ def _table(part: Element, table: Table, width: float) -> list[Flowable]:
 
 
 def _room_for(laid: grid.Grid, width: float) -> float:
-    """What must be left for a table to begin: a short one whole; of a month of days more than half."""
+    """What must be left for a table to begin: a short one, or a month of days, whole; of a longer one a good piece."""
     height = laid.wrap(width, 0)[1]
-    if len(laid.rows) <= 8 and height < 60 * mm:
-        return height + 10 * mm
-    return max(40 * mm, min(height * 0.55, 110 * mm))
+    return height + 10 * mm if height < WHOLE_TABLE else 60 * mm
 
 
 def _running_lines(document: Document, canvas: TaggedCanvas, page: int, pages: int) -> None:
