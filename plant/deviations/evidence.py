@@ -77,7 +77,9 @@ class Evidence:
         return next((point for point in self.stated.dosing_points(at) if point.code == code), None)
 
     def _closed(self, point: DosingPoint, end: dt.datetime) -> dt.datetime | None:
-        sources = [(point.feed_meter, COUNTERS)] if point.feed_meter else [(code, VESSEL_MARKS) for code in point.vessels]
+        sources: list[tuple[str, tuple[str, ...]]] = (
+            [(point.feed_meter, COUNTERS)] if point.feed_meter else [(code, VESSEL_MARKS) for code in point.vessels]
+        )
         sources.append((point.meter, COUNTERS))
         closing: list[dt.datetime] = []
         for site, parameters in sources:

@@ -155,7 +155,8 @@ def series_of(day: Day, point: DosingPoint, rows: Sequence[DayDose]) -> tuple[li
     meter = day.stated.meter(point.meter, day.moment).accuracy_pct / 100
     strength = 0.0 if product.dose_basis == "product" else product.strength_sd_pct / 100
     anew = _restated(day, point, rows)
-    kept, series = [], []
+    kept: list[DayDose] = []
+    series: list[drift.Day] = []
     for row in rows:
         design, used = row.design_mg_l.value, row.used_mg_l.value
         if used is None or not design or not row.expected or not LEAST_RATIO <= used / design <= MOST_RATIO:
