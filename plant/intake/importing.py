@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import abc
 import time
 from pathlib import Path
 from typing import Any
@@ -14,7 +15,7 @@ from plant.works import commands
 _PROGRESS_AFTER_S = 2.0
 
 
-class ImportCommand(commands.WorksCommand):
+class ImportCommand(commands.WorksCommand, abc.ABC):
     """Brings in a file. A subclass says how, in ``bring``."""
 
     takes_now = True
@@ -71,6 +72,7 @@ class ImportCommand(commands.WorksCommand):
             )
         self._tell_refused(counted)
 
+    @abc.abstractmethod
     def bring(
         self,
         asked: commands.Asked,
@@ -78,7 +80,7 @@ class ImportCommand(commands.WorksCommand):
         wanted: records.Wanted,
         progress: records.Progress,
     ) -> tally.Tally:
-        raise NotImplementedError
+        """Brings the file in and says what came of it."""
 
     def _tell_refused(self, counted: tally.Tally) -> None:
         for text in counted.refusal_lines():

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import datetime as dt
+from collections.abc import Callable
 from typing import Any
 
 from django import forms
@@ -33,17 +34,20 @@ def _vessels(stated: Stated, at: dt.datetime) -> list[tuple[str, str]]:
     return [("", "choose"), *((item.code, f"{item.name} ({item.code}), holds {item.product}") for item in stated.vessels(at))]
 
 
+def _products(stated: Stated, at: dt.datetime) -> list[tuple[str, str]]:
+    return [("", "choose"), *((item.code, f"{item.name} ({item.code})") for item in stated.products(at))]
+
+
 class _Movement(forms.Form):
     """What both have in common: cells by the names of the file's columns."""
 
     columns: tuple[str, ...] = ()
+    chosen: dict[str, Callable[[Stated, dt.datetime], list[tuple[str, str]]]] = {}
 
     def __init__(self, *args: Any, stated: Stated, at: dt.datetime, **kwargs: Any) -> None:
         super().__init__(*args, **kwargs)
-        self._prepare(stated, at)
-
-    def _prepare(self, stated: Stated, at: dt.datetime) -> None:
-        raise NotImplementedError
+        for name, choices in self.chosen.items():
+            self.fields[name].choices = choices(stated, at)  # type: ignore[attr-defined]  # a ChoiceField
 
     def cells(self) -> dict[str, str]:
         """The line a file would have. Only for a valid form."""
@@ -59,6 +63,7 @@ class DeliveryForm(_Movement):
     """A load into one vessel."""
 
     columns = (*deliveries.REQUIRED, *deliveries.OPTIONAL)
+    chosen = {"vessel": _vessels, "product": _products}
 
     timestamp = _moment()
     vessel = forms.ChoiceField(label="Into")
@@ -85,16 +90,12 @@ class DeliveryForm(_Movement):
         error_messages={"required": "Do the checks before connecting, then tick this."},
     )
 
-    def _prepare(self, stated: Stated, at: dt.datetime) -> None:
-        self.fields["vessel"].choices = _vessels(stated, at)  # type: ignore[attr-defined]  # a ChoiceField
-        products = [(item.code, f"{item.name} ({item.code})") for item in stated.products(at)]
-        self.fields["product"].choices = [("", "choose"), *products]  # type: ignore[attr-defined]
-
 
 class TransferForm(_Movement):
     """Product from one vessel into another."""
 
     columns = ("from_vessel", "to_vessel", "quantity", "unit", "carrier_water_L", "note")
+    chosen = {"from_vessel": _vessels, "to_vessel": _vessels}
 
     timestamp = _moment()
     from_vessel = forms.ChoiceField(label="From")
@@ -103,7 +104,3 @@ class TransferForm(_Movement):
     unit = forms.ChoiceField(label="Unit", choices=[(name, name) for name in deliveries.UNITS], initial="L")
     carrier_water_L = _number("Dilution water added, L", hint="Counted apart: 200 L of a 1:4 make-up are 40 L of product.")
     note = forms.CharField(label="Note", required=False, widget=forms.Textarea(attrs={"rows": 2}), max_length=1000)
-
-    def _prepare(self, stated: Stated, at: dt.datetime) -> None:
-        for name in ("from_vessel", "to_vessel"):
-            self.fields[name].choices = _vessels(stated, at)  # type: ignore[attr-defined]  # a ChoiceField
