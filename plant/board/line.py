@@ -18,6 +18,9 @@ from plant.scene import svg
 from plant.works import described, parameters
 from plant.works.stated import Stated
 
+ONE_ROUND = dt.timedelta(hours=2)
+"""Values taken so near to each other belong to one walk. Common practice, no source."""
+
 
 @dataclass(frozen=True)
 class Value:
@@ -54,8 +57,8 @@ class Dose:
 
 @dataclass(frozen=True)
 class Stop:
-    """A sample point, its newest values, and the doses on the way to it. ``when`` is the time that the values share; a
-    value taken at another time says its own.
+    """A sample point, its newest values, and the doses on the way to it. ``when`` is the time of the newest; a value
+    that was not taken on the same round says its own.
     """
 
     code: str
@@ -103,11 +106,22 @@ def stops(
         doses_here = tuple(by_place.get(sample_point.code, ()))
         when = max(here, key=lambda point: point.at) if here else None
         shared = shown.moment(when.at, now, calendar) if when else ""
-        values = tuple(dataclasses.replace(value, when="" if value.when == shared else value.when) for value in values)
+        values = tuple(
+            dataclasses.replace(value, when=_apart(point.at, when.at if when else now, value.when, calendar))
+            for value, point in zip(values, here, strict=True)
+        )
         found.append(Stop(sample_point.code, sample_point.name, sample_point.stage, shared, values, doses_here))
     if by_place.get(""):
         found.append(Stop("", "Dosed elsewhere", "", "", (), tuple(by_place[""])))
     return found
+
+
+def _apart(at: dt.datetime, newest: dt.datetime, words: str, calendar: clock.Calendar) -> str:
+    """When a value was taken, as far as that is not said by the newest beside it."""
+    if newest - at < ONE_ROUND:
+        return ""
+    local = calendar.local(at)
+    return f"{local:%H:%M}" if local.date() == calendar.local(newest).date() else words
 
 
 def _value(
@@ -146,7 +160,7 @@ def _dose(
     weak = row is not None and row.weak
     if row is not None and state == "in_service":
         tolerance = pictures.tolerance_pct(stated, point.code, now)
-        picture = pictures.day_strip(row, name=point.name, code=code, tolerance=tolerance, whisker=whisker, width=268)
+        picture = pictures.day_strip(row, name=point.name, code=code, tolerance=tolerance, whisker=whisker, width=276)
     try:
         product = stated.product(point.product, now).name
     except LookupError:

@@ -9,6 +9,7 @@ from urllib.parse import urlencode
 
 from chemistry import vessels as shapes
 from plant import clock, scene
+from plant.board import shown
 from plant.deviations import defaults
 from plant.dosing.figures import DayDose, Figure, VesselStock
 from plant.scene import column, run, strip
@@ -34,7 +35,7 @@ def trail_path(code: str, figure: Figure) -> str:
 def day_strip(row: DayDose, *, name: str, code: str, tolerance: float, whisker: bool, width: float) -> scene.Scene:
     """Used, design and need of one day."""
     return strip.dose_strip(
-        title=f"{name}: dose on {row.day.day} {row.day:%B %Y}, as {row.dose_basis}",
+        title=f"{name}: dose on {row.day.day} {row.day:%B %Y}, as {shown.formula(row.dose_basis)}",
         unit=row.used_mg_l.unit or "mg/L",
         used=row.used_mg_l.value,
         used_sd=row.used_mg_l.sd,
@@ -78,7 +79,7 @@ def dose_run(
     unit = rows[-1].used_mg_l.unit or "mg/L"
     return run.run(
         title=f"{name}: dose used, designed and needed",
-        quantity=f"Dose as {rows[-1].dose_basis}",
+        quantity=f"Dose as {shown.formula(rows[-1].dose_basis)}",
         unit=unit,
         points=used,
         start=start,
@@ -109,7 +110,7 @@ def _bands(rows: Sequence[DayDose], calendar: clock.Calendar, tolerance: float) 
 
 
 def vessel_column(
-    stock: VesselStock, vessel: Vessel, product: Product, *, per_day_kg: float | None, contents: str, width: float = 280
+    stock: VesselStock, vessel: Vessel, product: Product, *, per_day_kg: float | None, contents: str, width: float = 266
 ) -> scene.Scene:
     """A vessel with what it holds. ``per_day_kg`` is the use of its product, kg of product a day, where it alone feeds it."""
     width_m, height_m, cone_m = _proportions(vessel)

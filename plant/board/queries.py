@@ -30,6 +30,7 @@ class Board:
     stops: list[line.Stop]
     missing: list[str]
     day: str
+    date: str
     at: str
     empty: str = ""
 
@@ -54,7 +55,7 @@ def board(at: access.At) -> Board:
     try:
         calendar = stated.calendar(now)
     except NotStated:
-        return Board("Nothing is stated of this works yet.", [], [], [], "", "", empty="works")
+        return Board("Nothing is stated of this works yet.", [], [], [], "", "", "", empty="works")
     today = calendar.day_of(now)
     start = calendar.start_of(today - dt.timedelta(days=NEWEST_DAYS))
     points = readings.points(at.book, start=start, end=now + dt.timedelta(hours=1))
@@ -87,6 +88,7 @@ def board(at: access.At) -> Board:
         ),
         missing=[_missing_words(one, stated, now, labels) for one in absent],
         day=shown.day(yesterday, now, calendar),
+        date=f"{calendar.local(now).day} {calendar.local(now):%B %Y}",
         at=f"{calendar.local(now):%H:%M}",
         empty="" if points or (doses and any(row.used_mg_l.known for row in doses)) else "readings",
     )

@@ -25,7 +25,6 @@ class Column:
     state: str
     picture: scene.Scene
     dip: str
-    remarks: tuple[str, ...]
 
 
 @dataclass(frozen=True)
@@ -71,10 +70,10 @@ def store(
             continue
         contents = str(shown.amount(row.dip_kg, "kg", works)) if row.dip_kg is not None else ""
         per_day = per_day_kg(by_code[row.product])
-        picture = pictures.vessel_column(row, vessel, product, per_day_kg=per_day, contents=contents, width=280)
+        picture = pictures.vessel_column(row, vessel, product, per_day_kg=per_day, contents=contents)
         dip = "" if row.dip_at is None else f"dip of {shown.moment(row.dip_at, now, calendar)}"
         state = stated.state("vessel", row.vessel, now)
-        columns.append(Column(row.vessel, vessel.name, product.name, state, picture, dip, row.remarks))
+        columns.append(Column(row.vessel, vessel.name, product.name, state, picture, dip))
     windows = {product.product: window_of(product) for product in products if _by_the_load(stated, product.product, now)}
     ordered = sorted(windows.values(), key=lambda one: (not one.late, one.last or dt.date.max, one.name))
     lines = [_line(product, windows.get(product.product), works, today) for product in products if product.vessels]
@@ -114,9 +113,15 @@ def _line(product: supply.ProductSupply, found: window.Window | None, works: des
         days=days,
         per_day=str(shown.amount(product.per_day_kg, "kg", works)),
         order=window.words_of(found, today) if found else "not ordered by the load",
-        why="; ".join(part for part in (product.window.why if product.window else "", *product.remarks) if part),
+        why="; ".join(part for part in (_why(product, found), *product.remarks) if part),
         price=price,
     )
+
+
+def _why(product: supply.ProductSupply, found: window.Window | None) -> str:
+    if product.window is not None:
+        return product.window.why
+    return "no vessel of it takes a whole load, or too little past" if found else ""
 
 
 def per_day_kg(product: supply.ProductSupply) -> float | None:

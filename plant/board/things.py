@@ -13,6 +13,8 @@ from plant.deviations.queries import WORST_FIRST, DeviationView
 AS_ONE = ("missing", "suspicious_reading")
 """Kinds of which many at once have one cause (a round not walked, a file of bad values)."""
 
+SPEAK_FOR_THEMSELVES = ("drift", "dose_vs_design", "dose_vs_need", "suspicious_reading", "stock_loss")
+
 KINDS = {
     "bound": "outside its limit",
     "held_below": "too low for too long",
@@ -115,12 +117,10 @@ def _one(
     labels: Mapping[str, str],
 ) -> Thing:
     likely = [CAUSES.get(cause, cause.replace("_", " ")) for cause in view.likely_causes if cause != "unknown"]
-    measured = ", limit ".join(part for part in (view.value, view.limit) if part)
-    found = "; ".join(part for part in (measured, view.sentence) if part)
     return Thing(
         level=view.level,
         title=f"{subject_words(view, names, labels)}: {KINDS.get(view.kind, view.kind.replace('_', ' '))}",
-        found=found,
+        found=_found(view),
         since=shown.moment(view.since, now, calendar),
         who=_who(view),
         cause=likely[0] if likely else "",
@@ -128,6 +128,15 @@ def _one(
         telling=_telling([view], now, calendar),
         waits=view.awaiting_approval,
     )
+
+
+def _found(view: DeviationView) -> str:
+    """What was found, without the statistics of it, which stand on the deviation's own page."""
+    sentence = view.sentence.partition("; statistic")[0]
+    if sentence and view.kind in SPEAK_FOR_THEMSELVES:
+        return sentence
+    measured = ", limit ".join(part for part in (view.value, view.limit) if part)
+    return "; ".join(part for part in (measured, sentence) if part)
 
 
 def _as_one(

@@ -8,6 +8,7 @@ from typing import cast
 
 from django.db.models import Q
 
+from chemistry import sources
 from plant.board import shown
 from plant.dosing.figures import Figure, Trail
 from plant.readings.models import Reading
@@ -67,12 +68,22 @@ def opened(at: access.At, trail: Trail) -> OpenedTrail:
             Opened(
                 step.words,
                 step.formula,
-                step.source,
+                _cited(step.source),
                 tuple(found[ref] for ref in (*step.readings, *step.statements) if ref in found),
             )
             for step in trail.steps
         ),
     )
+
+
+def _cited(source: str) -> str:
+    """A source by its citation where it is named by a key of the bibliography; else as it is."""
+    return sources.SOURCES.get(source, source)
+
+
+def _inside(label: str) -> str:
+    """A label in the middle of a sentence: Free chlorine becomes free chlorine, pH and E. coli stay."""
+    return label[0].lower() + label[1:] if label[1:2].islower() else label
 
 
 def _named(refs: Iterable[str]) -> list[Q]:
@@ -107,7 +118,7 @@ def _readings(at: access.At, refs: set[str]) -> dict[str, Reference]:
                 remark = f"corrected: was {before.typed} {before.typed_unit}, because {row.reason}"
             out[row.ref] = Reference(
                 row.ref,
-                f"{row.site}, {label.lower()}: typed {typed}",
+                f"{row.site}, {_inside(label)}: typed {typed}",
                 shown.moment(row.taken_at, at.now, calendar),
                 _who(row, at),
                 remark,

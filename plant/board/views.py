@@ -159,6 +159,7 @@ def _dosing_context(
         "state": stated.state("dosing_point", point.code, now),
         "product": stated.product(point.product, now),
         "answers": one_point.answers(found[-1]),
+        "basis": shown.formula(found[-1].dose_basis),
         "day": shown.day(found[-1].day, now, calendar),
         "before": found[-1].day - dt.timedelta(days=1),
         "after": found[-1].day + dt.timedelta(days=1) if found[-1].day < calendar.day_of(now) - dt.timedelta(days=1) else None,

@@ -7,7 +7,7 @@ from collections.abc import Callable
 from plant import scene
 from plant.scene import numbers
 
-BOX_W, BOX_H = 120.0, 176.0
+BOX_W, BOX_H = 96.0, 176.0
 X0, Y0 = 12.0, 12.0
 
 
@@ -24,7 +24,7 @@ def level_column(
     load_from: float | None = None,
     days: float | None = None,
     contents: str = "",
-    width: float = 280,
+    width: float = 266,
 ) -> scene.Scene:
     """A vessel of ``width_m`` by ``height_m`` (the cone below it included), all other heights as shares of its height.
 

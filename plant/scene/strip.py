@@ -35,7 +35,7 @@ def dose_strip(
     standard uncertainties either way. What is unknown is a dashed outline and words, never zero. ``opens`` says where
     the numbers used, design and need lead to.
     """
-    numbers_w = 132.0
+    numbers_w = 150.0
     x0, x1 = 10.0, width - numbers_w - 22
     known = [value for value in (used, need) if value is not None]
     if used is not None and used_sd and whisker:
@@ -102,11 +102,11 @@ def _numbers(
     shapes: list[scene.Shape] = []
     for index, (name, words, fill, bold) in enumerate(rows):
         y = 19 + index * ROW_H
-        row: tuple[scene.Shape, ...] = (scene.Text(x, y, name, "quiet"), scene.Text(x + 50, y, words, fill, bold=bold))
+        row: tuple[scene.Shape, ...] = (scene.Text(x, y, name, "quiet"), scene.Text(x + 48, y, words, fill, bold=bold))
         href = opens.get(name, "")
         if href:
             # Invisible, as large as a finger's mark may be small: the whole row opens.
-            row = (scene.Rect(x - 4, y - 17, 136, ROW_H), *row, scene.Line(x + 50, y + 4, x + 84, y + 4, "edge", 1.5, (1.5, 3)))
+            row = (scene.Rect(x - 4, y - 17, 152, ROW_H), *row, scene.Line(x + 48, y + 4, x + 84, y + 4, "edge", 1.5, (1.5, 3)))
         shapes.append(scene.Group(row, f"{name} {words}: how it was made" if href else "", href))
     return tuple(shapes)
 

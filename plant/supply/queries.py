@@ -184,7 +184,7 @@ def _window(
     for row in vessels:
         vessel = stated.vessel(row.vessel, at)
         size = capacity(vessel)
-        if vessel.role == "bulk" and size and row.dip_kg is not None:
+        if vessel.role in ("bulk", "silo") and size and row.dip_kg is not None:
             density = 1.0 if vessel.on_scale else (product.density_kg_per_L or 1.0)
             room = max(room, size * density * vessel.max_fill_pct / 100 - row.dip_kg)
     if room == 0.0:

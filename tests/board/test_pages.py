@@ -268,6 +268,16 @@ class TestTrail:
         assert f"corrected: was {old.typed} m3, because two digits swapped" in text
         assert "Sam Sundby" in text
 
+    def test_sources_are_cited_in_full(self, book):
+        from chemistry import sources
+
+        text = page("ira", f"/w/TST/trail/?key=need:CAUSTIC-PH:{DAY}")
+        cited = re.findall(r"Source: ([^<]+)</p>", text)
+        assert cited
+        assert not set(cited) & set(sources.SOURCES)
+        assert any(one.strip() in sources.SOURCES.values() for one in cited)
+        assert "FILTERED, pH: typed 7.31" in text
+
     def test_the_panel_is_the_inside_of_the_page(self, book):
         inside = page("sam", f"/w/TST/trail/?panel=1&key=need:HYPO-POST:{DAY}")
         assert "<html" not in inside

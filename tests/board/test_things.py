@@ -45,6 +45,12 @@ def test_a_thing_says_what_where_since_when_and_why():
     assert thing.path == "/w/TST/deviations/9.1/"
 
 
+def test_a_drift_speaks_for_itself_without_its_statistics():
+    words = "used is 10.9 % below what it was against design; statistic 8.6, threshold 3.50"
+    found = listed(view(kind="drift", value="-10.9 %", limit="no lasting change", sentence=words))
+    assert found[0].found == "used is 10.9 % below what it was against design"
+
+
 def test_worst_comes_first_and_the_older_of_two_alike():
     found = listed(
         view(ref="1.1", level="alert"),
