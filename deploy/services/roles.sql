@@ -31,7 +31,7 @@ BEGIN
     -- Heads of the books, people and what hangs on signing in, work to be done, and what can be computed again.
     FOREACH name IN ARRAY ARRAY[
         'ledger_book',
-        'accounts_person', 'accounts_person_groups', 'accounts_person_user_permissions',
+        'accounts_person', 'accounts_secondfactor', 'accounts_person_groups', 'accounts_person_user_permissions',
         'django_session', 'axes_accessattempt', 'axes_accessattemptexpiration', 'axes_accessfailurelog', 'axes_accesslog',
         'jobs_job', 'jobs_turn',
         'dosing_daystate'

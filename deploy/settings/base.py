@@ -66,6 +66,7 @@ INSTALLED_APPS = [
 ]
 
 MIDDLEWARE = [
+    "deploy.limits.RequestSize",
     "django.middleware.security.SecurityMiddleware",
     "whitenoise.middleware.WhiteNoiseMiddleware",
     "csp.middleware.CSPMiddleware",
@@ -73,8 +74,9 @@ MIDDLEWARE = [
     "django.middleware.common.CommonMiddleware",
     "django.middleware.csrf.CsrfViewMiddleware",
     "django.contrib.auth.middleware.AuthenticationMiddleware",
-    "django.contrib.auth.middleware.LoginRequiredMiddleware",
     "django.contrib.messages.middleware.MessageMiddleware",
+    "plant.accounts.security_sessions.SessionLimits",
+    "django.contrib.auth.middleware.LoginRequiredMiddleware",
     "django.middleware.clickjacking.XFrameOptionsMiddleware",
     "axes.middleware.AxesMiddleware",
 ]
@@ -144,8 +146,10 @@ LOGIN_URL = "/sign-in/"
 LOGIN_REDIRECT_URL = "/"
 LOGOUT_REDIRECT_URL = LOGIN_URL
 
-# One shift of twelve hours and its hand-over.
-SESSION_COOKIE_AGE = 14 * 3600
+# One shift of twelve hours and its hand-over; and the longest a tablet lies unused between two rounds.
+WEIRBOOK_SESSION_HOURS = env.float("WEIRBOOK_SESSION_HOURS", default=14)
+WEIRBOOK_SESSION_IDLE_HOURS = env.float("WEIRBOOK_SESSION_IDLE_HOURS", default=5)
+SESSION_COOKIE_AGE = int(WEIRBOOK_SESSION_HOURS * 3600)
 SESSION_COOKIE_HTTPONLY = True
 SESSION_COOKIE_SAMESITE = "Lax"
 CSRF_COOKIE_SAMESITE = "Lax"
@@ -178,6 +182,9 @@ SECURE_CROSS_ORIGIN_OPENER_POLICY = "same-origin"
 # A batch of 10,000 readings fits; anything larger comes as a file.
 DATA_UPLOAD_MAX_MEMORY_SIZE = 10 * 1024 * 1024
 DATA_UPLOAD_MAX_NUMBER_FIELDS = 5000
+# The whole of a request; the sample proxies refuse the same. Pages that take files have smaller limits of their own.
+WEIRBOOK_LARGEST_REQUEST = 30 * 1024 * 1024
+DATA_UPLOAD_MAX_NUMBER_FILES = 10
 FILE_UPLOAD_PERMISSIONS = 0o640
 
 STATIC_URL = "/static/"

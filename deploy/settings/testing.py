@@ -36,6 +36,8 @@ CELERY_BROKER_URL = None
 
 PASSWORD_HASHERS = ["django.contrib.auth.hashers.MD5PasswordHasher"]
 AXES_ENABLED = False
+# Tests set the clock; one that is about the end of a session asks for it.
+WEIRBOOK_SESSION_HOURS = WEIRBOOK_SESSION_IDLE_HOURS = 1e9
 EMAIL_BACKEND = "django.core.mail.backends.locmem.EmailBackend"
 WHITENOISE_USE_FINDERS = True
 WHITENOISE_AUTOREFRESH = True

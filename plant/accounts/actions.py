@@ -11,6 +11,8 @@ from django.contrib.auth import password_validation
 from django.core.exceptions import ValidationError
 from django.db import transaction
 
+from plant import clock
+from plant.accounts import security
 from plant.accounts.models import Person
 
 logger = logging.getLogger(__name__)
@@ -55,14 +57,17 @@ def add_person(
         if Person.objects.filter(username__iexact=username).exists():
             raise PersonRefused(f"there is a person named {username} already")
         person.save()
+        security.record(kind=security.Kind.PERSON_ADDED, now=now, person=person, by=by)
     logger.info("person added", extra={"person": person.pk, "by": getattr(by, "pk", None)})
     return person, given
 
 
-def give_new_password(*, person: Person, by: Any) -> str:
+def give_new_password(*, person: Person, by: Any, now: dt.datetime | None = None) -> str:
     """Replaces a forgotten password; the old one and all sessions under it end."""
     given = new_password()
     person.set_password(given)
-    person.save(update_fields=["password"])
+    with transaction.atomic():
+        person.save(update_fields=["password"])
+        security.record(kind=security.Kind.PASSWORD_REPLACED, now=now or clock.now(), person=person, by=by)
     logger.info("password replaced", extra={"person": person.pk, "by": getattr(by, "pk", None)})
     return given
