@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import datetime as dt
+import functools
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass, replace
 
@@ -156,6 +157,8 @@ def _design(stated: Stated, product: Product, at: dt.datetime) -> Callable[[dt.d
     points = [point.code for point in stated.dosing_points(at) if point.product == product.code]
     calendar = stated.calendar(at)
 
+    # The check of past forecasts asks each day some dozen times.
+    @functools.cache
     def on(day: dt.date) -> float | None:
         moment = calendar.start_of(day) + dt.timedelta(hours=12)
         return _sum(stated.design_dose_mg_l(point, moment) for point in points)
