@@ -145,9 +145,6 @@ def _wanted(plan: Plan, raw: water.RawWater) -> dict[str, np.ndarray]:
     lime = water.lime_wanted(raw, plan.target_hardness_mg_l) if plan.target_hardness_mg_l else None
     if lime is not None:
         out["lime"] = lime
-    has_coagulant = any(feed.wants == "coagulant" for feed in plan.feeds)
-    after = water.softened(raw, lime, out["coagulant"] if has_coagulant else None)
-    out["caustic"] = water.caustic_wanted(after, raw.temperature, plan.target_ph)
     return out
 
 
@@ -159,14 +156,19 @@ def _feeds(
     effect: effects.Effects,
     seed: int,
 ) -> tuple[list[tanks.FeedHistory], dict[str, np.ndarray]]:
-    histories, doses = [], {}
-    for number, feed in enumerate(plan.feeds):
+    """All feeds, and the doses they gave. Caustic comes last: it mends the water that lime and coagulant really left."""
+    histories: dict[str, tanks.FeedHistory] = {}
+    doses: dict[str, np.ndarray] = {}
+    for number, feed in sorted(enumerate(plan.feeds), key=lambda item: item[1].wants == "caustic"):
+        if feed.wants == "caustic":
+            left = water.softened(raw, doses.get("lime"), doses.get("coagulant"))
+            wanted["caustic"] = water.caustic_wanted(left, raw.temperature, plan.target_ph)
         rng = np.random.default_rng([seed, 7919, number])
         flow = raw.flow_ml_h * share_of_flow(plan, feed)
         history = tanks.run(feed, grid, flow, wanted[feed.wants], raw.store_temperature, effect, rng)
-        histories.append(history)
+        histories[feed.code] = history
         doses[feed.wants] = history.dose_mg_l(flow)
-    return histories, doses
+    return [histories[feed.code] for feed in plan.feeds], doses
 
 
 def _truth(

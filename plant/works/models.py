@@ -26,3 +26,8 @@ class Statement(LedgerStatement):
 
     def __str__(self) -> str:
         return f"{self.kind} {self.subject} from {self.effective_from:%Y-%m-%d %H:%M}"
+
+
+from plant.works.tablets.models import Confirmation, Device, Pin, Spell, Tries  # noqa: E402  (Django looks for models here)
+
+__all__ = ["Confirmation", "Device", "Pin", "Spell", "Statement", "Tries"]

@@ -8,7 +8,7 @@ from typing import Any
 
 from plant import clock
 from plant.ledger.models import Book, Entry
-from plant.works import kinds, words
+from plant.works import kinds, parameters, words
 from plant.works.stated import Saying, Stated
 
 
@@ -59,7 +59,16 @@ def facts(kind: str, value: dict[str, Any]) -> tuple[tuple[str, str], ...]:
     """A value as pairs of label and text, in the order of the kind's keys."""
     order = [key.name for key in kinds.KINDS[kind].keys]
     names = sorted(value, key=lambda name: order.index(name) if name in order else len(order))
-    return tuple((words.label(name), words.shown(value[name], name)) for name in names if name != "name")
+    return tuple((words.label(name), _shown(kind, value, name)) for name in names if name not in ("name", "decimals"))
+
+
+def _shown(kind: str, value: dict[str, Any], name: str) -> str:
+    """A value in words; a limit in its own digits, a parameter by its name for people."""
+    if kind == "limit" and name in ("low", "high", "limit") and "decimals" in value:
+        return f"{value[name]:.{value['decimals']}f}"
+    if name == "parameter" and value[name] in parameters.PARAMETERS:
+        return parameters.PARAMETERS[value[name]].label
+    return words.shown(value[name], name)
 
 
 def difference(before: dict[str, Any] | None, after: dict[str, Any] | None) -> list[tuple[str, str, str]]:

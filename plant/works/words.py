@@ -25,7 +25,6 @@ _UNITS = (
     ("_pct", "%"),
     ("_days", "days"),
     ("_hours", "hours"),
-    ("_sd_m", "m"),
     ("_m3", "m³"),
     ("_kg", "kg"),
     ("_m", "m"),
@@ -42,6 +41,9 @@ def label(name: str) -> str:
     """A key's name for people, its unit in brackets."""
     if name in _LABELS:
         return _LABELS[name]
+    if name.endswith(("_sd_m", "_sd_kg", "_sd_pct")):
+        what, _, unit = name.rpartition("_sd_")
+        return f"{_sentence(what)}, standard uncertainty ({'%' if unit == 'pct' else unit})"
     for ending, unit in _UNITS:
         if name.endswith(ending) and len(name) > len(ending):
             return f"{_sentence(name.removesuffix(ending))} ({unit})"
@@ -49,7 +51,7 @@ def label(name: str) -> str:
 
 
 def _sentence(name: str) -> str:
-    words = name.replace("_", " ").replace("sd", "standard uncertainty")
+    words = name.replace("_", " ")
     return words[:1].upper() + words[1:]
 
 
