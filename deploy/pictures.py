@@ -50,7 +50,7 @@ def main() -> None:
 
 def _people(path: Path) -> dict[str, tuple[str, str]]:
     """Role to (name, password), from the file the demo wrote."""
-    found = {}
+    found: dict[str, tuple[str, str]] = {}
     for line in path.read_text(encoding="utf-8").splitlines():
         if match := re.match(r"\s+(\w+)\s+(\S+)\s+.*?, (operator|supervisor|manager)", line):
             found.setdefault(match[3], (match[1], match[2]))
@@ -90,7 +90,7 @@ def _photograph(site: str, people: dict[str, tuple[str, str]]) -> None:
 
 
 def _page(data: Path) -> None:
-    import pypdfium2
+    import pypdfium2  # type: ignore[import-untyped]
 
     reports = sorted((data / "reports").glob("*.pdf"))
     if reports:

@@ -29,13 +29,13 @@ def in_service(out: Reckoning, point: DosingPoint, start: dt.datetime, end: dt.d
     """Whether the point and the works are in service at any time of the day."""
     works = out.stated.works(end).code
 
-    def always_off(subject: str) -> bool:
-        if out.stated.state(*subject.split(":", 1), start) == "in_service":  # type: ignore[misc]
+    def always_off(kind: str, code: str) -> bool:
+        if out.stated.state(kind, code, start) == "in_service":
             return False
-        changes = [item for item in out.stated.history("state", subject) if start < item.effective_from < end]
-        return all(item.withdrawn is False and item.value.get("is") != "in_service" for item in changes)
+        changes = [item for item in out.stated.history("state", f"{kind}:{code}") if start < item.effective_from < end]
+        return all(not item.withdrawn and item.value.get("is") != "in_service" for item in changes)
 
-    return not (always_off(f"works:{works}") or always_off(f"dosing_point:{point.code}"))
+    return not (always_off("works", works) or always_off("dosing_point", point.code))
 
 
 def day_dose(out: Reckoning, point: DosingPoint, product: Product, day: dt.date, *, expected: bool) -> DayDose:

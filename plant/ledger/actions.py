@@ -50,10 +50,12 @@ def append(
     now: dt.datetime,
     device: str = "",
     attested: str = "session",
+    noted: Any = None,
 ) -> Appended:
     """Appends one entry with its rows while the book's head is held; all of it or nothing.
 
     ``received`` is what came in, kept as it came; ``rows`` are unsaved Records and Statements in their order.
+    ``noted`` is what the server observed of this one sending (a tablet's clock); it makes no repeat another content.
     Sending the same client id with the same ``received`` again returns the entry of the first time.
     Raises ContentDiffers, CrossesWorks. A clock slightly behind the book (another node's) is lifted to the head's time.
     """
@@ -84,7 +86,8 @@ def append(
             row.book, row.seq, row.line = head, seq, line
         for row in rows:
             _same_works(row, head)
-        entry.payload = canonical.text({"received": received, "rows": [row.facts() for row in rows]})
+        payload = {"received": received, "rows": [row.facts() for row in rows]}
+        entry.payload = canonical.text(payload if noted is None else payload | {"noted": noted})
         entry.hash = entry.chained()
         entry.save()
         _create(entry, rows)

@@ -161,7 +161,7 @@ class Record(Row):
     supersedes = models.OneToOneField("self", models.PROTECT, null=True, related_name="superseded_by")
     voided = models.BooleanField(default=False)
 
-    objects = models.Manager.from_queryset(InForceQuerySet)()
+    objects = models.Manager.from_queryset(InForceQuerySet)()  # type: ignore[misc]  # Django replaces managers so
 
     class Meta:
         abstract = True
