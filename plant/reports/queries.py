@@ -112,7 +112,7 @@ def months(book: Book, calendar: clock.Calendar, now: dt.datetime, *, due_day: i
         return []
     oldest, day = calendar.day_of(first), calendar.day_of(now)
     issued = {report.month: report for report in Report.objects.filter(book=book).order_by("revision")}
-    out = []
+    out: list[MonthState] = []
     while len(out) < most and (day.year, day.month) >= (oldest.year, oldest.month):
         start_day, end_day = clock.month_days(day.year, day.month)
         start, end = calendar.span(start_day, end_day)

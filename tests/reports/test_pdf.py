@@ -14,8 +14,9 @@ import pypdf
 import pypdfium2
 import pytest
 from pypdf.generic import IndirectObject
+from reportlab.lib.colors import Color
 
-from plant.reports.pdf import cut_faces, document, faces, paper
+from plant.reports.pdf import cut_faces, document, faces, ink, paper, picture
 from plant.reports.pdf.document import NOTICE, Cell, Column, Section, Table, Text
 from tests.reports import documents
 
@@ -225,12 +226,10 @@ def test_markup_in_words_stays_words() -> None:
 def test_readable_in_black_and_white() -> None:
     """No text lighter than a grey that keeps 4.5 : 1 on white (WCAG 2.2, 1.4.3), when colours are taken out."""
 
-    def luminance(colour: str) -> float:
-        parts = [int(colour[place : place + 2], 16) / 255 for place in (1, 3, 5)]
+    def luminance(colour: Color) -> float:
+        parts = colour.rgb()
         linear = [part / 12.92 if part <= 0.04045 else ((part + 0.055) / 1.055) ** 2.4 for part in parts]
         return 0.2126 * linear[0] + 0.7152 * linear[1] + 0.0722 * linear[2]
-
-    from plant.reports.pdf import ink, picture
 
     for colour in (ink.INK, ink.QUIET, ink.WATER, ink.CARE, picture.PAPER["need"], picture.PAPER["action"]):
         assert 1.05 / (luminance(colour) + 0.05) >= 4.5

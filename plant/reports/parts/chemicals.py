@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import datetime as dt
+
 from plant.deviations.rules import doses
 from plant.dosing.figures import DayDose, PeriodDose
 from plant.reports import measures
@@ -172,7 +174,7 @@ def _maximum(month: Month) -> Table | None:
     )
 
 
-def _highest(days: list[DayDose], month: Month) -> tuple[float, object, int] | None:
+def _highest(days: list[DayDose], month: Month) -> tuple[float, dt.date, int] | None:
     found = []
     for position, row in enumerate(days):
         if row.day < month.first:

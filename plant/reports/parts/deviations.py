@@ -6,7 +6,7 @@ from plant.deviations import queries as deviations
 from plant.deviations.queries import DeviationView, EventView
 from plant.reports import measures
 from plant.reports.month import Month
-from plant.reports.pdf.document import Cell, Column, Section, Table, Text
+from plant.reports.pdf.document import Block, Cell, Column, Section, Table, Text
 
 KEY, TITLE = "deviations", "Deviations"
 LEVELS = ("regulatory", "action", "alert", "target")
@@ -17,7 +17,7 @@ def section(month: Month) -> Section:
     found = sorted(views(month), key=lambda view: (LEVELS.index(view.level), view.since, view.ref))
     rows = tuple(_row(month, number, view) for number, view in enumerate(found, start=1))
     life = tuple(row for number, view in enumerate(found, start=1) for row in _life(month, number, view))
-    blocks = [
+    blocks: list[Block] = [
         Table(
             "deviations",
             "Outside a stated limit, worst first",

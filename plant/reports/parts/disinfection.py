@@ -3,14 +3,12 @@
 from __future__ import annotations
 
 import datetime as dt
-from decimal import Decimal
 
-from plant.deviations.rules import bounds, durations
-from plant.deviations.rules.observed import Observed
+from plant.deviations.rules import durations
 from plant.readings.queries import Point
 from plant.reports import inactivation, measures
 from plant.reports.month import Month
-from plant.reports.parts import values
+from plant.reports.parts import judged, values
 from plant.reports.pdf.document import Block, Cell, Column, Section, Table, Text
 
 KEY, TITLE = "disinfection", "Disinfection"
@@ -87,21 +85,17 @@ def _dips(month: Month) -> Table | None:
         if low is None:
             continue
         asked = True
-        bound = bounds.Bound(low=Decimal(str(low)))
-        points = [point for point in month.series.get((limit.subject, limit.parameter), []) if point.decimal is not None]
-        observed = [
-            Observed(point.at, point.decimal, point.qualifier, point.ref)
-            for point in points
-            if point.settled != "set_aside" and point.decimal is not None
-        ]
+        key = "limit" if limit.kind == "held_below" else "low"
+        points = month.series.get((limit.subject, limit.parameter), [])
+        observed = judged.observed([point for point in points if point.settled != "set_aside"])
         label, unit, _ = values.printed(month, limit.parameter)
-        for dip in durations.dips(observed, lambda item, bound=bound: bounds.below(item, bound)):
+        for dip in durations.dips(observed, judged.outside(month, limit, key, low=True)):
             until = dip.end or min(month.end, month.now)
             body.append(
                 (
                     Cell(limit.subject),
                     Cell(label),
-                    Cell(f"{low:g} {unit}"),
+                    Cell(f"{low:g} {limit.unit or unit}"),
                     Cell(limit.level),
                     Cell(month.local(dip.start)),
                     Cell(month.local(dip.end) if dip.end else "not back by the end"),
@@ -128,9 +122,9 @@ def _dips(month: Month) -> Table | None:
         2,
         0,
         (
-            "From the first reading below to the first reading back (40 CFR 141.72(b)(2)); doubtful readings that "
-            "nobody has settled are "
-            "included. Who was told stands under Deviations.",
+            "From the first reading below to the first reading back (40 CFR 141.72(b)(2)), each against the limit in "
+            "force when it was "
+            "taken; doubtful readings that nobody has settled are included. Who was told stands under Deviations.",
         ),
         "No reading lay below a stated minimum.",
     )

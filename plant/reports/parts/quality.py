@@ -3,17 +3,15 @@
 from __future__ import annotations
 
 import datetime as dt
-from decimal import Decimal
 from itertools import pairwise
 from statistics import fmean, median
 
-from plant.deviations.rules import bounds, running, shares
-from plant.deviations.rules.observed import Observed
+from plant.deviations.rules import running, shares
 from plant.readings import queries as readings
 from plant.readings.queries import Point
 from plant.reports import measures
 from plant.reports.month import Month
-from plant.reports.parts import expected, values
+from plant.reports.parts import expected, judged, values
 from plant.reports.pdf.document import Block, Cell, Column, Section, Table, Text
 from plant.works.described import Limit
 
@@ -149,10 +147,6 @@ def _mean(month: Month, points: list[Point], places: int) -> Cell:
     return measures.cell(month.measures.shown(fmean(numbers), unit), places + 1)
 
 
-def _observed(points: list[Point]) -> list[Observed]:
-    return [Observed(point.at, point.decimal, point.qualifier, point.ref) for point in points if point.decimal is not None]
-
-
 def _of_limit(month: Month, limit: Limit) -> list[Point]:
     return [
         point for point in month.series.get((limit.subject, limit.parameter), []) if point.statistic in ("reading", "day_max")
@@ -165,16 +159,14 @@ def _shares(month: Month) -> Table | None:
     for limit in month.stated.limits(month.at):
         if limit.kind != "share_of_month":
             continue
-        bound = bounds.Bound(high=Decimal(str(limit.keys["limit"])))
         label, unit, places = values.printed(month, limit.parameter)
-        row = [Cell(limit.subject), Cell(label), Cell(f"{limit.keys['limit']:g} {unit}".strip())]
-        points = _of_limit(month, limit)
-        settled = [point for point in points if point.usable]
-        verdicts = [bounds.above(item, bound) for item in _observed(settled)]
+        row = [Cell(limit.subject), Cell(label), Cell(f"{limit.keys['limit']:g} {limit.unit or unit}".strip())]
+        points = judged.while_in_force(month, limit, _of_limit(month, limit))
+        settled = [point for point in points if point.usable and point.decimal is not None]
+        test = judged.outside(month, limit, "limit", low=False)
+        verdicts = [test(item) for item in judged.observed(settled)]
         share = shares.share_met(verdicts)
-        above = [
-            point for point, verdict in zip([p for p in settled if p.decimal is not None], verdicts, strict=True) if verdict
-        ]
+        above = [point for point, verdict in zip(settled, verdicts, strict=True) if verdict]
         row += [_count(share.of), _count(share.met), measures.cell(share.pct, 1), Cell(f"{limit.keys['at_least_pct']:g}")]
         listed = "; ".join(f"{month.local(point.at)[5:]} {values.cell(month, point, places).text}" for point in above)
         row.append(Cell(listed or "none"))

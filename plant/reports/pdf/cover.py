@@ -51,7 +51,7 @@ def pairs(part: Element, rows: tuple[tuple[str, str], ...], width: float, *, cap
     return [*title, *(PairLine(part, name, value, width) for name, value in rows), Spacer(1, 5)]
 
 
-class PairLine(Flowable):  # type: ignore[misc]
+class PairLine(Flowable):
     """One name and what it is; the latter wraps."""
 
     def __init__(self, part: Element, name: str, value: str, width: float) -> None:
@@ -82,7 +82,7 @@ class PairLine(Flowable):  # type: ignore[misc]
         canvas.end()
 
 
-class StatusBox(Flowable):  # type: ignore[misc]
+class StatusBox(Flowable):
     """The state of the report, whose form it is, and the regulator's note, in one frame."""
 
     def __init__(self, part: Element, document: Document, width: float) -> None:
@@ -115,7 +115,7 @@ class StatusBox(Flowable):  # type: ignore[misc]
         canvas.end()
 
 
-class SignatureRow(Flowable):  # type: ignore[misc]
+class SignatureRow(Flowable):
     """The signatures side by side: what each means, the name, the licence, when, and how it was given."""
 
     def __init__(self, part: Element, signatures: tuple[Signature, ...], width: float) -> None:

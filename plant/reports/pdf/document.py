@@ -190,7 +190,7 @@ def _block(plain: dict[str, Any]) -> Block:
         fields["notes"] = tuple(fields["notes"])
     elif kind is Pairs:
         fields["rows"] = _pairs(fields["rows"])
-    return kind(**fields)  # type: ignore[no-any-return]
+    return kind(**fields)
 
 
 def _cell(plain: list[Any]) -> Cell:

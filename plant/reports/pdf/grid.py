@@ -19,6 +19,7 @@ from plant.reports.pdf.tagged import Element
 PAD_X = 2.7
 PAD_Y = 2.1
 MARK_WIDTH = 5.0
+MARK_SIZE = 5.4
 LINE_CELL = 9.4
 LINE_HEAD = 8.8
 WIDEST_LABEL = 0.30  # of the page, before a label wraps
@@ -117,7 +118,7 @@ def _parts(table: Table, widths: list[Width], page_width: float) -> list[list[in
     return [labels + part for part in parts] or [labels]
 
 
-class Grid(Flowable):  # type: ignore[misc]
+class Grid(Flowable):
     """One part of a table, or what is left of it after a page break."""
 
     def __init__(
@@ -139,6 +140,10 @@ class Grid(Flowable):  # type: ignore[misc]
         self.grouped = any(column.group for column in self.columns)
         self.group_height = LINE_HEAD + PAD_Y if self.grouped else 0.0
         self.rows = [part for position, row in enumerate(table.rows) for part in self._rows(row, position)]
+        self.marked = [
+            column.number and any(row.cells[index].mark for row in self.rows) for index, column in enumerate(self.columns)
+        ]
+        self.lefts = [sum(self.widths[:index]) for index in range(len(self.widths))]
         self.first = 0
         self.hAlign = "LEFT"
         self.spaceAfter = 7
@@ -205,13 +210,15 @@ class Grid(Flowable):  # type: ignore[misc]
         top = self.height
         self._grounds(top)
         top = self._head(top, continued)
+        canvas.setFillColor(ink.INK)
         for row in self.rows[self.first :]:
             line = Element("TR", self.element)
+            face = faces.SEMIBOLD if row.bold else faces.REGULAR
             for number, (cell, lines) in enumerate(zip(row.cells, row.lines, strict=True)):
                 label = number < self.table.labels
                 kind = Element("TH" if label else "TD", line, "row" if label else "")
                 canvas.begin(kind)
-                self._cell(number, cell, lines, top, row.bold)
+                self._cell(number, cell, lines, top, face)
                 canvas.end()
             top -= row.height
 
@@ -252,7 +259,7 @@ class Grid(Flowable):  # type: ignore[misc]
             else:
                 canvas.begin(Element("TH", line, "column"))
             y = top - self.head_height + PAD_Y + 2 + (len(lines) - 1) * LINE_HEAD
-            gutter = MARK_WIDTH if self._marked(number) else 0
+            gutter = MARK_WIDTH if self.marked[number] else 0
             for text, face in lines:
                 canvas.setFont(face, ink.HEAD)
                 if column.number:
@@ -263,9 +270,6 @@ class Grid(Flowable):  # type: ignore[misc]
             canvas.end()
             left += width
         return top - self.head_height
-
-    def _marked(self, number: int) -> bool:
-        return self.columns[number].number and any(row.cells[number].mark for row in self.rows)
 
     def _group_heads(self, top: float) -> None:
         canvas = self.canv
@@ -286,24 +290,19 @@ class Grid(Flowable):  # type: ignore[misc]
             left += width
         canvas.end()
 
-    def _cell(self, number: int, cell: Cell, lines: tuple[str, ...], top: float, bold: bool) -> None:
-        canvas, column = self.canv, self.columns[number]
-        left, width = sum(self.widths[:number]), self.widths[number]
-        face = faces.SEMIBOLD if bold else faces.REGULAR
-        canvas.setFillColor(ink.INK)
-        canvas.setFont(face, ink.CELL)
+    def _cell(self, number: int, cell: Cell, lines: tuple[str, ...], top: float, face: str) -> None:
+        canvas = self.canv
+        left, width = self.lefts[number], self.widths[number]
         y = top - PAD_Y - ink.CELL + 0.6
-        gutter = MARK_WIDTH if self._marked(number) else 0
+        right = left + width - PAD_X - (MARK_WIDTH if self.marked[number] else 0)
         for text in lines:
-            if column.number:
-                canvas.drawRightString(left + width - PAD_X - gutter, y, text)
-            else:
-                canvas.drawString(left + PAD_X, y, text)
+            x = right - faces.width(text, face, ink.CELL) if self.columns[number].number else left + PAD_X
+            canvas.put(x, y, text, face, ink.CELL)
             y -= LINE_CELL
         if cell.mark:
-            canvas.setFont(faces.REGULAR, 5.4)
             canvas.setFillColor(ink.QUIET)
-            canvas.drawString(left + width - PAD_X - MARK_WIDTH + 1, top - PAD_Y - ink.CELL + 2.8, cell.mark)
+            canvas.put(left + width - PAD_X - MARK_WIDTH + 1, top - PAD_Y - ink.CELL + 2.8, cell.mark, faces.REGULAR, MARK_SIZE)
+            canvas.setFillColor(ink.INK)
 
 
 def _spread(columns: list[Column], widths: list[Width], page_width: float) -> list[float]:

@@ -2,14 +2,16 @@
 
 from __future__ import annotations
 
-INK = "#10222B"
-QUIET = "#4A5B64"
-WATER = "#0A5A86"
-LINE = "#9FB0B6"
-HAIR = "#D5DDDF"
-STRIPE = "#F1F5F6"
-BAND = "#D3E6EE"
-CARE = "#8A5200"
+from reportlab.lib.colors import HexColor
+
+INK = HexColor("#10222B")
+QUIET = HexColor("#4A5B64")
+WATER = HexColor("#0A5A86")
+LINE = HexColor("#9FB0B6")
+HAIR = HexColor("#D5DDDF")
+STRIPE = HexColor("#F1F5F6")
+BAND = HexColor("#D3E6EE")
+CARE = HexColor("#8A5200")
 
 BODY = 9.0
 SMALL = 7.6

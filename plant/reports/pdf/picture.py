@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from typing import Any
 
+from reportlab.lib.colors import HexColor
 from reportlab.platypus import Flowable, KeepTogether
 
 from plant import scene
@@ -20,13 +21,13 @@ PAPER = {
     "edge": ink.LINE,
     "water": ink.WATER,
     "band": ink.BAND,
-    "need": "#7A4F00",
-    "alert": "#8A5200",
-    "action": "#B02A1B",
-    "regulatory": "#7B1E63",
-    "settled": "#2B6A4B",
-    "card": "#FFFFFF",
-    "paper": "#FFFFFF",
+    "need": HexColor("#7A4F00"),
+    "alert": HexColor("#8A5200"),
+    "action": HexColor("#B02A1B"),
+    "regulatory": HexColor("#7B1E63"),
+    "settled": HexColor("#2B6A4B"),
+    "card": HexColor("#FFFFFF"),
+    "paper": HexColor("#FFFFFF"),
 }
 SCALE = 0.62  # one pixel of a scene in points: text of 14 px comes to 8.7 pt
 GAP = 16.0
@@ -60,7 +61,7 @@ def flowables(part: Element, picture: Picture, width: float) -> list[Flowable]:
     return [KeepTogether([*title, rows[0]]), *rows[1:]]
 
 
-class PictureRow(Flowable):  # type: ignore[misc]
+class PictureRow(Flowable):
     """Scenes side by side, each a figure with its summary as alternative text."""
 
     def __init__(self, part: Element, made: list[tuple[str, scene.Scene]], width: float, across: int) -> None:

@@ -32,7 +32,7 @@ STYLES = {
 }
 
 
-class Words(Paragraph):  # type: ignore[misc]
+class Words(Paragraph):
     """A tagged paragraph; one element however many pages it spans. Made by ``words`` and ``heading``.
 
     The constructor is reportlab's own: it builds the parts of a split paragraph through it.
@@ -73,7 +73,7 @@ def heading(parent: Element, text: str, manner: str, *, level: int, key: str, ta
     return made
 
 
-class Rule(Flowable):  # type: ignore[misc]
+class Rule(Flowable):
     """A line across the column."""
 
     def __init__(self, *, thickness: float = 0.6, colour: str = ink.LINE, before: float = 2, after: float = 6) -> None:
