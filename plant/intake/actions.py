@@ -45,6 +45,7 @@ def take(
     now: dt.datetime,
     device: str = "",
     attested: str = "session",
+    noted: Any = None,
     judge: bool = True,
 ) -> Taken:
     """Appends rows as one entry and judges the days they touch.
@@ -63,6 +64,7 @@ def take(
             now=now,
             device=device,
             attested=attested,
+            noted=noted,
         )
         key = note_key(appended.entry)
         days: list[dt.date] = []

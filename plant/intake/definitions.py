@@ -125,7 +125,7 @@ def _asked_outside(usable: list[Point], known: parameters.Parameter) -> list[str
 def _lost(usable: list[Point]) -> list[str] | None:
     newest = usable[-ground.REMEMBERED :]
     pointed = [point for point in newest if "." in point.typed or "," in point.typed]
-    if len(pointed) < 4 or 2 * len(pointed) <= len(newest):
+    if len(pointed) < ground.FEWEST_POINTED or 2 * len(pointed) <= len(newest):
         return None
     values = sorted(point.decimal for point in pointed if point.decimal is not None)
     return [_text(values[0]) or "0", _text(values[-1]) or "0"]

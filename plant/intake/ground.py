@@ -24,6 +24,9 @@ SITE_KINDS = ("sample_point", "meter", "vessel", "dosing_point")
 REMEMBERED = 12
 """How many of the newest values of a series say what it looks like."""
 
+FEWEST_POINTED = 3
+"""How many of them must be written with a decimal sign before a missing one says anything."""
+
 Recent = tuple[float, bool]
 """A value of a series and whether it was typed with a decimal sign."""
 
@@ -191,7 +194,7 @@ def lost_point(value: float, recent: Iterable[Recent]) -> bool:
     """
     seen = list(recent)
     pointed = [number for number, had_point in seen if had_point]
-    if len(pointed) < 4 or 2 * len(pointed) <= len(seen):
+    if len(pointed) < FEWEST_POINTED or 2 * len(pointed) <= len(seen):
         return False
     low, high = min(pointed), max(pointed)
     if high <= 0 or value <= 5 * high:

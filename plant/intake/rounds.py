@@ -24,6 +24,7 @@ KINDS = ("round", "line")
 MOST_LINES = 200
 CONFIRMED = "looked at twice at entry: the instrument shows this"
 _AHEAD = dt.timedelta(minutes=10)
+_OLDEST_ROUND = dt.timedelta(hours=36)
 _NOT_TAKEN_MOST = 200
 
 
@@ -179,8 +180,10 @@ def _on_the_clock(text: str, here: ground.Ground, now: dt.datetime) -> dt.dateti
 
 def _closing(stated: Stated, sent: list[dict[str, Any]], close: dict[str, Any], now: dt.datetime) -> models.HandOver:
     calendar = stated.calendar(now)
-    shift, _ = shifts.on_duty(stated, calendar, now)
-    due = shifts.due_now(stated, calendar, shifts.expected(stated, now), now)
+    # A page opened before the change of shifts closes the shift it was opened in.
+    meant = _started(close, now) or now
+    shift, _ = shifts.on_duty(stated, calendar, meant)
+    due = shifts.due_now(stated, calendar, shifts.expected(stated, meant), meant)
     still_open = [str(key)[:120] for key in close.get("open", []) if isinstance(key, str)][:MOST_LINES]
     return models.HandOver(
         day=shift.day,
@@ -192,6 +195,18 @@ def _closing(stated: Stated, sent: list[dict[str, Any]], close: dict[str, Any], 
         lines_answered=max(len(due) - len(still_open), 0),
         lines_open=still_open,
     )
+
+
+def _started(close: Mapping[str, Any], now: dt.datetime) -> dt.datetime | None:
+    """The start of the shift a round was opened in, where the page says so and it can be."""
+    typed = _text(close, "starts_at", 40)
+    try:
+        found = dt.datetime.fromisoformat(typed) if typed else None
+    except ValueError:
+        raise Unreadable(general="close: starts_at is not a time") from None
+    if found is None or found.tzinfo is None or not now - _OLDEST_ROUND <= found <= now:
+        return None
+    return found
 
 
 def _text(line: Mapping[str, Any], name: str, most: int) -> str:

@@ -226,6 +226,22 @@ class TestClosing:
         night = walk.walk(book, works.stated(book), MORNING + dt.timedelta(hours=12))
         assert night.said.note == "pump 2 hums"
 
+    def test_closes_the_shift_it_was_opened_in(self, olga, book, monkeypatch):
+        monkeypatch.setattr(clock, "now", lambda: MORNING + dt.timedelta(hours=10, minutes=5))
+        put(
+            olga,
+            {"kind": "round", "lines": [], "close": {"note": "late", "open": [], "starts_at": "2026-03-10T06:00:00+00:00"}},
+        )
+        assert models.HandOver.objects.get().shift == "day"
+
+    @pytest.mark.parametrize("starts_at", ["2020-01-01T06:00:00+00:00", "2026-03-10T06:00:00", "2027-01-01T06:00:00+00:00"])
+    def test_takes_no_start_that_cannot_be(self, olga, starts_at):
+        put(olga, {"kind": "round", "lines": [], "close": {"starts_at": starts_at}})
+        assert models.HandOver.objects.get().starts_at == dt.datetime(2026, 3, 10, 6, 0, tzinfo=dt.UTC)
+
+    def test_with_a_start_that_is_no_time_is_refused(self, olga):
+        assert put(olga, {"kind": "round", "lines": [], "close": {"starts_at": "soon"}}).status_code == 422
+
 
 class TestThePageWithoutScript:
     def page(self, client):

@@ -219,3 +219,25 @@ def test_targets_are_large_enough_for_gloves(tablet):
         .filter(node => node.checkVisibility()).map(node => [node.outerHTML.slice(0, 80), node.getBoundingClientRect().height])
         .filter(([, height]) => height < 48)""")
     assert small == []
+
+
+def test_what_was_typed_in_an_earlier_shift_is_offered_again(tablet):
+    yesterday = tablet.evaluate("Date.now() - 20 * 3600 * 1000")
+    tablet.evaluate(
+        """async ([key, at]) => {
+            const drafts = await import('/static/intake/drafts.js');
+            const line = {value: '0.61', unit: 'mg/L', notTaken: '', clock: '', note: '', atMs: at, confirmed: false};
+            await drafts.keepDraft({key: 'TST|2026-01-01 day|olga', lines: {[key]: line}, note: ''});
+        }""",
+        [KEY, yesterday],
+    )
+    tablet.reload()
+    tablet.wait_for_selector("form[data-ready=yes]")
+    wait_for(tablet, "never sent")
+    tablet.get_by_role("button", name="Send these now").click()
+    wait_for(tablet, "In the book: ENTRY free_chlorine 0.61 mg/L")
+    assert tablet.inner_text("#count").startswith("0 of")
+    assert abs(Reading.objects.get().taken_at.timestamp() - yesterday / 1000) < 60
+    tablet.reload()
+    tablet.wait_for_selector("form[data-ready=yes]")
+    assert "never sent" not in tablet.inner_text("body")

@@ -33,7 +33,11 @@ def page(request: HttpRequest, at: access.At) -> HttpResponse:
     client_id = request.POST.get("client_id", "")
     received: dict[str, Any] = {"kind": "round", "lines": list(typed.values()), "made_by": "form"}
     if "close" in request.POST:
-        received["close"] = {"note": request.POST.get("note", ""), "open": forms.still_open(walked, typed)}
+        received["close"] = {
+            "note": request.POST.get("note", ""),
+            "starts_at": request.POST.get("starts_at", ""),
+            "open": forms.still_open(walked, typed),
+        }
     answers = dict(zip(typed, rounds.answers(at.book, at.stated, received["lines"], at.now), strict=True))
     unsure = [key for key, found in answers.items() if found.asks and not typed[key].get("confirmed")]
     problems: dict[str, str] = {}
@@ -108,6 +112,7 @@ def _show(
             "works": at.code,
             "zone": str(calendar.zone),
             "now_ms": int(at.now.timestamp() * 1000),
+            "starts_at": walked.shift.start.isoformat(),
             "shift": f"{walked.shift.day.isoformat()} {walked.shift.name}",
             "person": request.user.get_username(),
             "rules": {line.key: line.rules for line in walked.lines},

@@ -44,6 +44,15 @@ export function doneLine(text, address) {
   return line;
 }
 
+export function olderBlock(shift, texts, act) {
+  const block = document.createElement("section");
+  block.className = "note alert stack";
+  block.append(paragraph("strong", `Typed in the shift ${shift} and never sent`), paragraph("", texts.join("; ")));
+  const done = (work) => async () => { await work(); block.remove(); };
+  block.append(buttons(["Send these now", "button", done(act.send)], ["Throw them away", "button second", done(act.drop)]));
+  return block;
+}
+
 function paragraph(style, text) {
   const out = document.createElement("p");
   if (style) out.className = style;

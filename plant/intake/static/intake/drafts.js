@@ -31,6 +31,7 @@ async function run(store, mode, work) {
 
 export const keepDraft = (draft) => run("drafts", "readwrite", (store) => store.put(draft));
 export const draftOf = (key) => run("drafts", "readonly", (store) => store.get(key));
+export const allDrafts = () => run("drafts", "readonly", (store) => store.getAll());
 export const dropDraft = (key) => run("drafts", "readwrite", (store) => store.delete(key));
 
 export const keepEntry = (entry) => run("outbox", "readwrite", (store) => store.put(entry));

@@ -1,7 +1,7 @@
 // The round's page: answers beside each field, keeps every keystroke on the device, and sends when told to.
 // Without this script the page is one plain form that the server answers.
 
-import { answerBlock, doneLine } from "./answers.js";
+import { answerBlock, doneLine, olderBlock } from "./answers.js";
 import * as drafts from "./drafts.js";
 import { instantOf, clockText } from "./moments.js";
 import { answer } from "./rules.js";
@@ -180,18 +180,23 @@ async function sendEntry(entry) {
 async function takenBy(entry, body) {
   entry.body.lines.forEach((sent, place) => {
     const line = byKey.get(sent.key);
-    if (!line) return;
+    const text = sent.value === "" ? `not taken, ${sent.not_taken}` : `${sent.value} ${sent.unit}`.trim();
+    const ref = (body.refs ?? [])[place];
+    const address = ref ? `/w/${settings.works}/reading/${ref}/` : "";
+    if (!line || !entry.keys.includes(sent.key)) {
+      // From an earlier shift: it is in the book, and answers nothing that is due now.
+      document.getElementById("news").append(doneLine(`${sent.site} ${sent.parameter} ${text}`, address));
+      return;
+    }
     line.inBook = true;
     line.entry = null;
     line.item.classList.add("sent");
-    const text = sent.value === "" ? `not taken, ${sent.not_taken}` : `${sent.value} ${sent.unit}`.trim();
     for (const input of [line.value, line.notTaken, line.clock, line.note]) input.value = "";
     line.atMs = null;
     line.confirmed = false;
     show(line);
     line.item.querySelectorAll(".done").forEach((old) => old.remove());
-    const ref = (body.refs ?? [])[place];
-    line.answers.after(doneLine(text, ref ? `/w/${settings.works}/reading/${ref}/` : ""));
+    line.answers.after(doneLine(text, address));
   });
   await keep();
   const news = document.getElementById("news");
@@ -215,7 +220,7 @@ function refusedBy(entry, body) {
     line.error = (body.lines ?? {})[place] ?? "";
     show(line);
   });
-  refused = body.general || "not taken: see the lines marked";
+  refused = body.general || (entry.keys.length ? "not taken: see the lines marked" : Object.values(body.lines ?? {}).join("; "));
   const first = entry.keys.map((key) => byKey.get(key)).find((line) => line && line.error);
   first?.value.focus();
 }
@@ -250,8 +255,36 @@ async function restore() {
   }
   lines.filter(filled).forEach(show);
   showFoot();
+  await offerOlder();
   form.dataset.ready = "yes";
   await flush();
+}
+
+// What this person typed in an earlier shift and never sent: nothing typed is thrown away unseen.
+async function offerOlder() {
+  for (const old of await drafts.allDrafts().catch(() => [])) {
+    const [works, shift, person] = old.key.split("|");
+    const typed = Object.entries(old.lines).filter(([, line]) => line.value.trim() !== "" || line.notTaken !== "");
+    if (works !== settings.works || person !== settings.person || old.key === draftKey || typed.length === 0) continue;
+    document.getElementById("news").append(olderBlock(shift, typed.map(([key, line]) => `${key.replace(":", " ")} ${line.value || line.notTaken} ${line.value ? line.unit : ""}`.trim()), {
+      send: async () => {
+        const body = { kind: "round", lines: typed.map(([key, line]) => olderLine(key, line)), made_at: new Date().toISOString() };
+        await drafts.keepEntry({ id: newId(), works, person, keys: [], body }).catch(notKept);
+        await drafts.dropDraft(old.key);
+        await flush();
+      },
+      drop: () => drafts.dropDraft(old.key),
+    }));
+  }
+}
+
+function olderLine(key, line) {
+  const [site, parameter] = [key.slice(0, key.lastIndexOf(":")), key.slice(key.lastIndexOf(":") + 1)];
+  return {
+    key, site, parameter: parameter === "level" && line.unit === "L" ? "volume" : parameter, value: line.value.trim(), unit: line.unit,
+    taken_at: new Date(line.atMs ?? now()).toISOString(), not_taken: line.value.trim() === "" ? line.notTaken : "", note: line.note,
+    ...(line.confirmed ? { confirmed: true } : {}),
+  };
 }
 
 form.addEventListener("submit", (event) => {
@@ -259,7 +292,7 @@ form.addEventListener("submit", (event) => {
   const closing = event.submitter?.id === "close";
   const chosen = lines.filter((line) => filled(line) && line.entry === null);
   const open = lines.filter((line) => !line.inBook && !filled(line)).map((line) => line.key);
-  sendLines(chosen, "round", closing ? { note: note.value, open } : null);
+  sendLines(chosen, "round", closing ? { note: note.value, open, starts_at: settings.starts_at } : null);
 });
 note.addEventListener("input", keep);
 window.addEventListener("online", flush);
