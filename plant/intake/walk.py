@@ -142,7 +142,9 @@ def _line(
 ) -> Line:
     points = list(seen.get((line.site, line.parameter), ()))
     usable = [point for point in points if point.usable and point.statistic == "reading"]
-    last = usable[-1] if usable else readings.latest(book, line.site, line.parameter, before=now)
+    last = usable[-1] if usable else None
+    if not points:
+        last = readings.latest(book, line.site, line.parameter, before=now)
     slot = due[line.code]
     taken = tuple(point for point in points if slot.start <= point.at < slot.end and point.at <= now + AHEAD)
     own = [point for point in usable if point.parameter == line.parameter]
