@@ -114,7 +114,7 @@ def _write(book: Book, evidence: Evidence, reviewed: list[episodes.Reviewed], no
     def correctors(row: Deviation, day: dt.date) -> list[str]:
         return _correctors(evidence, row, day)
 
-    difference = episodes.compare(known, reviewed, day_of=evidence.calendar.day_of, correctors=correctors, still_so=still_so)
+    difference = episodes.compare(known, reviewed, correctors=correctors, still_so=still_so)
     if not difference.rows:
         return []
     ledger.append(
@@ -178,7 +178,7 @@ def try_limit(*, book: Book, limit: described.Limit, first: dt.date, last: dt.da
             found = judging.judge_day(day, limit)
             one = episodes.Reviewed(on, day.until, day.over, tuple(found))
             before = len(known)
-            difference = episodes.compare(known, [one], day_of=evidence.calendar.day_of)
+            difference = episodes.compare(known, [one])
             known += [episodes.Episode(row, {on: {}}) for row in difference.raised]
             firsts += [item for item in found if any(item.key == episode.key for episode in known[before:])]
     return firsts

@@ -18,6 +18,7 @@ from plant.works.stated import NotStated
 
 BEFORE_DAYS = 28
 LEAST = 4
+GIVEN_BACK_SDS = 4.0
 RESPONSE_OF = RESIDUAL_OF | {
     "NaOH": "pH",
     "Na2CO3": "pH",
@@ -171,12 +172,20 @@ def _feeder(day: Day, code: str, since: dt.date) -> float | None:
 
 
 def given_back(newest: Sequence[DayDose]) -> bool:
-    """Whether the last two days are off to opposite sides by nearly the same: one reading between them is wrong."""
-    ratios = [row.ratio for row in newest]
-    if len(ratios) < 2 or any(ratio is None for ratio in ratios):
+    """Whether the last two days are off to opposite sides by nearly the same, and far more than their gauges can be: then
+    one reading between them is wrong.
+    """
+    if len(newest) < 2:
         return False
-    first, second = (float(ratio or 0.0) - 1 for ratio in ratios)
-    return first * second < 0 and abs(first + second) < 0.5 * max(abs(first), abs(second))
+    offs = []
+    for row in newest[-2:]:
+        if row.ratio is None or not row.design_mg_l.value:
+            return False
+        off = row.ratio - 1
+        if abs(off) < max(GIVEN_BACK_SDS * (row.used_mg_l.sd or 0.0) / row.design_mg_l.value, 0.1):
+            return False
+        offs.append(off)
+    return offs[0] * offs[1] < 0 and abs(offs[0] + offs[1]) < 0.5 * max(abs(offs[0]), abs(offs[1]))
 
 
 def _empty(day: Day, point: DosingPoint) -> bool:

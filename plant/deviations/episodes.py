@@ -17,6 +17,8 @@ from plant.deviations.models import Deviation, DeviationEvent
 Kind = DeviationEvent.Kind
 GAP_DAYS = {"drift": 4, "dose_vs_design": 3, "dose_vs_need": 3, "certified_maximum": 3, "stock_loss": 3, "stuck": 2}
 """Days without a finding that don't end an episode: a dose that could not be reckoned is not a dose back in place."""
+SIGNED = frozenset({"drift", "dose_vs_design", "dose_vs_need", "stock_loss"})
+"""Kinds that are off one way or the other: above and below are two episodes, not one."""
 MOMENTARY = frozenset({"days_of_supply", "stock_loss", "lot_age", "strength_low", "missing"})
 """Kinds that speak of a moment: what was so at noon was so, whatever the end of the day brings."""
 
@@ -49,8 +51,10 @@ class Episode:
         """First and last day that stands."""
         return (min(self.days), max(self.days)) if self.days else None
 
-    def takes(self, finding: Finding, since: dt.date) -> bool:
-        """Whether a finding of the same key belongs here. ``since`` is the day on which it began."""
+    def takes(self, finding: Finding) -> bool:
+        """Whether a finding of the same key belongs here: on a day that is held already, or beside one, and off the same
+        way. When a slow change began is only an estimate, so the days found count and not ``since``.
+        """
         if self.void:
             return False
         if finding.day in self.days or finding.day in self.withdrawn:
@@ -61,7 +65,11 @@ class Episode:
         if self.closed:
             return span[0] <= finding.day <= span[1]
         gap = dt.timedelta(days=1 + GAP_DAYS.get(finding.kind, 0))
-        return min(since, finding.day) <= span[1] + gap and finding.day >= span[0] - gap
+        return span[0] - gap <= finding.day <= span[1] + gap and not self._other_way(finding)
+
+    def _other_way(self, finding: Finding) -> bool:
+        sizes = [fields["size"] for _, fields in sorted(self.days.items()) if fields.get("size") is not None]
+        return finding.kind in SIGNED and bool(sizes) and finding.size is not None and sizes[-1] * finding.size < 0
 
 
 def from_rows(deviations: Iterable[Deviation], events: Iterable[DeviationEvent]) -> list[Episode]:
@@ -106,21 +114,20 @@ def compare(
     episodes: Sequence[Episode],
     reviewed: Sequence[Reviewed],
     *,
-    day_of: Any,
     correctors: Any = None,
     still_so: Any = None,
 ) -> Difference:
     """The difference between what was found and what is known.
 
-    ``day_of`` gives the operating day of an instant; ``correctors(deviation, day)`` who corrected readings it rests on;
-    ``still_so(deviation, day, fields)`` whether a finding of a moment within the day was true at that moment.
+    ``correctors(deviation, day)`` says who corrected readings it rests on; ``still_so(deviation, day, fields)`` whether a
+    finding of a moment within the day was true at that moment.
     """
     out = Difference()
     by_key: dict[tuple[str, str, str, str], list[Episode]] = {}
     for episode in episodes:
         by_key.setdefault(episode.key, []).append(episode)
     for one in sorted(reviewed, key=lambda item: item.day):
-        matched = {id(_place(out, by_key, finding, one, day_of)) for finding in one.findings}
+        matched = {id(_place(out, by_key, finding, one)) for finding in one.findings}
         for known in by_key.values():
             for episode in known:
                 if id(episode) not in matched and one.day in episode.days and not episode.void:
@@ -133,11 +140,9 @@ def _place(
     by_key: dict[tuple[str, str, str, str], list[Episode]],
     finding: Finding,
     one: Reviewed,
-    day_of: Any,
 ) -> Episode:
-    since = day_of(finding.since)
-    candidates = [episode for episode in by_key.get(finding.key, []) if episode.takes(finding, since)]
-    fields = finding.content() | {"refs": list(finding.refs[:50]), "until": one.until.isoformat()}
+    candidates = [episode for episode in by_key.get(finding.key, []) if episode.takes(finding)]
+    fields = finding.content() | {"refs": list(finding.refs[:50]), "until": one.until.isoformat(), "size": finding.size}
     if not candidates:
         episode = _raise(out, finding, one, fields)
         by_key.setdefault(finding.key, []).append(episode)

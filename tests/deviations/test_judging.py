@@ -200,13 +200,28 @@ class TestMissing:
         now = world.local("2026-02-03T12:00")
         actions.judge(book=book, days=[FIRST], now=now)
         (view,) = queries.open_ones(book)
-        assert (view.kind, view.subject, view.parameter) == ("missing", "ENTRY", "free_chlorine")
-        assert view.value == "1 of 2 missing"
+        assert (view.kind, view.subject) == ("missing", "NAOH-P")
+        assert (view.value, view.sentence) == ("1 of 2 missing", "not read: free chlorine at ENTRY (night)")
         why = world.reading("ENTRY", "free_chlorine", world.local("2026-02-02T20:00"), "", note="sample tap frozen")
         world.enter(book, why, now=now)
         actions.judge(book=book, days=[FIRST], now=now)
         assert queries.open_ones(book) == []
         assert queries.between(book, FIRST, FIRST)[0].state == "corrected_away"
+
+    def test_a_round_nobody_walked_is_one_thing(self) -> None:
+        sites = [
+            ("ENTRY", "pH"),
+            ("ENTRY", "free_chlorine"),
+            ("ENTRY", "turbidity"),
+            ("FT", "totaliser"),
+            ("NAOH-TANK", "level"),
+        ]
+        line = '[[round_line]]\nsite = "{}"\nparameter = "{}"\ndue = "shift"\n'
+        book = world.open_works("".join(line.format(*item) for item in sites))
+        world.chlorine(book, [("2026-02-01T08:00", "0.5")])
+        actions.judge(book=book, days=[FIRST], now=world.local("2026-02-03T12:00"))
+        found = [(view.subject, view.value) for view in queries.open_ones(book) if FIRST in view.days]
+        assert found == [("NAOH-P", "8 of 8 missing"), ("NAOH-TANK", "2 of 2 missing")]
 
     def test_not_yet_late_is_not_missing(self) -> None:
         book = world.open_works('[[round_line]]\nsite = "ENTRY"\nparameter = "free_chlorine"\ndue = "shift"\n')
@@ -222,7 +237,7 @@ class TestMissing:
         actions.judge(book=book, days=clock.days(FIRST, FIRST + dt.timedelta(days=3)), now=world.local("2026-02-06T12:00"))
         found = [(view.subject, view.parameter, view.raised_for.day, len(view.days)) for view in queries.open_ones(book)]
         # The day of 4 February holds the readings that close the 3rd.
-        assert found == [("FT", "totaliser", 5, 1), ("NAOH-TANK", "level", 5, 1)]
+        assert found == [("NAOH-P", "totaliser", 5, 1), ("NAOH-TANK", "level", 5, 1)]
 
     def test_what_is_off_is_not_expected(self) -> None:
         book = world.open_works()

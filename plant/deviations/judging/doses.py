@@ -58,7 +58,8 @@ def dose_vs(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
     found = doses.difference([_dosed(row) for row in rows], to=to)
     pct = float(limit.keys.get("pct", defaults.DOSE_PCT))
     sds = DEFAULT_SDS if defaults.is_default(limit.code) else STATED_SDS
-    if (found is None or not doses.off_by(found, pct=pct, sds=sds)) and rows[-1].weak and clues.given_back(rows[-2:]):
+    back = clues.given_back(rows[-2:])
+    if (found is None or not doses.off_by(found, pct=pct, sds=sds)) and rows[-1].weak and back:
         # A day may be weak only because a wrong reading took its use away: the day before had it.
         found = doses.difference([dataclasses.replace(_dosed(rows[-1]), weak=False)], to=to)
     if found is None or not doses.off_by(found, pct=pct, sds=sds):
@@ -72,7 +73,8 @@ def dose_vs(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
         value=f"{found.used:.4g} mg/L ({found.pct:+.1f} %)",
         limit=f"{found.reference:.4g} mg/L ± {pct:g} %",
         sentence=f"used {found.used:.4g} mg/L {span}, {abs(found.pct):.1f} % {found.word} {to}",
-        size=found.pct / 100,
+        # What a wrong reading took from one day and gave to the next is one thing, off to neither side.
+        size=None if back else found.pct / 100,
     )
 
 

@@ -31,30 +31,49 @@ class Due:
 
 
 def missing(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
-    """Slots of this day that ended more than the stated hours ago with nothing taken in them and no reason given."""
+    """Slots of this day that ended more than the stated hours ago with nothing taken in them and no reason given: one
+    finding for all lines of the limit's subject, since a round that nobody walked is one thing and not twenty.
+    """
     hours = float(limit.keys.get("hours", 0.0))
     if day.of.began is None:
         return
+    absent: list[tuple[Due, list[lateness.Slot]]] = []
+    expected = 0
     for due in _due(day, limit):
         kind = day.stated.site_kind(due.site, day.moment) or limit.subject_kind
-        if not day.all_day(kind, due.site):
+        if not day.all_day(kind, due.site) or not day.all_day(limit.subject_kind, limit.subject):
             continue
         slots = [slot for slot in _slots(day, due.due) if slot.start >= day.of.began]
-        absent = lateness.missing(slots, _taken(day, due, slots), hours=hours, until=day.of.now)
-        if absent:
-            labels = ", ".join(slot.label for slot in absent)
-            yield findings.of_limit(
-                limit,
-                ref,
-                day.day,
-                subject_kind=kind,
-                subject=due.site,
-                parameter=due.parameter,
-                since=absent[0].end,
-                value=f"{len(absent)} of {len(slots)} missing",
-                limit="due each " + (due.due if isinstance(due.due, str) else ", ".join(due.due)),
-                sentence=f"not read: {labels}",
-            )
+        expected += len(slots)
+        found = lateness.missing(slots, _taken(day, due, slots), hours=hours, until=day.of.now)
+        if found:
+            absent.append((due, found))
+    if not absent:
+        return
+    one = absent[0][0] if len(absent) == 1 else None
+    words = [
+        f"{due.parameter.replace('_', ' ')} at {due.site} ({', '.join(slot.label for slot in found)})" for due, found in absent
+    ]
+    yield findings.of_limit(
+        limit,
+        ref,
+        day.day,
+        parameter=limit.parameter or (_only_parameter(day, limit) if one else ""),
+        since=min(found[0].end for _, found in absent),
+        value=f"{sum(len(found) for _, found in absent)} of {expected} missing",
+        limit="due each " + _due_words(absent[0][0].due),
+        sentence="not read: " + "; ".join(words),
+    )
+
+
+def _only_parameter(day: Day, limit: Limit) -> str:
+    """The parameter where the subject has but one line; empty otherwise, so that an episode keeps its name."""
+    lines = _due(day, limit)
+    return lines[0].parameter if len(lines) == 1 else ""
+
+
+def _due_words(due: str | Sequence[str]) -> str:
+    return due if isinstance(due, str) else ", ".join(due)
 
 
 def _taken(day: Day, due: Due, slots: list[lateness.Slot]) -> list[dt.datetime]:

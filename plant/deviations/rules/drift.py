@@ -115,8 +115,7 @@ def scatter(days: Sequence[Day], prior: float = PRIOR_SD) -> float:
     """
     if len(days) < LEAST_DAYS:
         return prior
-    middle = median(day.off for day in days)
-    total = (1.4826 * median(abs(day.off - middle) for day in days)) ** 2
+    total = (1.4826 * median(abs(off) for off in _about_their_own(days))) ** 2
     gauge = median(day.gauge_sd for day in days) ** 2
     own = max(total - gauge, 0.0)
     own_se = 1.65 * max(total, gauge) / math.sqrt(len(days))
@@ -124,6 +123,20 @@ def scatter(days: Sequence[Day], prior: float = PRIOR_SD) -> float:
     weight = prior_se**2 / (prior_se**2 + own_se**2)
     doubt = prior_se * own_se / math.hypot(prior_se, own_se)
     return max(math.sqrt(weight * own + (1 - weight) * prior**2 + HEDGE * doubt), 0.01)
+
+
+def _about_their_own(days: Sequence[Day]) -> list[float]:
+    """Each day less the median of the days between the same two resets; short pieces are left as they are."""
+    pieces: list[list[float]] = [[]]
+    for day in days:
+        if day.reset and pieces[-1]:
+            pieces.append([])
+        pieces[-1].append(day.off)
+    out = []
+    for piece in pieces:
+        own = median(piece) if len(piece) >= LEAST_DAYS else 0.0
+        out += [off - own for off in piece]
+    return out
 
 
 def centre(days: Sequence[Day], lasting_sd: float, spread: float) -> tuple[float, float]:
@@ -158,18 +171,18 @@ def watch(
     lasting_sd: float = 0.03,
     window: int = WINDOW,
 ) -> Shift | None:
-    """Runs the test on the last day, over all spans that end with it. None with fewer than five days since the
-    last reset.
+    """Runs the test on the last day, over all spans that end with it and begin after the last reset. None with fewer
+    than five days. What is usual scatter is learnt from all days, where the ratio stands from those since the reset.
 
     A change is on while the statistic is above the threshold and the newest days lie nearer to the change than
     to the centre: one that is over is not carried on by what it was.
     """
+    if len(days) < LEAST_DAYS:
+        return None
     starts = [index for index, day in enumerate(days) if day.reset]
     first = starts[-1] if starts else 0
     mine = list(days[first:])
-    if len(mine) < LEAST_DAYS:
-        return None
-    spread = scatter(mine)
+    spread = scatter(days)
     middle, middle_sd = centre(mine, lasting_sd, spread)
     values, per_day = innovations(mine, middle, spread)
     statistic, length = _largest(values, [middle_sd * gain for gain in per_day], window)
