@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from plant.deviations import tasks
 from plant.jobs.models import Job
 from plant.reports.month import Month
 from plant.reports.parts import deviations, expected, values
@@ -114,12 +115,10 @@ def _missing(month: Month) -> list[Hindrance]:
 
 
 def _waiting(month: Month) -> list[Hindrance]:
-    waiting = (
-        Job.objects.filter(book=month.book, state__in=(Job.State.QUEUED, Job.State.RUNNING))
-        .exclude(kind__startswith="reports")
-        .count()
-    )
-    return [Hindrance("waiting", f"{_count(waiting, 'judgement')} of new records still to be done", "")] if waiting else []
+    """Records whose days have not been judged yet. What the schedule asks for again and again does not count."""
+    waiting = Job.objects.filter(book=month.book, state__in=(Job.State.QUEUED, Job.State.RUNNING), kind__contains="judge")
+    count = waiting.exclude(kind__in=(tasks.CLOCK, tasks.NIGHT)).count()
+    return [Hindrance("waiting", f"{_count(count, 'judgement')} of new records still to be done")] if count else []
 
 
 def _count(number: int, what: str) -> str:

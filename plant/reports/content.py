@@ -5,7 +5,7 @@ from __future__ import annotations
 import datetime as dt
 import json
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from plant.ledger import canonical
 from plant.ledger.models import Entry
@@ -24,7 +24,7 @@ from plant.reports.parts import (
     stock,
     summary,
 )
-from plant.reports.pdf import document, paper
+from plant.reports.pdf import document, faces, paper
 from plant.reports.pdf.document import Document, Section, Signature, Table, Text
 
 SECTIONS: dict[str, Callable[[Month], Section]] = {
@@ -108,7 +108,7 @@ def whole(
         if revision == 1
         else f"Issued, revision {revision}; it replaces revision {revision - 1}"
     )
-    return Document(
+    made = Document(
         title="Monthly operating report",
         works_name=month.works.name,
         works_code=month.book.code,
@@ -127,6 +127,17 @@ def whole(
         page=page(month),
         closing=_proof(month, head, draft),
     )
+    return _with_unprintable(made)
+
+
+def _with_unprintable(made: Document) -> Document:
+    """Says which characters the typeface has no form for: they print as empty boxes, and stand whole in the figures."""
+    absent = sorted(faces.absent("".join(set(json.dumps(document.to_plain(made), ensure_ascii=False)))))
+    if not absent:
+        return made
+    names = ", ".join(f"U+{ord(character):04X}" for character in absent)
+    row = ("Printed as empty boxes", f"{names}: characters the typeface lacks. The figures (CSV, XLSX) hold them whole.")
+    return replace(made, closing=(*made.closing, row))
 
 
 def page(month: Month) -> str:

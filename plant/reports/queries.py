@@ -30,10 +30,6 @@ def issues(book: Book, month: str) -> list[Report]:
     return list(Report.objects.filter(book=book, month=month).order_by("-revision"))
 
 
-def by_id(book: Book, pk: int) -> Report | None:
-    return Report.objects.filter(book=book, pk=pk).first()
-
-
 def preparation(book: Book, month: str) -> Preparation | None:
     """The last preparation that no issue has used yet."""
     found = Preparation.objects.filter(book=book, month=month).order_by("-seq").first()

@@ -346,6 +346,7 @@ ALL = (
             Key("wording", help="the works' own sentence above the signatures"),
             Key("due_day", "whole", low=1, high=28, help="of the following month"),
             Key("sections", "words", help="left empty: all"),
+            Key("page", "choice", choices=("A4", "Letter"), help="left empty: A4, or Letter with US units"),
         ),
     ),
     Kind(

@@ -80,7 +80,7 @@ def test_after_a_change_the_next_run_issues_a_revision(folder: Path) -> None:
 
 def test_the_figures_are_those_of_the_pdf(folder: Path) -> None:
     run(folder, "--figures", str(folder / "figures.csv"))
-    rows = list(csv.DictReader((folder / "figures.csv").open()))
+    rows = list(csv.DictReader(StringIO((folder / "figures.csv").read_text())))
     assert rows[-1]["text"].startswith("The local regulator's rules govern.")
     assert {row["issue"] for row in rows} == {"TST-2026-03 revision 1"}
     text = "".join("".join(page.extract_text().split()) for page in pypdf.PdfReader(folder / "out.pdf").pages)

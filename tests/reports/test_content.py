@@ -185,3 +185,12 @@ def test_two_units_systems_print_the_same_water(tmp_path: Path) -> None:
     assert line["unit"] == "lb"
     same(line, days["caustic_kg"][dt.date(2026, 3, 5)] / 0.45359237)
     same(lines["doses", "05 Mar", "CAUSTIC-PH used"], days["caustic_mg_l"][dt.date(2026, 3, 5)])
+
+
+def test_characters_without_a_form_are_named_not_hidden(tmp_path: Path) -> None:
+    toml = people.SMALL.read_text().replace('name = "Works outlet"', 'name = "Works outlet 水"')
+    now = dt.datetime(2026, 4, 3, tzinfo=dt.UTC)
+    book = people.open_works(toml)
+    plan.bring(book, [("ENTRY", "2026-03-05T08:00", "pH", "8.10", "", "")], tmp_path, now=now)
+    document = content.draft(gather(book, 2026, 3, now=now))
+    assert any("U+6C34" in words for _, words in document.closing)

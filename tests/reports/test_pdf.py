@@ -231,7 +231,7 @@ def test_readable_in_black_and_white() -> None:
         linear = [part / 12.92 if part <= 0.04045 else ((part + 0.055) / 1.055) ** 2.4 for part in parts]
         return 0.2126 * linear[0] + 0.7152 * linear[1] + 0.0722 * linear[2]
 
-    for colour in (ink.INK, ink.QUIET, ink.WATER, ink.CARE, picture.PAPER["need"], picture.PAPER["action"]):
+    for colour in (ink.INK, ink.QUIET, ink.WATER, picture.PAPER["need"], picture.PAPER["action"]):
         assert 1.05 / (luminance(colour) + 0.05) >= 4.5
 
 

@@ -11,7 +11,6 @@ LINE = HexColor("#9FB0B6")
 HAIR = HexColor("#D5DDDF")
 STRIPE = HexColor("#F1F5F6")
 BAND = HexColor("#D3E6EE")
-CARE = HexColor("#8A5200")
 
 BODY = 9.0
 SMALL = 7.6

@@ -6,7 +6,7 @@ from typing import Any
 from xml.sax.saxutils import escape
 
 from reportlab.lib.styles import ParagraphStyle
-from reportlab.platypus import Flowable, Paragraph
+from reportlab.platypus import Paragraph
 
 from plant.reports.pdf import faces, ink
 from plant.reports.pdf.tagged import Element
@@ -28,7 +28,6 @@ STYLES = {
     "subtitle": style("subtitle", 13, colour=ink.QUIET, spaceAfter=10),
     "section": style("section", ink.H2, face=faces.SEMIBOLD, colour=ink.WATER, spaceBefore=14, spaceAfter=5),
     "caption": style("caption", ink.H3, face=faces.SEMIBOLD, spaceBefore=7, spaceAfter=3),
-    "notice": style("notice", 10, face=faces.SEMIBOLD),
 }
 
 
@@ -71,23 +70,3 @@ def heading(parent: Element, text: str, manner: str, *, level: int, key: str, ta
     made = words(parent, text, manner, tag=tag)
     made.outline = (key, level)
     return made
-
-
-class Rule(Flowable):
-    """A line across the column."""
-
-    def __init__(self, *, thickness: float = 0.6, colour: str = ink.LINE, before: float = 2, after: float = 6) -> None:
-        super().__init__()
-        self.thickness, self.colour = thickness, colour
-        self.spaceBefore, self.spaceAfter = before, after
-
-    def wrap(self, available_width: float, available_height: float) -> tuple[float, float]:
-        self.length = available_width
-        return available_width, self.thickness
-
-    def draw(self) -> None:
-        self.canv.begin_artifact()
-        self.canv.setStrokeColor(self.colour)
-        self.canv.setLineWidth(self.thickness)
-        self.canv.line(0, 0, self.length, 0)
-        self.canv.end()
