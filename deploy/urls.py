@@ -13,3 +13,5 @@ urlpatterns = [
     path("", include("deploy.jobs_page")),
     *(path("", include(f"{app}.urls")) for app in settings.PLANT_APPS if importlib.util.find_spec(f"{app}.urls") is not None),
 ]
+
+handler500 = "deploy.errors.broken"
