@@ -52,8 +52,8 @@ ASKED = {
 }
 
 
-def test_every_page_is_walked_below():
-    assert {pattern.name for pattern in urlpatterns} == ASKED.keys() | {"new_works"}
+def test_every_settings_page_is_walked_below():
+    assert {pattern.name for pattern in urlpatterns if "/settings/" in str(pattern.pattern)} == ASKED.keys()
 
 
 @pytest.mark.parametrize("name", sorted(ASKED))
