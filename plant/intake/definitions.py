@@ -178,10 +178,7 @@ def _limit(limit: described.Limit, known: parameters.Parameter, kept: str, *, ro
     level = {"target": "Target", "alert": "Alert limit", "action": "Action limit", "regulatory": "Regulatory limit"}[
         limit.level
     ]
-    tell = [
-        f"{item['who']}, within {_text(item['within_hours'])} h" if item.get("within_hours") is not None else str(item["who"])
-        for item in limit.tell
-    ]
+    tell = [_to_tell(item) for item in limit.tell]
     return {
         "code": limit.code,
         "level": limit.level,
@@ -192,6 +189,13 @@ def _limit(limit: described.Limit, known: parameters.Parameter, kept: str, *, ro
         "caution": advice.caution(known.name),
         "call": "; ".join(tell),
     }
+
+
+def _to_tell(item: dict[str, Any]) -> str:
+    words = [str(item["who"])]
+    words += [str(item["telephone"])] if item.get("telephone") else []
+    words += [f"within {_text(item['within_hours'])} h"] if item.get("within_hours") is not None else []
+    return ", ".join(words)
 
 
 def _offered(parameter: str, kept: str) -> dict[str, dict[str, str]]:

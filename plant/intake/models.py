@@ -23,3 +23,21 @@ class HandOver(Record):
 
     def __str__(self) -> str:
         return f"{self.shift} {self.day}"
+
+
+class TakeOver(Record):
+    """The next shift has read what was handed over and takes the works; by whom says the entry.
+
+    ``hand_over`` is None where the shift before left without closing its round.
+    """
+
+    hand_over = models.ForeignKey(HandOver, models.PROTECT, null=True, related_name="taken_over")
+    from_starts_at = models.DateTimeField()
+    taken_at = models.DateTimeField()
+
+    class Meta(Record.Meta):
+        abstract = False
+        indexes = [models.Index(fields=["book", "from_starts_at"], name="take_over_by_shift")]
+
+    def __str__(self) -> str:
+        return f"taken over {self.taken_at:%Y-%m-%d %H:%M}"

@@ -54,9 +54,14 @@ def take(
     by: Any,
     now: dt.datetime,
     attested: str = "session",
+    device: str = "",
+    noted: Any = None,
 ) -> Sent:
-    """Takes a round or a line into the book. Raises Unreadable, ledger.ContentDiffers."""
-    kind, sent, close, device = _shape(client_id, received)
+    """Takes a round or a line into the book. Raises Unreadable, ledger.ContentDiffers.
+
+    ``device`` names an enrolled tablet; without one it is what the sender calls itself. ``noted`` is kept beside what came.
+    """
+    kind, sent, close, own_name = _shape(client_id, received)
     here = ground.Ground(
         stated, stated.calendar(now), spelling=ground.Spelling(decimal=_decimal(stated, now)), history=records.history_of(book)
     )
@@ -67,6 +72,7 @@ def take(
         fresh = [recall.place(one) != matching.SAME for one in understood]
         rows: list[Row] = [one.reading for one, new in zip(understood, fresh, strict=True) if new]
         rows += [_closing(stated, sent, close, now)] if close is not None else []
+        rows += [_taking_over(book, received["take_over"], now)] if "take_over" in received else []
         taken = actions.take(
             book=book,
             client_id=client_id,
@@ -75,8 +81,9 @@ def take(
             rows=rows,
             by=by,
             now=now,
-            device=device,
+            device=device or own_name,
             attested=attested,
+            noted=noted,
             judge=False,
         )
     refs = iter([row.ref for row in taken.rows if isinstance(row, Reading)])
@@ -99,7 +106,9 @@ def _shape(client_id: str, received: Any) -> tuple[str, list[dict[str, Any]], di
     close = received.get("close")
     if close is not None and not isinstance(close, dict):
         raise Unreadable(general="expected close: an object")
-    if not sent and close is None:
+    if "take_over" in received and not isinstance(received["take_over"], dict):
+        raise Unreadable(general="expected take_over: an object")
+    if not sent and close is None and "take_over" not in received:
         raise Unreadable(general="there is nothing in it yet")
     return received["kind"], sent, close, _text(received, "device", 64)
 
@@ -195,6 +204,14 @@ def _closing(stated: Stated, sent: list[dict[str, Any]], close: dict[str, Any], 
         lines_answered=max(len(due) - len(still_open), 0),
         lines_open=still_open,
     )
+
+
+def _taking_over(book: Book, said: Mapping[str, Any], now: dt.datetime) -> models.TakeOver:
+    started = _started(said, now)
+    if started is None:
+        raise Unreadable(general="take_over: expected starts_at, the start of the shift that is taken over from")
+    closed = models.HandOver.objects.filter(book=book, starts_at=started).as_known().order_by("-seq", "-line").first()
+    return models.TakeOver(hand_over=closed, from_starts_at=started, taken_at=now)
 
 
 def _started(close: Mapping[str, Any], now: dt.datetime) -> dt.datetime | None:

@@ -44,6 +44,14 @@ def on_duty(stated: Stated, calendar: clock.Calendar, now: dt.datetime) -> tuple
     return around[index], around[index - 1]
 
 
+def ahead(stated: Stated, calendar: clock.Calendar, now: dt.datetime, hours: int = 72) -> list[Span]:
+    """The shift that is on and those of the coming hours: what a tablet without a network goes by."""
+    today = calendar.day_of(now)
+    until = now + dt.timedelta(hours=hours)
+    found = [span for step in range(hours // 24 + 2) for span in spans(stated, calendar, today + step * _DAY)]
+    return [span for span in found if span.end > now and span.start < until]
+
+
 def expected(stated: Stated, at: dt.datetime) -> list[RoundLine]:
     """The round in walking order, of what is in service; with none stated, each level or weight and totaliser once a day."""
     if stated.state("works", stated.works(at).code, at) == "off":

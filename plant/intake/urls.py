@@ -1,10 +1,14 @@
 from django.urls import path
 
-from plant.intake.views import delivering, entry, importing, reading, round_page
+from plant.intake.views import delivering, entry, importing, offline, reading, round_page
 
 app_name = "intake"
 urlpatterns = [
     path("w/<slug:code>/round/", round_page.page, name="round"),
+    path("w/<slug:code>/round/data/", round_page.data, name="round_data"),
+    path("sw.js", offline.worker, name="worker"),
+    path("app.webmanifest", offline.manifest, name="manifest"),
+    path("round-shell/", offline.shell, name="shell"),
     path("w/<slug:code>/entries/<str:client_id>", entry.put, name="entry"),
     path("w/<slug:code>/reading/<str:ref>/", reading.page, name="reading"),
     path("w/<slug:code>/delivery/", delivering.delivery, name="delivery"),

@@ -51,6 +51,7 @@ class Round:
     left_open: tuple[str, ...]
     said: models.HandOver | None
     closed: models.HandOver | None
+    taken_over: models.TakeOver | None = None
 
     @property
     def due(self) -> int:
@@ -88,6 +89,7 @@ def walk(book: Book, stated: Stated, now: dt.datetime) -> Round:
         ),
         hand_over(book, before),
         hand_over(book, shift),
+        taken_over(book, before),
     )
 
 
@@ -100,6 +102,12 @@ def hand_over(book: Book, span: shifts.Span) -> models.HandOver | None:
     """How a shift's round was closed, if it was; the last word counts."""
     rows = models.HandOver.objects.filter(book=book, starts_at=span.start).as_known()
     return rows.select_related("entry__recorded_by").order_by("-seq", "-line").first()
+
+
+def taken_over(book: Book, span: shifts.Span) -> models.TakeOver | None:
+    """Who took the works over from a shift, if somebody said so; the first word counts."""
+    rows = models.TakeOver.objects.filter(book=book, from_starts_at=span.start).as_known()
+    return rows.select_related("entry__recorded_by").order_by("seq", "line").first()
 
 
 def rules_of(book: Book, stated: Stated, now: dt.datetime, site: str, parameter: str) -> dict[str, Any] | None:

@@ -10,8 +10,8 @@ from typing import Any
 
 from django.contrib.auth.decorators import login_not_required
 from django.contrib.auth.views import redirect_to_login
-from django.core.exceptions import PermissionDenied
 from django.http import HttpRequest, HttpResponse, JsonResponse
+from django.shortcuts import render
 
 from plant import clock
 from plant.ledger.models import Book
@@ -22,9 +22,7 @@ from plant.works.tablets.models import Device
 COOKIE = "weirbook_tablet"
 A_YEAR_S = 365 * 24 * 3600
 PERMISSION = "round.enter"
-REVOKED = (
-    "This tablet has been withdrawn from the works. Nothing on it is lost: save what waits as a file."
-)
+REVOKED = "This tablet has been withdrawn from the works. Nothing on it is lost: save what waits as a file."
 
 
 def device_of(request: HttpRequest, code: str) -> Device | None:
@@ -50,7 +48,7 @@ def tablet_too(view: access.View) -> access.View:
         if device.revoked_at is not None:
             if request.method == "PUT":
                 return JsonResponse({"general": REVOKED, "revoked": True}, status=403)
-            raise PermissionDenied(REVOKED)
+            return render(request, "works/withdrawn.html", status=403)
         book = Book.objects.get(pk=device.book_id)
         stated = queries.stated(book)
         member = access.Member("", "tablet", frozenset({PERMISSION}))

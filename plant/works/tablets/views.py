@@ -54,9 +54,7 @@ def revoke(request: HttpRequest, at: access.At, device: int) -> HttpResponse:
     except actions.Refused as problem:
         messages.error(request, str(problem))
     else:
-        messages.success(
-            request, f"{found.name} is refused from now on. What it had not sent can be saved as a file on it."
-        )
+        messages.success(request, f"{found.name} is refused from now on. What it had not sent can be saved as a file on it.")
     return redirect("works:tablets", at.code)
 
 
