@@ -45,6 +45,8 @@ def drift_of_answer(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
     if found is None or not found[0].on:
         return
     shift, size = found
+    if abs(size) < _material(day, point, name):
+        return
     began = days[max(len(days) - response.MOST_DAYS, 0) + shift.since + 1]
     unit = limits.unit_words(day.stated, day.moment, point.sample_point, name)
     yield findings.of_limit(
@@ -61,6 +63,19 @@ def drift_of_answer(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
         ),
         size=size * answer_sign(point, product),
     )
+
+
+def _material(day: Day, point: DosingPoint, name: str) -> float:
+    """How far the reading must have moved to matter: a tenth of a pH unit, a twelfth of the design dose for a residual, 5 %
+    of itself otherwise. Smaller changes are real and nobody’s business (common practice, no source).
+    """
+    if name == "pH":
+        return 0.1
+    design = day.stated.design_dose_mg_l(point.code, day.moment)
+    if design and name in RESIDUAL_OF.values():
+        return design / 12
+    known = clues.daily_medians(day, point.sample_point or "", name, 20).values()
+    return 0.05 * abs(median(known)) if known else math.inf
 
 
 def answer_sign(point: DosingPoint, product: Product) -> int:

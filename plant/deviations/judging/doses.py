@@ -19,7 +19,7 @@ LEAST_RATIO, MOST_RATIO = -0.05, 3.0
 """Outside of these a day is no drift but a reading or a delivery to be settled; the limit against design speaks of it."""
 STATED_SDS = 2.0
 DEFAULT_SDS = 3.5
-RARER = 2.0
+RARER = 1.4
 """Measured on made-up series: what is learnt from the same days makes alarms about twice as frequent as the table of
 thresholds says."""
 CALIBRATION_SD = 0.02

@@ -40,7 +40,6 @@ PRIOR_SPREAD = 0.6
 """How far the prior variance may be off, as a share of it (common practice, no source)."""
 
 LEAST_DAYS = 5
-BASELINE_DAYS = 30
 NEWEST_DAYS = 10
 """The newest days are what is being tested; where the ratio stands is learnt from the days before them."""
 NEAR_SDS = 2.5
@@ -147,7 +146,7 @@ def centre(days: Sequence[Day], lasting_sd: float, spread: float) -> tuple[float
     ``lasting_sd`` is what strength, meter and calibration leave as a standing difference; a larger one than
     twice that is not taken as normal.
     """
-    first = list(days)[: max(len(days) - NEWEST_DAYS, min(len(days), BASELINE_DAYS) // 2, LEAST_DAYS)]
+    first = list(days)[: max(len(days) - NEWEST_DAYS, 0)]
     if len(first) < LEAST_DAYS or lasting_sd <= 0:
         return 0.0, max(lasting_sd, 0.0)
     found, sd = 0.0, lasting_sd
