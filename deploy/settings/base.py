@@ -40,6 +40,7 @@ PLANT_APPS = [
     "plant.deviations",
     "plant.intake",
     "plant.board",
+    "plant.sheets",
     "plant.reports",
     "plant.demo",
 ]

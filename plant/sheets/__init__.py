@@ -1,0 +1,1 @@
+"""Worked sheets: enter a water, see what comes of it, by which formula, from which source."""

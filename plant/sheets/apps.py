@@ -1,0 +1,6 @@
+from django.apps import AppConfig
+
+
+class SheetsConfig(AppConfig):
+    name = "plant.sheets"
+    label = "sheets"
