@@ -12,7 +12,7 @@ from plant.sheets.sheet import Sheet
 class Number(forms.FloatField):
     """A number with a decimal point or comma."""
 
-    def to_python(self, value: Any) -> float | None:
+    def to_python(self, value: Any) -> float | None:  # type: ignore[override]  # a float field is no integer field
         return super().to_python(value.replace(",", ".") if isinstance(value, str) else value)
 
 
