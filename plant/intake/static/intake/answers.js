@@ -23,7 +23,7 @@ export function answerBlock(line, said, why, act) {
     if (LOUD.has(limit.level)) {
       const waiting = line.entry !== null;
       block.append(paragraph("strong", waiting
-        ? `Not sent: telephone${limit.call ? ` (${limit.call})` : " the person in charge"}.`
+        ? `Not sent: telephone ${[act.telephone, limit.call].filter(Boolean).join("; ") || "the person in charge"}.`
         : "Not sent yet. Send it now."));
     }
     out.push(block);

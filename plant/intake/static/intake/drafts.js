@@ -1,8 +1,10 @@
-// What is typed and not yet in the book, kept in the browser's own database until the server has answered.
-// Two stores: "drafts", one record a works, shift and person; "outbox", entries on their way, by their id.
+// What is typed and not yet in the book, and what the round needs without a network, in the browser's own database.
+// Stores: "drafts", one record a works, shift and person; "outbox", entries on their way, by their id; "rounds", the round of
+// a works as the server last gave it; "spells", who has the tablet of a works. A new version only ever adds stores.
 
 const NAME = "weirbook-round";
-const VERSION = 1;
+const VERSION = 2;
+const STORES = { drafts: "key", outbox: "id", rounds: "works", spells: "works" };
 
 let opened = null;
 
@@ -10,11 +12,16 @@ function database() {
   opened ??= new Promise((resolve, reject) => {
     const request = indexedDB.open(NAME, VERSION);
     request.onupgradeneeded = () => {
-      request.result.createObjectStore("drafts", { keyPath: "key" });
-      request.result.createObjectStore("outbox", { keyPath: "id" });
+      for (const [store, keyPath] of Object.entries(STORES)) {
+        if (!request.result.objectStoreNames.contains(store)) request.result.createObjectStore(store, { keyPath });
+      }
     };
-    request.onsuccess = () => resolve(request.result);
-    request.onerror = () => reject(request.error);
+    request.onsuccess = () => {
+      // A later version of the program in another tab must not have to wait for this one.
+      request.result.onversionchange = () => { request.result.close(); opened = null; };
+      resolve(request.result);
+    };
+    request.onerror = () => { opened = null; reject(request.error); };
   });
   return opened;
 }
@@ -37,3 +44,11 @@ export const dropDraft = (key) => run("drafts", "readwrite", (store) => store.de
 export const keepEntry = (entry) => run("outbox", "readwrite", (store) => store.put(entry));
 export const dropEntry = (id) => run("outbox", "readwrite", (store) => store.delete(id));
 export const waiting = () => run("outbox", "readonly", (store) => store.getAll());
+
+export const keepRound = (round) => run("rounds", "readwrite", (store) => store.put(round));
+export const roundOf = (works) => run("rounds", "readonly", (store) => store.get(works));
+export const allRounds = () => run("rounds", "readonly", (store) => store.getAll());
+
+export const keepSpell = (spell) => run("spells", "readwrite", (store) => store.put(spell));
+export const spellOf = (works) => run("spells", "readonly", (store) => store.get(works));
+export const dropSpell = (works) => run("spells", "readwrite", (store) => store.delete(works));

@@ -32,3 +32,12 @@ function withChange(text, change, unit) {
   if (change === null || Math.abs(change) < 0.5) return text;
   return `${text}, ${number.format(Math.abs(change))} ${unit} ${change < 0 ? "less" : "more"} than last time`;
 }
+
+// What is in it, {amount, unit}: litres of a level, net kilograms of a weight; null where that can't be said.
+export function contentOf(shows, said, unit) {
+  if (shows === null || said.qualifier) return null;
+  const value = Number(said.plain);
+  if (shows.kind === "weight") return unit === "kg" ? { amount: value - shows.tare_kg, unit: "kg" } : null;
+  const litres = unit === "L" ? value : litresAt(shows, metres(value, unit, shows.top_m));
+  return litres === null ? null : { amount: litres, unit: "L" };
+}
