@@ -59,7 +59,7 @@ def _doubtful(month: Month) -> list[Hindrance]:
             out.append(
                 Hindrance(
                     f"doubtful:{site}:{parameter}",
-                    f"{site} {label.lower()}: {_count(len(doubtful), 'doubtful reading')} not settled ({days})",
+                    f"{site} {values.in_sentence(label)}: {_count(len(doubtful), 'doubtful reading')} not settled ({days})",
                     _url(month, f"reading/{doubtful[0].ref}/"),
                 )
             )
@@ -107,7 +107,7 @@ def _missing(month: Month) -> list[Hindrance]:
             out.append(
                 Hindrance(
                     f"missing:{line.site}:{line.parameter}",
-                    f"{line.site} {label.lower()}: {line.missing} of {line.slots} values due are not on record",
+                    f"{line.site} {values.in_sentence(label)}: {line.missing} of {line.slots} values due are not on record",
                     _url(month, "round/"),
                 )
             )

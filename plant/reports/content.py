@@ -197,7 +197,11 @@ def _explanations(month: Month) -> Section:
         "explanations",
         "Open at issue, and why",
         (
-            Text("What was not complete when this report was prepared, with the explanation of the person who prepared it."),
+            Text(
+                "What was not complete when this report was prepared, with the explanation of the person who prepared it."
+                if any(one["why"] for one in month.explanations.values())
+                else "What was not complete when this report was issued. Nobody has explained it."
+            ),
             Table("explanations", "", columns, rows, 1),
         ),
     )

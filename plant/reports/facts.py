@@ -19,6 +19,7 @@ class Fact:
 
     section: str
     table: str
+    caption: str
     row: str
     quantity: str
     unit: str
@@ -34,9 +35,8 @@ class Fact:
     @property
     def words(self) -> str:
         """Which figure this is, for a list of those that moved."""
-        return " · ".join(
-            part for part in (self.table, self.row, f"{self.quantity} ({self.unit})" if self.unit else self.quantity) if part
-        )
+        quantity = f"{self.quantity} ({self.unit})" if self.unit else self.quantity
+        return " · ".join(part for part in (self.caption or self.table, self.row, quantity) if part)
 
 
 def facts(document: Document) -> Iterator[Fact]:
@@ -57,19 +57,30 @@ def _of_table(section: Section, table: Table) -> Iterator[Fact]:
             if not cell.text:
                 continue
             quantity = " ".join(part for part in (column.group, column.head) if part)
-            yield Fact(section.key, table.name, name, quantity, column.unit, cell.text, cell.value, cell.mark, cell.key)
+            yield Fact(
+                section.key, table.name, table.caption, name, quantity, column.unit, cell.text, cell.value, cell.mark, cell.key
+            )
 
 
 def moved(before: Document, after: Document, *, leave_out: frozenset[str] = frozenset()) -> list[tuple[str, str, str]]:
-    """Figures that print otherwise: (which, was, is). Sections named in ``leave_out`` are not compared."""
-    old = {fact.place: fact for fact in facts(before) if fact.section not in leave_out}
-    new = {fact.place: fact for fact in facts(after) if fact.section not in leave_out}
+    """Figures that print otherwise: (which, was, is). Sections and tables named in ``leave_out`` are not compared, nor is
+    how many readings a day has, which is a column only where the days differ.
+    """
+    old, new = _compared(before, leave_out), _compared(after, leave_out)
     out = []
     for place, fact in {**old, **new}.items():
         was, now = old.get(place), new.get(place)
         if (was.printed if was else None) != (now.printed if now else None):
             out.append((fact.words, was.printed if was else "not printed", now.printed if now else "not printed"))
     return out
+
+
+def _compared(document: Document, leave_out: frozenset[str]) -> dict[tuple[str, str, str, str], Fact]:
+    return {
+        fact.place: fact
+        for fact in facts(document)
+        if fact.section not in leave_out and fact.table not in leave_out and fact.quantity.rpartition(" ")[2] != "n"
+    }
 
 
 def safe(text: str) -> str:

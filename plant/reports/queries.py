@@ -16,8 +16,9 @@ from plant.reports.models import Preparation, Report, ReportFile
 from plant.reports.month import Month
 from plant.reports.pdf.document import Document, Section
 
-FOLLOWS_LATER = frozenset({"revision", "explanations", "deviations", "summary", "method"})
-"""Sections that go on after an issue (a deviation is closed) or repeat others: they make no revision by themselves."""
+FOLLOWS_LATER = frozenset({"revision", "explanations", "deviations", "summary", "method", "use-year"})
+"""Sections that go on after an issue (a deviation is closed) or repeat others, and the table of the year to date: they make no
+revision by themselves."""
 
 
 def latest(book: Book, month: str) -> Report | None:
@@ -82,7 +83,7 @@ def changed_since_issue(report: Report, month: Month, sections: tuple[Section, .
         issued_at=report.issued_at,
         signed=(),
     )
-    moved = [item for item in facts.moved(before, after, leave_out=FOLLOWS_LATER) if not item[0].startswith("use-year")]
+    moved = facts.moved(before, after, leave_out=FOLLOWS_LATER)
     if not found and not moved:
         return Since((), ())
     return Since(tuple(found or around), tuple(moved))

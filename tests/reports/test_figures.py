@@ -63,7 +63,7 @@ def test_what_moved_names_old_and_new() -> None:
         )
         return documents.document(Section("s", "S", (table,)))
 
-    assert facts.moved(made("1.10"), made("1.25")) == [("t · 01 Oct · used (mg/L)", "1.10", "1.25")]
+    assert facts.moved(made("1.10"), made("1.25")) == [("T · 01 Oct · used (mg/L)", "1.10", "1.25")]
     assert facts.moved(made("1.10"), made("1.10")) == []
     assert facts.moved(made("1.10"), made("1.25"), leave_out=frozenset({"s"})) == []
 

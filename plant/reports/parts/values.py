@@ -23,6 +23,11 @@ def printed(month: Month, parameter: str) -> tuple[str, str, int]:
     return label, month.measures.label(known.unit), known.decimals
 
 
+def in_sentence(label: str) -> str:
+    """A label in the middle of a sentence: pH and E. coli stay as they are."""
+    return label if label[1:2].isupper() or label[1:2] == "." else label[:1].lower() + label[1:]
+
+
 def of_site(month: Month, site: str) -> list[tuple[str, list[Point]]]:
     """The site's readings by parameter and statistic, in the order in which parameters are known."""
     order = {name: number for number, name in enumerate(month.parameters)}
