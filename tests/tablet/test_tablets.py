@@ -116,9 +116,7 @@ def test_a_lock_out_refuses_the_right_pin_for_a_while_and_never_stops_entry(book
     assert (locked.status_code, locked.json()["owed"]) == (429, True)
     assert put(tablet, body("olga", spell)).json()["attested"] == "claimed"
     later = clock.now() + dt.timedelta(minutes=pins.LOCKED_MINUTES + 1)
-    proof = actions.prove(
-        device=device[0], stated=walked.stated(book), username="olga", spell=spell, pin="29384", now=later
-    )
+    proof = actions.prove(device=device[0], stated=walked.stated(book), username="olga", spell=spell, pin="29384", now=later)
     assert (proof.right, proof.confirmed) == (True, 1)
 
 

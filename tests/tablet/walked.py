@@ -36,7 +36,8 @@ def toml() -> str:
     kept, rest = text[: text.index("[[round_line]]")], text[text.index("[[state]]") :]
     kept = kept.replace('units = "si"', 'units = "si"\ntelephone = "0555 0123"', 1)
     lines = "".join(
-        f'[[round_line]]\nsite = "{key.partition(":")[0]}"\nparameter = "{key.partition(":")[2]}"\ndue = "shift"\n' for key in VALUES
+        f'[[round_line]]\nsite = "{key.partition(":")[0]}"\nparameter = "{key.partition(":")[2]}"\ndue = "shift"\n'
+        for key in VALUES
     )
     return kept + lines + rest
 

@@ -18,6 +18,7 @@ from plant.ledger import actions as ledger
 from plant.readings import actions as readings
 from plant.readings import marks, models, queries
 from plant.works import access, parameters
+from plant.works.tablets import queries as tablets
 
 
 @access.needs("see")
@@ -121,6 +122,8 @@ def _show(
                 "doubts": marks.in_words(row.marks),
                 "taken_at": wall.at(calendar, row.taken_at),
                 "recorded_at": wall.at(calendar, row.entry.recorded_at),
+                "attested": tablets.in_words(row.entry),
+                "clock_off": tablets.clock_in_words(row.entry),
             }
             for row in reversed(chain)
         ],

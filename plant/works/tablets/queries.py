@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import datetime as dt
+import json
 import uuid
 from dataclasses import dataclass
 
@@ -88,3 +89,12 @@ def in_words(entry: Entry) -> str:
         if entry.seq in row.entries:
             return f"name chosen at {entry.device}, confirmed by PIN afterwards"
     return f"name chosen at {entry.device}, PIN owed"
+
+
+def clock_in_words(entry: Entry) -> str:
+    """What is to be said about the device's clock behind an entry: only where it was far off."""
+    if '"clock_flagged":true' not in entry.payload:
+        return ""
+    off_s = json.loads(entry.payload)["noted"]["clock_off_s"]
+    size = f"{abs(off_s) / 3600:.0f} h" if abs(off_s) >= 5400 else f"{abs(off_s) / 60:.0f} min"
+    return f"the device’s clock was {size} {'fast' if off_s > 0 else 'slow'}"

@@ -9,7 +9,7 @@ import { flowOf, lastsText, neededText } from "./feeding.js";
 import { instantOf, clockText } from "./moments.js";
 import { saveQueue, sayDevice, showQueue } from "./queue.js";
 import { answer } from "./rules.js";
-import { newId, send, token } from "./sending.js";
+import { hasToken, newId, send, token } from "./sending.js";
 import { Tablet } from "./tablet.js";
 import { amountText, contentOf } from "./vessels.js";
 
@@ -298,10 +298,12 @@ let again = false;
 // Sends what waits, in the order in which it was made, one tab at a time, until something can't be sent now.
 async function flush() {
   again = true;
+  let sent = 0;
   const work = async () => {
-    let sent = 0;
     while (again) {
       again = false;
+      // A browser that was killed may have lost the cookie that sending needs.
+      if (!hasToken() && (await drafts.waiting().catch(() => [])).some(mine)) await refetch(settings.works);
       const entries = (await drafts.waiting().catch(() => [])).filter(mine).sort((a, b) => (a.body.made_at < b.body.made_at ? -1 : 1));
       for (const entry of entries) {
         if (entry.refused) continue;
@@ -309,11 +311,11 @@ async function flush() {
         sent += 1;
       }
     }
-    if (sent) await refetch(settings.works);
-    if (sent && settings.from_device) document.getElementById("offline").hidden = true;
   };
   if (navigator.locks) await navigator.locks.request("weirbook-outbox", { ifAvailable: true }, (lock) => (lock ? work() : null));
   else await work();
+  if (sent) await refetch(settings.works);
+  if (sent && settings.from_device) document.getElementById("offline").hidden = true;
   showFoot();
   if (reload) location.reload();
 }

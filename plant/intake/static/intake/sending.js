@@ -39,6 +39,8 @@ export function token(form) {
   return found ? found[1] : (form?.elements.namedItem("csrfmiddlewaretoken")?.value ?? "");
 }
 
+export const hasToken = () => /(?:^|; )csrftoken=/.test(document.cookie);
+
 export function newId() {
   return crypto.randomUUID();
 }
