@@ -7,6 +7,7 @@ fails can't make the server refuse a fact; its note stays for the next sweep.
 from __future__ import annotations
 
 import datetime as dt
+import threading
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from typing import Any
@@ -20,6 +21,12 @@ from plant.works import queries as works
 
 MOST_DAYS_AT_ONCE = 5
 """More days than this are left to the worker, so that nothing slow runs inside a request."""
+
+PATIENCE_S = 0.5
+"""How long an entry waits for its turn to be judged at once. Where many come together the worker judges the rest, so that no
+sender waits for the days of all the others."""
+
+_one_at_a_time = threading.Lock()
 
 
 @dataclass(frozen=True)
@@ -82,8 +89,13 @@ def judge_taken(*, book: Book, taken: Taken, by: Any) -> Taken:
     """The second half for a caller that took with ``judge`` False: judges the days of a new entry, if they are few."""
     if not taken.created or not taken.days or len(taken.days) > MOST_DAYS_AT_ONCE:
         return taken
+    if not _one_at_a_time.acquire(timeout=PATIENCE_S):
+        return taken
     now = taken.entry.recorded_at
-    findings, judged = judging.at_once(book=book, key=note_key(taken.entry), days=taken.days, by=by, now=now)
+    try:
+        findings, judged = judging.at_once(book=book, key=note_key(taken.entry), days=taken.days, by=by, now=now)
+    finally:
+        _one_at_a_time.release()
     return replace(taken, findings=tuple(findings), judged=judged)
 
 

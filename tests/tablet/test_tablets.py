@@ -125,7 +125,7 @@ def test_without_a_pin_the_name_is_taken_and_the_pin_owed(tablet):
     assert (answer.status_code, answer.json()["owed"]) == (403, True)
 
 
-@pytest.mark.parametrize("pin", ["1234", "11111", "12345", "98765", "12a45", "123456789", "１２３８４"])  # noqa: RUF001
+@pytest.mark.parametrize("pin", ["1234", "11111", "12345", "98765", "12a45", "123456789", "\u0661\u0662\u0665\u0663\u0664"])
 def test_pins_that_are_guessed_first_are_refused(pin):
     with pytest.raises(pins.Unfit):
         pins.check(pin)
