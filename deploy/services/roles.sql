@@ -34,6 +34,7 @@ BEGIN
         'accounts_person', 'accounts_secondfactor', 'accounts_person_groups', 'accounts_person_user_permissions',
         'django_session', 'axes_accessattempt', 'axes_accessattemptexpiration', 'axes_accessfailurelog', 'axes_accesslog',
         'jobs_job', 'jobs_turn',
+        'works_device', 'works_pin', 'works_tries', 'works_spell',
         'dosing_daystate'
     ] LOOP
         IF to_regclass(name) IS NOT NULL THEN

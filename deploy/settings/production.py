@@ -26,7 +26,7 @@ CSRF_COOKIE_SECURE = True
 AXES_CLIENT_IP_CALLABLE = "deploy.proxy.client_address"
 
 STATIC_ROOT = env.path("WEIRBOOK_STATIC", default=str(WEIRBOOK_DATA / "static"))()
-STORAGES["staticfiles"] = {"BACKEND": "whitenoise.storage.CompressedManifestStaticFilesStorage"}
+STORAGES["staticfiles"] = {"BACKEND": "deploy.hashed.HashedFiles"}
 
 LOGGING["formatters"]["json"] = {"()": "deploy.logs.JsonLine"}
 LOGGING["handlers"]["console"]["formatter"] = "json"
