@@ -27,8 +27,9 @@ from plant.works import queries as works
 REQUIRED = ("site", "timestamp", "parameter", "value", "unit")
 OPTIONAL = ("qualifier", "method", "by", "note", "sample", "statistic", "replaces")
 ENTRY_LINES = 10_000
-MOST_DAYS_JUDGED = 800
-"""A file that touches more days than this is left to the worker."""
+MOST_DAYS_JUDGED = 45
+"""A file that touches more days than this is a history, often one of several files that only make sense together: its days
+are left to the worker, or to ``review``."""
 
 Progress = Callable[[str], None]
 
