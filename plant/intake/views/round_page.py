@@ -150,6 +150,7 @@ def _context(
         "closed_at": wall.at(calendar, walked.closed.closed_at) if walked.closed else None,
         "settings": {
             "works": at.code,
+            "works_name": at.works_name,
             "zone": str(calendar.zone),
             "now_ms": int(at.now.timestamp() * 1000),
             "starts_at": walked.shift.start.isoformat(),

@@ -1,6 +1,7 @@
 // The list of what waits on this device: who, when, how much, and why something was refused; and the file it can be saved as.
 
 import * as drafts from "./drafts.js";
+import { clockText } from "./moments.js";
 
 const place = document.getElementById("queue");
 const list = document.getElementById("queue-list");
@@ -24,10 +25,13 @@ function oldest(entries) {
 
 function row(entry, act) {
   const item = document.createElement("li");
-  const made = new Date(entry.body.made_at);
+  // On the works' clock, whatever the device's was.
+  const made = Date.parse(entry.body.made_at) + (entry.body.clock_offset_s ?? 0) * 1000;
+  const zone = act.zone ?? undefined;
+  const day = new Date(made).toLocaleDateString("en-GB", { day: "numeric", month: "short", timeZone: zone });
   const count = entry.body.lines.length;
   const what = [count ? `${count} value${count === 1 ? "" : "s"}` : "", entry.body.close ? "closing the round" : "", entry.body.take_over ? "taking over" : ""].filter(Boolean).join(", ");
-  item.textContent = `${entry.name || entry.person}, made ${made.toLocaleString("en-GB", { day: "numeric", month: "short", hour: "2-digit", minute: "2-digit" })}: ${what}. `;
+  item.textContent = `${entry.name || entry.person}, made ${day} ${clockText(made, zone)}: ${what}. `;
   const said = document.createElement("span");
   said.className = entry.refused ? "action" : "quiet";
   said.textContent = entry.refused ? `Refused: ${entry.refused}` : "Waiting.";

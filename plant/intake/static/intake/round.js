@@ -133,7 +133,7 @@ function showFoot() {
   const toSend = lines.filter((line) => filled(line) && line.entry === null);
   const unsure = toSend.filter((line) => hindrance(line) !== "").length;
   const held = lines.filter((line) => line.entry !== null).length;
-  showQueue(settings.works, { again: async (entry) => { delete entry.refused; await drafts.keepEntry(entry); await flush(); } });
+  showQueue(settings.works, { zone: settings.zone, again: async (entry) => { delete entry.refused; await drafts.keepEntry(entry); await flush(); } });
   const said = [];
   if (toSend.length) said.push(`${toSend.length} to send`);
   if (unsure) said.push(`${unsure} want a second look`);
@@ -314,8 +314,11 @@ async function flush() {
   };
   if (navigator.locks) await navigator.locks.request("weirbook-outbox", { ifAvailable: true }, (lock) => (lock ? work() : null));
   else await work();
-  if (sent) await refetch(settings.works);
-  if (sent && settings.from_device) document.getElementById("offline").hidden = true;
+  const reached = (sent > 0 || settings.from_device) && (await refetch(settings.works));
+  if (reached && settings.from_device) {
+    settings.from_device = false;
+    document.getElementById("offline").hidden = true;
+  }
   showFoot();
   if (reload) location.reload();
 }

@@ -20,6 +20,7 @@ async function open() {
   const later = moveOn(settings, markup);
   const data = markup.getElementById("round-settings") ?? document.createElement("p");
   data.textContent = JSON.stringify(settings);
+  document.getElementById("place").textContent = settings.works_name;
   place.replaceChildren(...markup.body.childNodes);
   const said = document.getElementById("offline");
   said.hidden = false;

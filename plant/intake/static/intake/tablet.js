@@ -66,8 +66,11 @@ export class Tablet {
 
   sayWho() {
     const words = this.spell.attested === "pin" ? "name and PIN" : "name chosen, PIN owed";
-    this.who.replaceChildren(` · ${this.spell.name} (${words}) `);
-    if (this.spell.attested !== "pin") this.who.append(button("Give the PIN", "button second small", () => this.askPin(this.spell, "", true)), " ");
+    this.who.className = "taken-by";
+    const said = document.createElement("span");
+    said.textContent = `${this.spell.name}: ${words}`;
+    this.who.replaceChildren(said);
+    if (this.spell.attested !== "pin") this.who.append(button("Give the PIN", "button second small", () => this.askPin(this.spell, "", true)));
     this.who.append(button("Lock", "button second small", () => this.lock()));
   }
 
