@@ -1,6 +1,5 @@
 """What holds everywhere. Values come from the environment; nothing secret has a default."""
 
-import importlib.util
 from datetime import timedelta
 from pathlib import Path
 from typing import Any
@@ -30,8 +29,6 @@ PLANT_APPS = [
     "plant.ledger",
     "plant.accounts",
     "plant.jobs",
-    "plant.files",
-    "plant.notices",
     "plant.works",
     "plant.readings",
     "plant.stock",
@@ -45,13 +42,6 @@ PLANT_APPS = [
     "plant.demo",
 ]
 
-
-def _present(app: str) -> bool:
-    spec = importlib.util.find_spec("plant") and importlib.util.find_spec(app)
-    return spec is not None and spec.origin is not None
-
-
-PLANT_APPS = [app for app in PLANT_APPS if _present(app)]
 
 INSTALLED_APPS = [
     "django.contrib.contenttypes",
@@ -127,8 +117,7 @@ DEFAULT_AUTO_FIELD = "django.db.models.BigAutoField"
 
 # People -----------------------------------------------------------------------------------------------------
 
-if "plant.accounts" in PLANT_APPS:
-    AUTH_USER_MODEL = "accounts.Person"
+AUTH_USER_MODEL = "accounts.Person"
 AUTHENTICATION_BACKENDS = [
     "axes.backends.AxesStandaloneBackend",
     "django.contrib.auth.backends.ModelBackend",
