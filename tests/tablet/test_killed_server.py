@@ -96,8 +96,8 @@ def test_two_hundred_submissions_while_the_server_is_killed(site, tokens, figure
     started = dt.datetime.now(dt.UTC).replace(second=0, microsecond=0)
     idents = [str(uuid.uuid4()) for _ in range(SUBMISSIONS)]
     bodies = [body(number, started, ("olga", "sam")[number % 3 == 0]) for number in range(SUBMISSIONS)]
-    todo = [*range(SUBMISSIONS), *chance.sample(range(SUBMISSIONS), 60)]
-    chance.shuffle(todo)
+    outstanding = [*range(SUBMISSIONS), *chance.sample(range(SUBMISSIONS), 60)]
+    chance.shuffle(outstanding)
     lock, answers, sent = threading.Lock(), Counter[int](), Counter[int]()
     port = services.free_port()
     web = site.web(port, threads=4)
@@ -106,9 +106,9 @@ def test_two_hundred_submissions_while_the_server_is_killed(site, tokens, figure
         device = Device(port, tokens[place], dt.timedelta(hours=26) if place == 0 else dt.timedelta())
         while True:
             with lock:
-                if not todo:
+                if not outstanding:
                     return
-                number = todo.pop()
+                number = outstanding.pop()
             end = time.monotonic() + 60
             while True:
                 status = device.put(idents[number], bodies[number])
@@ -127,11 +127,11 @@ def test_two_hundred_submissions_while_the_server_is_killed(site, tokens, figure
     kills = 0
     while any(thread.is_alive() for thread in threads):
         time.sleep(chance.uniform(0.2, 1.2))
-        if kills < KILLS and todo:
+        if kills < KILLS and outstanding:
             kill_all_of(web)
             kills += 1
             web = site.web(port, threads=4)
-    assert not todo
+    assert not outstanding
     assert len(sent) == SUBMISSIONS
     found = site.ask("list(Entry.objects.filter(kind='line').values_list('client_id', flat=True))")
     values = site.ask("[[r.taken_at.isoformat(), r.value_text] for r in Reading.objects.filter(entry__kind='line')]")
