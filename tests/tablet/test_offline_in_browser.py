@@ -409,3 +409,51 @@ def test_axe_finds_nothing_serious_on_a_shared_tablet(live_server, new_page, acc
     # Text at 200 %: nothing is cut off, nothing scrolls sideways.
     page.evaluate("document.documentElement.style.fontSize = '32px'")
     assert page.evaluate("document.documentElement.scrollWidth <= window.innerWidth")
+
+
+def test_a_draw_down_is_timed_and_put_into_the_field(live_server, new_page):
+    from tests import people
+
+    made = people.open_works(walked.toml().replace('parameter = "feeder_setting"', 'parameter = "drawdown"'))
+    people.join(made)
+    page = new_page(viewport=chromium.TABLET)
+    walked.sign_in(page, live_server.url, "olga")
+    page.goto(live_server.url + ROUND)
+    page.wait_for_selector("form[data-ready=yes]")
+    line = page.locator('li.line[data-key="HYPO-POST:drawdown"]')
+    line.get_by_label("Drawn, mL").fill("100")
+    line.get_by_role("button", name="Start the timer").click()
+    page.wait_for_timeout(2000)
+    line.get_by_role("button", name="Stop").click()
+    # 100 mL in two seconds and the time a click takes: near 3000 mL/min, never more.
+    assert 1500 < float(walked.field(page, "HYPO-POST:drawdown").input_value()) <= 3000
+    page.click("#send")
+    walked.wait_for(page, "In the book:")
+    assert Reading.objects.get().note.startswith("100 mL in 2 s")
+
+
+def test_decimal_commas_are_taken_where_the_works_counts_in_metric_units(page):
+    walked.field(page, "ENTRY:pH").fill("8,21")
+    page.click("#send")
+    walked.wait_for(page, "In the book: 8,21")
+    assert Reading.objects.get().value_text == "8.21"
+
+
+def test_a_shift_that_began_without_a_network_starts_with_open_lines(page, live_server):
+    """The shift moves on by the clock the server gave; what the last shift took is not taken for this one."""
+    walked.field(page, "ENTRY:pH").fill("8.2")
+    page.click("#send")
+    walked.wait_for(page, "In the book: 8.2")
+    page.wait_for_function("() => document.getElementById('queue-count').textContent === 'nothing waiting'")
+    page.wait_for_timeout(500)
+    page.add_init_script(
+        "const real = Date; const off = 13 * 3600000; "
+        "Date = class extends real { constructor(...a) { a.length ? super(...a) : super(real.now() + off); } "
+        "static now() { return real.now() + off; } };"
+    )
+    page.context.set_offline(True)
+    page.reload()
+    page.wait_for_selector("form[data-ready=yes]")
+    assert "moved on to the shift that is on" in page.inner_text("#offline")
+    assert page.locator('li.line[data-key="ENTRY:pH"].taken').count() == 0
+    assert page.inner_text("#count") == "0 of 25"
