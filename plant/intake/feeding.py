@@ -24,7 +24,7 @@ BESIDE = dt.timedelta(hours=2)
 
 
 def feeding(book: Book, stated: Stated, now: dt.datetime) -> dict[str, Any]:
-    """Per dosing point litres and kg per m³ at design dose, mL/min per % of setting; per meter the flow; per vessel the heel."""
+    """Per dosing point L and kg per m³ at design dose, mL/min per % of setting; per meter the flow; per vessel the heel."""
     points = stated.dosing_points(now)
     codes = {point.code for point in points}
     fed = readings.points(book, start=now - LOOK_BACK, end=now, sites=codes or {"-"}, parameters={"drawdown", "feeder_setting"})
