@@ -3,8 +3,9 @@
 #
 # Installs what tests need, checks the code (deploy/check.sh), asks whether a package has a known weakness (deploy/audit.py;
 # where that can't be asked it says so at the end), then runs the suite on SQLite, and on PostgreSQL everything that a
-# database could answer differently. Needs no service and no rights: PostgreSQL and the Redis-protocol server come from wheels. As root a missing Chromium is fetched from Debian; elsewhere browser tests
-# say that they were skipped. With CI=true such a skip is a failure.
+# database could answer differently (tests/operations starts both by itself). Needs no service and no rights: PostgreSQL
+# and the Redis-protocol server come from wheels. As root a missing Chromium is fetched from Debian; elsewhere browser
+# tests say that they were skipped. With CI=true such a skip is a failure.
 set -eu
 cd "$(dirname "$0")/.."
 python=${PYTHON:-python3}
@@ -49,7 +50,7 @@ audit() {
 stage "known weaknesses of packages" audit
 
 stage "tests on SQLite" $pytest --database sqlite "$@"
-stage "tests on PostgreSQL" $pytest --database postgres -m "not browser" --ignore tests/chemistry "$@"
+stage "tests on PostgreSQL" $pytest --database postgres -m "not browser" --ignore tests/chemistry --ignore tests/operations "$@"
 
 if [ -n "$failed" ]; then
     echo "Failed:$failed" >&2

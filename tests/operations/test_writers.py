@@ -8,7 +8,7 @@ from tests import services
 from tests.operations.site import Day, Site
 
 pytestmark = [pytest.mark.service, pytest.mark.slow]
-SECONDS = 20
+SECONDS = 12
 
 
 def test_eight_writers_on_sqlite(figure):
