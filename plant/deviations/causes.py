@@ -77,7 +77,8 @@ def _of_process(known: Clues, size: float) -> list[Cause]:
     out = []
     if known.empty and size < 0:
         out.append(Cause("vessel_empty", 0.9, "the vessel stood at its outlet"))
-    if known.need is not None and abs(known.need) > 0.04 and known.need * size > 0:
+    # A need that moved far less than the dose does not explain it.
+    if known.need is not None and abs(known.need) > 0.04 and known.need * size > 0 and abs(known.need) > 0.5 * abs(size):
         out.append(Cause("raw_water_change", 0.8, f"the need moved the same way, by {100 * known.need:+.0f} % of design"))
     if known.used_over_need is not None and abs(known.used_over_need) < 0.05 and abs(size) > 0.05:
         out.append(Cause("stale_design", 0.55, "what is used is what the water needs; the stated design is not"))

@@ -83,11 +83,13 @@ def gather(day: Day, code: str, since: dt.date) -> Clues | None:
     newest = [row for row in rows if row.used_mg_l.value is not None][-2:]
     after = [row for row in rows if row.day >= since]
     lot = _lot(day, point, since)
+    # A demand reckoned from the doses themselves moves with a leak as with the water: it is no witness.
+    witness = "demand_from" not in point.need
     return Clues(
         point=point,
         product=product,
         used=moved([_ratio(row) for row in rows], rows, since),
-        need=moved([_need(row) for row in rows], rows, since),
+        need=moved([_need(row) for row in rows], rows, since) if witness else None,
         others=_others(day, point, since),
         response_name=name,
         response_sds=None if sds is None else sds * direction,
@@ -100,7 +102,7 @@ def gather(day: Day, code: str, since: dt.date) -> Clues | None:
         lot_days=lot[1],
         strength_short_pct=lot[2],
         unknown_days=sum(1 for row in day.of.doses if _unknown(row, code, since, day.day)),
-        used_over_need=_over_need(after),
+        used_over_need=_over_need(after) if witness else None,
     )
 
 

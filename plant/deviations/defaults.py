@@ -12,7 +12,7 @@ from plant.works.stated import Stated
 
 DOSE_PCT = 20.0
 FALSE_ALARM_DAYS = 365.0
-SIGMAS = 4.0
+SIGMAS = 5.0
 STUCK_READINGS = 4
 LATE_HOURS = 2.0
 MAXIMUM_DAYS = 7

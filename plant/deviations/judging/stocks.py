@@ -44,6 +44,8 @@ def stock_loss(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
     for item in _vessels(day, limit):
         if item.dip_at is None or item.dip_at <= day.start:
             continue
+        if defaults.is_default(limit.code) and _silo_by_level(day, item.vessel):
+            continue
         if defaults.is_default(limit.code) and any(NO_WITNESS in remark for remark in item.remarks):
             # Then the book stands on the doses before, and can say nothing that the drift of the dose does not say better.
             continue
@@ -64,6 +66,17 @@ def stock_loss(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
             sentence=f"{abs(loss.kg):.0f} kg {word} in the vessel than the book says" + (f"; {stands}" if stands else ""),
             size=-loss.kg,
         )
+
+
+def _silo_by_level(day: Day, code: str) -> bool:
+    """A dry silo's level is not its content (Davis, Water and Wastewater Engineering, 2010, p. 5-5): no loss is read from it
+    unless the works states such a limit.
+    """
+    try:
+        vessel = day.stated.vessel(code, day.moment)
+    except NotStated:
+        return False
+    return vessel.role == "silo" and not vessel.on_scale
 
 
 def days_of_supply(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
