@@ -42,11 +42,11 @@ audited=yes
 audit() {
     status=0
     .venv-test/bin/python -B -m deploy.audit requirements.txt tests/requirements.txt || status=$?
-    # 3: the service could not be asked. That is no failure of the code, and no success either.
-    [ $status != 3 ] || audited=no
-    [ $status != 3 ] || case ${CI:-} in true | 1) ;; *) status=0 ;; esac
+    # 3: the service could not be asked. That is no failure of the code, and no success either: the last line says so.
+    if [ $status = 3 ]; then audited=no status=0; fi
     return $status
 }
+stage "known weaknesses of packages" audit
 
 stage "tests on SQLite" $pytest --database sqlite "$@"
 stage "tests on PostgreSQL" $pytest --database postgres -m "not browser" --ignore tests/chemistry --ignore tests/operations "$@"
@@ -56,6 +56,7 @@ if [ -n "$failed" ]; then
     exit 1
 fi
 if [ $audited = no ]; then
+    echo "Everything that could be tried passed. NOT TRIED: known weaknesses of packages (the service can't be asked here)."
     exit 0
 fi
 echo "Everything passed."

@@ -36,6 +36,7 @@ class Facts:
     deliveries: list[stock_models.Delivery]
     transfers: list[stock_models.Transfer]
     problems: dict[str, list[str]] = field(default_factory=dict)
+    counted: set[tuple[object, ...]] = field(default_factory=set)
 
     def usable(self, site: str, parameter: str) -> list[Point]:
         """Points of a series that may enter operating figures; of a conflicting pair the first stands until it is settled."""
@@ -64,17 +65,36 @@ def facts(
     known: int | None,
 ) -> Facts:
     """Reads the span [start, end) for the named sites: three queries (and one for settlements where there are doubts)."""
-    found = readings.points(book, start=start, end=end, sites=sites, known=known)
-    return Facts(
-        book,
-        stated,
-        start,
-        end,
-        known,
-        readings.by_series(found),
-        stock.deliveries(book, start=start, end=end, known=known),
-        stock.transfers(book, start=start, end=end, known=known),
-    )
+    points = readings.points(book, start=start, end=end, sites=sites, known=known)
+    found = Facts(book, stated, start, end, known, readings.by_series(points), [], [])
+    for delivery in stock.deliveries(book, start=start, end=end, known=known):
+        key = (delivery.taken_at, delivery.vessel, delivery.product, delivery.lot, delivery.document)
+        if _stands(found, delivery, key, [delivery.vessel], "delivery"):
+            found.deliveries.append(delivery)
+    for transfer in stock.transfers(book, start=start, end=end, known=known):
+        vessels_named = [transfer.from_vessel, transfer.to_vessel]
+        if _stands(found, transfer, (transfer.taken_at, *vessels_named), vessels_named, "transfer"):
+            found.transfers.append(transfer)
+    return found
+
+
+def _stands(
+    found: Facts,
+    row: stock_models.Delivery | stock_models.Transfer,
+    key: tuple[object, ...],
+    vessels_named: list[str],
+    what: str,
+) -> bool:
+    """Whether a movement counts. Of two that contradict each other the first does, until one is reversed, as with readings;
+    one that is physically impossible does not. What is left out is named."""
+    contradicts = "conflict" in row.marks and key in found.counted
+    if not contradicts and "impossible" not in row.marks:
+        found.counted.add(key)
+        return True
+    why = "it contradicts an earlier one" if contradicts else "it is more than the vessel can hold"
+    for vessel in vessels_named:
+        found.problem(vessel, f"{what} of {row.taken_at:%Y-%m-%d %H:%M} UTC not counted: {why}; reverse the wrong one")
+    return False
 
 
 def vessel_marks(found: Facts, code: str) -> list[Mark]:

@@ -326,6 +326,53 @@ class TestDeliveryInTheWrongTank:
         assert dose(book).product_kg.value == pytest.approx(300 * 1.2)
 
 
+class TestTwoDeliveriesThatContradictEachOther:
+    def book(self):
+        book = build.book(tank("A"), point("A"))
+        first, second = delivery("A", "2026-03-10T10:00", 1200), delivery("A", "2026-03-10T10:00", 1440)
+        second.marks = ["conflict"]
+        enter(
+            book,
+            count("2026-03-10T07:00", 1000),
+            count("2026-03-11T07:00", 13000),
+            level("A", "2026-03-10T07:00", 1000),
+            level("A", "2026-03-11T07:00", 1700),
+            first,
+            second,
+        )
+        return book, first
+
+    def test_count_once_and_are_named(self):
+        """1,000 L came, not 1,000 and 1,200: 300 L were used, not 1,500."""
+        book, _ = self.book()
+        row = dose(book)
+        assert row.product_kg.value == pytest.approx(300 * 1.2)
+        assert any("contradicts an earlier one" in remark for remark in row.remarks)
+
+    def test_when_the_first_is_reversed_the_second_counts(self):
+        """1,200 L came after all: 500 L."""
+        book, first = self.book()
+        void = delivery("A", "2026-03-10T10:00", 1200)
+        void.supersedes, void.voided, void.reason = first, True, "misread note"
+        enter(book, void)
+        assert dose(book).product_kg.value == pytest.approx(500 * 1.2)
+
+    def test_one_that_no_vessel_could_hold_is_left_out(self):
+        book = build.book(tank("A"), point("A"))
+        absurd = delivery("A", "2026-03-10T10:00", 120000)
+        absurd.marks = ["impossible"]
+        enter(
+            book,
+            count("2026-03-10T07:00", 1000),
+            count("2026-03-11T07:00", 13000),
+            level("A", "2026-03-10T07:00", 1000),
+            level("A", "2026-03-11T07:00", 700),
+            absurd,
+        )
+        assert dose(book).product_kg.value == pytest.approx(300 * 1.2)
+        assert any("more than the vessel can hold" in remark for remark in dose(book).remarks)
+
+
 def test_design_of_a_point_never_stated_is_none():
     book = build.book(tank("A"), point("A").split("[[design_dose]]")[0])
     (row,) = queries.comparison(book, DAY, DAY)
