@@ -76,6 +76,23 @@ def new_page(browser: Browser) -> Iterator[Callable[..., Page]]:
     assert complaints == []
 
 
+def sign_in(page: Page, site: str, username: str) -> None:
+    """Signs a person in by the session, without the sign-in page: its throttling and hashing have tests of their own."""
+    from django.contrib.auth import BACKEND_SESSION_KEY, HASH_SESSION_KEY, SESSION_KEY
+    from django.contrib.sessions.backends.db import SessionStore
+
+    from tests import people
+
+    person = people.person(username)
+    session = SessionStore()
+    session[SESSION_KEY] = str(person.pk)
+    session[BACKEND_SESSION_KEY] = "django.contrib.auth.backends.ModelBackend"
+    session[HASH_SESSION_KEY] = person.get_session_auth_hash()
+    session.save()
+    assert session.session_key
+    page.context.add_cookies([{"name": "sessionid", "value": session.session_key, "url": site}])
+
+
 @pytest.fixture
 def accessibility() -> Callable[[Page], list[str]]:
     """The serious and critical findings of axe-core on a page, one line each; none is what is wanted."""

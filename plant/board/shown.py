@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import datetime as dt
-import re
 from dataclasses import dataclass
 
 from chemistry import units
@@ -15,7 +14,6 @@ from plant.works import described
 from plant.works.parameters import Parameter
 
 US = {"°C": "°F", "m": "ft", "kg": "lb", "L": "US_gal", "m3": "US_gal", "ML": "US_Mgal", "m3/h": "US_gal/min"}
-LOW = str.maketrans("0123456789", "₀₁₂₃₄₅₆₇₈₉")
 NAMES = {
     "US_gal": "US gal",
     "US_Mgal": "US Mgal",
@@ -102,7 +100,7 @@ def day(date: dt.date, now: dt.datetime, calendar: clock.Calendar) -> str:
 
 def formula(basis: str) -> str:
     """A formula with its figures set low, as it is printed: Ca(OH)₂."""
-    return re.sub(r"(?<=[A-Za-z)])\d+", lambda found: found.group().translate(LOW), basis)
+    return numbers.formula(basis)
 
 
 def count(number: int, one: str, many: str = "") -> str:

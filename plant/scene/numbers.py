@@ -3,6 +3,9 @@
 from __future__ import annotations
 
 import math
+import re
+
+LOW = str.maketrans("0123456789", "₀₁₂₃₄₅₆₇₈₉")
 
 
 def tidy(value: float) -> str:
@@ -50,3 +53,13 @@ def tick(value: float, steps: list[float]) -> str:
 def width_of(words: str, size: float = 14) -> float:
     """Roughly how wide words are in the typeface; for keeping labels apart, not for fitting."""
     return 0.56 * size * len(words)
+
+
+def formula(text: str) -> str:
+    """Chemical formulas inside a text with their indices set low: "as CaCO3" becomes "as CaCO₃"; "m3" becomes "m³"."""
+    low = re.sub(
+        r"\b(?=\w*[A-Z])(?:[A-Z][a-z]?\d*|\((?:[A-Z][a-z]?\d*)+\)\d*)+",
+        lambda found: re.sub(r"(?<=[A-Za-z)])\d+", lambda digits: digits.group().translate(LOW), found.group()),
+        text,
+    )
+    return re.sub(r"\bm3\b", "m³", low)

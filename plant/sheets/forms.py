@@ -6,6 +6,7 @@ from typing import Any
 
 from django import forms
 
+from plant.scene import numbers
 from plant.sheets.sheet import Sheet
 
 
@@ -20,7 +21,7 @@ def form_for(sheet: Sheet, data: Any, found: dict[str, str]) -> forms.Form:
     """The sheet's form; ``found`` says under a field which reading it was filled from."""
     fields: dict[str, forms.Field] = {}
     for field in sheet.fields:
-        label = f"{field.label}, {field.unit}" if field.unit else field.label
+        label = numbers.formula(f"{field.label}, {field.unit}" if field.unit else field.label)
         if field.choices:
             fields[field.name] = forms.ChoiceField(label=label, choices=field.choices)
         else:

@@ -6,6 +6,8 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Any
 
+from plant.scene import numbers
+
 
 @dataclass(frozen=True)
 class Field:
@@ -35,6 +37,14 @@ class Result:
     def shown(self) -> str:
         return self.value if isinstance(self.value, str) else f"{self.value:.{self.decimals}f}"
 
+    @property
+    def printed_label(self) -> str:
+        return numbers.formula(self.label)
+
+    @property
+    def printed_unit(self) -> str:
+        return numbers.formula(self.unit)
+
 
 @dataclass(frozen=True)
 class Line:
@@ -43,6 +53,14 @@ class Line:
     words: str
     formula: str
     source: str = ""
+
+    @property
+    def printed(self) -> str:
+        return numbers.formula(self.formula)
+
+    @property
+    def printed_words(self) -> str:
+        return numbers.formula(self.words)
 
 
 @dataclass(frozen=True)

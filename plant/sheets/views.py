@@ -81,8 +81,12 @@ def _cited(line: Line) -> str:
 @access.needs("see")
 def checked(request: HttpRequest, at: access.At) -> HttpResponse:
     """Function, source, checked against, worst difference, values still from memory."""
-    rows = [
-        (row, "; ".join(sources.SOURCES.get(key.strip(), key.strip()) for key in row.source.split(",")))
+    rows = [  # a name may be broken after its dots and strokes, else its column takes the width of the others
+        (
+            row.functions.replace(".", ".\u200b").replace("_", "_\u200b"),
+            row,
+            "; ".join(sources.SOURCES.get(key.strip(), key.strip()) for key in row.source.split(",")),
+        )
         for row in checks.checks()
     ]
     return render(request, "sheets/checked.html", {"at": at, "rows": rows})

@@ -3,8 +3,6 @@
 import datetime as dt
 
 import pytest
-from django.contrib.auth import BACKEND_SESSION_KEY, HASH_SESSION_KEY, SESSION_KEY
-from django.contrib.sessions.backends.db import SessionStore
 
 from plant import clock
 from plant.works import actions
@@ -43,13 +41,7 @@ def book(monkeypatch):
 def opened(live_server, new_page):
     def go(username, path, **options):
         page = new_page(**options)
-        person = people.person(username)
-        session = SessionStore()
-        session[SESSION_KEY] = str(person.pk)
-        session[BACKEND_SESSION_KEY] = "django.contrib.auth.backends.ModelBackend"
-        session[HASH_SESSION_KEY] = person.get_session_auth_hash()
-        session.save()
-        page.context.add_cookies([{"name": "sessionid", "value": session.session_key, "url": live_server.url}])
+        browser.sign_in(page, live_server.url, username)
         page.goto(f"{live_server.url}/w/TST/settings/{path}")
         return page
 
