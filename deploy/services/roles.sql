@@ -35,6 +35,7 @@ BEGIN
         'django_session', 'axes_accessattempt', 'axes_accessattemptexpiration', 'axes_accessfailurelog', 'axes_accesslog',
         'jobs_job', 'jobs_turn',
         'works_device', 'works_pin', 'works_tries', 'works_spell',
+        'api_token',
         'dosing_daystate'
     ] LOOP
         IF to_regclass(name) IS NOT NULL THEN

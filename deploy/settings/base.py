@@ -40,6 +40,7 @@ PLANT_APPS = [
     "plant.sheets",
     "plant.reports",
     "plant.demo",
+    "plant.api",
 ]
 
 
@@ -168,6 +169,9 @@ X_FRAME_OPTIONS = "DENY"
 SECURE_CONTENT_TYPE_NOSNIFF = True
 SECURE_REFERRER_POLICY = "same-origin"
 SECURE_CROSS_ORIGIN_OPENER_POLICY = "same-origin"
+
+# Requests of one token in a minute, over all web nodes (plant.api).
+WEIRBOOK_API_PER_MINUTE = env.int("WEIRBOOK_API_PER_MINUTE", default=120)
 
 # A batch of 10,000 readings fits; anything larger comes as a file.
 DATA_UPLOAD_MAX_MEMORY_SIZE = 10 * 1024 * 1024

@@ -43,6 +43,7 @@ GROUPS = (
             Topic("month", "Month", "preparing, certifying, issuing, revising"),
             Topic("import", "Import", "records, deliveries and transfers from files"),
             Topic("settings", "Settings", "what is in force, and how to change it"),
+            Topic("devices", "Devices", "readings sent by machines, and what machines may read"),
         ),
     ),
     Group(
