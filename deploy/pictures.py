@@ -14,6 +14,7 @@ import sys
 import time
 import urllib.request
 from pathlib import Path
+from typing import Any
 
 HERE = Path(__file__).resolve().parent
 PICTURES = HERE / "pictures"
@@ -86,7 +87,18 @@ def _photograph(site: str, people: dict[str, tuple[str, str]]) -> None:
             page.goto(site + path.format(code="KFW"))
             page.wait_for_load_state("networkidle")
             page.screenshot(path=str(PICTURES / f"{name}.png"))
+        _icons(browser)
         browser.close()
+
+
+def _icons(browser: Any) -> None:
+    """The drawn icon as PNG, for devices whose home screen takes no SVG."""
+    static = HERE.parent / "plant" / "board" / "static" / "board"
+    drawn = (static / "icon.svg").read_text(encoding="utf-8")
+    for size in (192, 512):
+        page = browser.new_page(viewport={"width": size, "height": size})
+        page.set_content(f"<style>*{{margin:0}}svg{{display:block;width:{size}px;height:{size}px}}</style>{drawn}")
+        page.screenshot(path=str(static / f"icon-{size}.png"), omit_background=True)
 
 
 def _page(data: Path) -> None:

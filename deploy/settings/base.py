@@ -32,6 +32,7 @@ PLANT_APPS = [
     "plant.works",
     "plant.readings",
     "plant.stock",
+    "plant.files",
     "plant.dosing",
     "plant.supply",
     "plant.deviations",

@@ -1,6 +1,6 @@
 from django.urls import path
 
-from plant.intake.views import delivering, entry, importing, offline, reading, round_page
+from plant.intake.views import delivering, entry, importing, offline, photo, reading, round_page
 
 app_name = "intake"
 urlpatterns = [
@@ -10,6 +10,7 @@ urlpatterns = [
     path("app.webmanifest", offline.manifest, name="manifest"),
     path("round-shell/", offline.shell, name="shell"),
     path("w/<slug:code>/entries/<str:client_id>", entry.put, name="entry"),
+    path("w/<slug:code>/photos/<str:client_id>", photo.put, name="photo"),
     path("w/<slug:code>/reading/<str:ref>/", reading.page, name="reading"),
     path("w/<slug:code>/delivery/", delivering.delivery, name="delivery"),
     path("w/<slug:code>/transfer/", delivering.transfer, name="transfer"),

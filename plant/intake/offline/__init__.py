@@ -24,6 +24,7 @@ FILES = (
     "intake/drawdown.js",
     "intake/feeding.js",
     "intake/moments.js",
+    "intake/photos.js",
     "intake/queue.js",
     "intake/round.js",
     "intake/rules.js",

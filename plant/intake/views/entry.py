@@ -36,7 +36,7 @@ def put(request: HttpRequest, at: access.At, client_id: str) -> JsonResponse:
         return JsonResponse({"general": "not JSON"}, status=400)
     tablet = request.tablet  # type: ignore[attr-defined]  # set by the gate
     said = received if isinstance(received, dict) else {}
-    person, attested = _who(request, at, said)
+    person, attested = who(request, at, said)
     if person is None:
         if tablet is None:
             words = "Entries of somebody else are sent from an enrolled tablet, or after that person has signed in."
@@ -65,7 +65,7 @@ def put(request: HttpRequest, at: access.At, client_id: str) -> JsonResponse:
     return JsonResponse(answered, status=201 if sent.taken.created else 200)
 
 
-def _who(request: HttpRequest, at: access.At, said: dict[str, Any]) -> tuple[Any, str]:
+def who(request: HttpRequest, at: access.At, said: dict[str, Any]) -> tuple[Any, str]:
     """Whose entry it is and how that is attested. (None, "") for one that this sender may not send."""
     claimed = said.get("person") or ""
     if request.user.is_authenticated and claimed in ("", request.user.get_username()):

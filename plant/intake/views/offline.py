@@ -45,7 +45,13 @@ def manifest(request: HttpRequest) -> HttpResponse:
             "display": "standalone",
             "background_color": "#F5F7F6",
             "theme_color": "#0A5A86",
-            "icons": [{"src": static("board/icon.svg"), "sizes": "any", "type": "image/svg+xml", "purpose": "any"}],
+            "icons": [
+                {"src": static("board/icon.svg"), "sizes": "any", "type": "image/svg+xml", "purpose": "any"},
+                *(
+                    {"src": static(f"board/icon-{size}.png"), "sizes": f"{size}x{size}", "type": "image/png", "purpose": "any"}
+                    for size in (192, 512)
+                ),
+            ],
         }
     )
     answer["Content-Type"] = "application/manifest+json"

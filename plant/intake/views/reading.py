@@ -12,6 +12,8 @@ from django.shortcuts import redirect, render
 from django.views.decorators.http import require_http_methods
 
 from chemistry import unit_tables, units
+from plant import clock
+from plant.files import queries as documents
 from plant.intake import corrections
 from plant.intake.views import wall
 from plant.ledger import actions as ledger
@@ -127,6 +129,7 @@ def _show(
             }
             for row in reversed(chain)
         ],
+        "documents": _documents(at, chain, calendar),
         "rivals": queries.rivals(at.book, newest) if marks.CONFLICT in newest.marks else [],
         "allowed": allowed,
         "doubtful": bool(newest.marks) and newest.pk not in settled,
@@ -144,6 +147,13 @@ def _show(
         "zone": calendar.zone,
     }
     return render(request, "intake/reading.html", context, status=status)
+
+
+def _documents(at: access.At, chain: list[models.Reading], calendar: clock.Calendar) -> list[dict[str, Any]]:
+    """The photos of a reading, whichever of its versions they came with."""
+    names = {name for row in chain for name in (row.entry.client_id, row.ref)}
+    found = documents.about(at.book, names, site=chain[-1].site, parameter=chain[-1].parameter)
+    return [{"row": one, "made_at": wall.at(calendar, one.made_at)} for one in found]
 
 
 def _units(reading: models.Reading) -> list[str]:

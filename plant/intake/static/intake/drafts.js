@@ -1,10 +1,10 @@
 // What is typed and not yet in the book, and what the round needs without a network, in the browser's own database.
 // Stores: "drafts", one record a works, shift and person; "outbox", entries on their way, by their id; "rounds", the round of
-// a works as the server last gave it; "spells", who has the tablet of a works. A new version only ever adds stores.
+// a works as the server last gave it; "spells", who has the tablet of a works; "photos", by their id. A new version only adds stores.
 
 const NAME = "weirbook-round";
-const VERSION = 2;
-const STORES = { drafts: "key", outbox: "id", rounds: "works", spells: "works" };
+const VERSION = 3;
+const STORES = { drafts: "key", outbox: "id", rounds: "works", spells: "works", photos: "id" };
 
 let opened = null;
 
@@ -52,3 +52,7 @@ export const allRounds = () => run("rounds", "readonly", (store) => store.getAll
 export const keepSpell = (spell) => run("spells", "readwrite", (store) => store.put(spell));
 export const spellOf = (works) => run("spells", "readonly", (store) => store.get(works));
 export const dropSpell = (works) => run("spells", "readwrite", (store) => store.delete(works));
+
+export const keepPhoto = (photo) => run("photos", "readwrite", (store) => store.put(photo));
+export const photos = () => run("photos", "readonly", (store) => store.getAll());
+export const dropPhoto = (id) => run("photos", "readwrite", (store) => store.delete(id));

@@ -2,6 +2,7 @@
 
 import * as drafts from "./drafts.js";
 import { clockText } from "./moments.js";
+import * as photos from "./photos.js";
 
 const place = document.getElementById("queue");
 const list = document.getElementById("queue-list");
@@ -14,6 +15,8 @@ export async function showQueue(works, act = {}) {
   document.getElementById("queue-count").textContent = entries.length === 0
     ? "nothing waiting"
     : `${entries.length - refused} waiting to be sent${refused ? `, ${refused} refused` : ""}${oldest(entries)}`;
+  const pictures = (await drafts.photos().catch(() => [])).filter((photo) => works === null || photo.works === works).length;
+  if (pictures) document.getElementById("queue-count").append(`, ${pictures} photo${pictures === 1 ? "" : "s"}`);
   list.replaceChildren(...entries.map((entry) => row(entry, act)));
   return entries;
 }
@@ -51,7 +54,7 @@ function row(entry, act) {
 export async function saveQueue(works) {
   const entries = (await drafts.waiting().catch(() => [])).filter((entry) => works === null || entry.works === works);
   const kept = (await drafts.allDrafts().catch(() => [])).filter((draft) => works === null || draft.key.startsWith(`${works}|`));
-  const text = JSON.stringify({ what: "entries not yet sent", saved_at: new Date().toISOString(), entries, drafts: kept }, null, 1);
+  const text = JSON.stringify({ what: "entries not yet sent", saved_at: new Date().toISOString(), entries, drafts: kept, photos: await photos.asText(works) }, null, 1);
   const link = document.createElement("a");
   link.href = URL.createObjectURL(new Blob([text], { type: "application/json" }));
   link.download = `weirbook-unsent-${works ?? "all"}-${new Date().toISOString().slice(0, 16).replaceAll(":", "")}.json`;

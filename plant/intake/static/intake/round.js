@@ -8,6 +8,7 @@ import * as drafts from "./drafts.js";
 import { flowOf, lastsText, neededText } from "./feeding.js";
 import { instantOf, clockText } from "./moments.js";
 import { saveQueue, sayDevice, showQueue } from "./queue.js";
+import * as photos from "./photos.js";
 import { answer } from "./rules.js";
 import { hasToken, newId, send, token } from "./sending.js";
 import { Tablet } from "./tablet.js";
@@ -33,7 +34,7 @@ function makeLine(item) {
     rules: settings.rules[item.dataset.key],
     value: field("value"), unit: field("unit"), notTaken: field("not_taken"), clock: field("clock"), note: field("note"),
     shown: document.getElementById(`shown-${number}`), reckoned: document.getElementById(`reckoned-${number}`), answers: document.getElementById(`answer-${number}`),
-    inBook: item.classList.contains("taken"), atMs: null, confirmed: false, entry: null, error: "", sentText: "",
+    inBook: item.classList.contains("taken"), sentIn: item.dataset.entry ?? "", atMs: null, confirmed: false, entry: null, error: "", sentText: "",
   };
   for (const input of [line.value, line.unit, line.notTaken, line.clock, line.note]) {
     input.addEventListener("input", () => changed(line, input));
@@ -46,6 +47,8 @@ function makeLine(item) {
     (following ? following.item : document.getElementById("send")).scrollIntoView({ block: "center" });
   });
   if (line.parameter === "drawdown") drawdownTimer(line, changed);
+  const owner = () => (who === null ? null : { works: settings.works, shift: settings.shift, person: who.person, spell: who.spell, draft: draftKey() });
+  line.photos = photos.photosOf(line, owner, now, { say: (words) => { refused = words; showFoot(); }, send: () => flush() });
   return line;
 }
 
@@ -184,6 +187,7 @@ async function sendLines(chosen, kind, more = {}) {
   const entry = newEntry(kind, ready.map(sentLine), ready.map((line) => line.key), more);
   for (const line of ready) line.entry = entry.id;
   await drafts.keepEntry(entry).catch(notKept);
+  await photos.bind(draftKey(), entry.keys, entry.id).catch(notKept);
   ready.forEach(show);
   showFoot();
   await flush();
@@ -231,6 +235,7 @@ async function takenBy(entry, body) {
       return;
     }
     line.inBook = true;
+    line.sentIn = entry.id;
     line.entry = null;
     line.item.classList.add("sent");
     for (const input of [line.value, line.notTaken, line.clock, line.note]) input.value = "";
@@ -281,6 +286,7 @@ async function refusedBy(entry, body) {
     refused = "something was refused: see “On this device”";
     return;
   }
+  await photos.unbind(entry.id).catch(notKept);
   await drafts.dropEntry(entry.id).catch(notKept);
   entry.keys.forEach((key, place) => {
     const line = byKey.get(key);
@@ -310,6 +316,7 @@ async function flush() {
         if (!(await sendEntry(entry))) break;
         sent += 1;
       }
+      await photos.flush(settings.works, mine, form, (photo) => byKey.get(photo.key)?.photos.sent());
     }
   };
   if (navigator.locks) await navigator.locks.request("weirbook-outbox", { ifAvailable: true }, (lock) => (lock ? work() : null));
@@ -348,6 +355,7 @@ async function restore() {
     for (const key of entry.keys) if (byKey.has(key)) byKey.get(key).entry = entry.id;
   }
   lines.forEach(show);
+  await Promise.all(lines.map((line) => line.photos.show()));
   showFoot();
   await offerOlder();
   form.dataset.ready = "yes";
@@ -362,6 +370,7 @@ async function leave() {
     for (const input of [line.value, line.notTaken, line.clock, line.note]) input.value = "";
     Object.assign(line, { atMs: null, confirmed: false, entry: null, error: "" });
     show(line);
+    line.photos.show();
   }
   note.value = "";
   document.getElementById("news").replaceChildren();
@@ -392,7 +401,9 @@ async function offerOlder() {
     if (works !== settings.works || person !== who.person || old.key === draftKey() || typed.length === 0) continue;
     document.getElementById("news").append(olderBlock(shift, typed.map(([key, line]) => `${key.replace(":", " ")} ${line.value || line.notTaken} ${line.value ? line.unit : ""}`.trim()), {
       send: async () => {
-        await drafts.keepEntry(newEntry("round", typed.map(([key, line]) => olderLine(key, line)), [])).catch(notKept);
+        const entry = newEntry("round", typed.map(([key, line]) => olderLine(key, line)), []);
+        await drafts.keepEntry(entry).catch(notKept);
+        await photos.bind(old.key, typed.map(([key]) => key), entry.id).catch(notKept);
         await drafts.dropDraft(old.key);
         await flush();
       },

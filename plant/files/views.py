@@ -1,0 +1,28 @@
+"""A document, to whoever may see the works."""
+
+from __future__ import annotations
+
+from django.http import FileResponse, Http404, HttpRequest
+from django.views.decorators.http import require_safe
+
+from plant.files import queries
+from plant.works import access
+
+
+@access.needs("see")
+@require_safe
+def document(request: HttpRequest, at: access.At, ref: str) -> FileResponse:
+    """Pictures are shown; anything else is downloaded. Nothing in it can run, whatever it is."""
+    found = queries.one(at.book, ref)
+    if found is None:
+        raise Http404("There is no such document.")
+    path = queries.path_of(found.sha256)
+    if not path.is_file():
+        raise Http404("The document's bytes are not in the folder of documents; verify_records says more.")
+    answer = FileResponse(
+        path.open("rb"), as_attachment=not found.is_picture, filename=found.name, content_type=found.media_type
+    )
+    answer["Content-Security-Policy"] = "default-src 'none'; sandbox"
+    answer["X-Content-Type-Options"] = "nosniff"
+    answer["Cache-Control"] = "private, max-age=31536000, immutable"
+    return answer
