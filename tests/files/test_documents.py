@@ -136,7 +136,7 @@ class TestSeeing:
     def test_a_member_sees_it_and_nothing_in_it_can_run(self, kept):
         answer = client("ira").get(f"/w/TST/documents/{kept.ref}/")
         assert answer.status_code == 200
-        assert b"".join(answer.streaming_content) == picture()
+        assert answer.content == picture()
         assert answer["Content-Type"] == "image/jpeg"
         assert answer["X-Content-Type-Options"] == "nosniff"
         assert answer["Content-Security-Policy"] == "default-src 'none'; sandbox"
