@@ -80,7 +80,7 @@ def _operation(
 
 _CODE = _in_path("code", "Code of the works.", {"type": "string", "pattern": "^[-a-zA-Z0-9_]+$", "maxLength": 24})
 _MONTH = _in_path("month", "Month, YYYY-MM.", {"type": "string", "pattern": "^[0-9]{4}-[0-9]{2}$"})
-_REVISION = _in_path("revision", "0 for the first issue.", {"type": "integer", "minimum": 0, "maximum": 9999})
+_REVISION = _in_path("revision", "1 for the first issue.", {"type": "integer", "minimum": 0, "maximum": 9999})
 _DAYS = (
     _in_query("first", f"First operating day; at most {asking.LONGEST_DAYS} days up to the last.", schemas.DAY),
     _in_query("last", "Last operating day; without it today.", schemas.DAY),

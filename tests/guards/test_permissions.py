@@ -9,11 +9,15 @@ import pytest
 from django.test import Client
 from django.urls import URLPattern, URLResolver, get_resolver
 
+from plant.api.scopes import SCOPES
 from plant.works import access
 from tests import people
+from tests.api import machines
 
 PUBLIC = {"public"}
 SIGNED_IN = {"anyone"}
+# Addresses for machines: a token lets in, and no sign-in does.
+BY_TOKEN = {"token"}
 # Asked by machines that hold no account; they tell nothing of a works.
 MACHINES = {"alive", "ready"}
 TOKEN = re.compile(rb'name="csrfmiddlewaretoken" value="[^"]*"')
@@ -26,6 +30,7 @@ VALUES = {
     "month": "2026-01",
     "kind": "csv",
     "revision": 0,
+    "ident": "00000000-0000-4000-8000-000000000000",
 }
 
 
@@ -40,7 +45,8 @@ def patterns(resolver: URLResolver | None = None, prefix: str = "") -> Iterator[
 
 
 ALL = [(route, one) for route, one in patterns() if one.name not in MACHINES]
-OF_A_WORKS = [(route, one) for route, one in ALL if "code>" in route]
+FOR_MACHINES = [(route, one) for route, one in ALL if getattr(one.callback, "permission", None) in BY_TOKEN]
+OF_A_WORKS = [(route, one) for route, one in ALL if "code>" in route and (route, one) not in FOR_MACHINES]
 
 
 def address(route: str, one: URLPattern) -> str:
@@ -75,8 +81,11 @@ def works(db):
 @pytest.mark.parametrize(("route", "one"), ALL, ids=ids(ALL))
 def test_every_view_says_what_it_needs(route, one):
     permission = getattr(one.callback, "permission", None)
-    assert permission in PUBLIC | SIGNED_IN | access.PERMISSIONS, f"{route} declares {permission!r}"
-    assert ("code>" in route) == (permission in access.PERMISSIONS), "a page of a works passes its gate, others have none"
+    assert permission in PUBLIC | SIGNED_IN | BY_TOKEN | access.PERMISSIONS, f"{route} declares {permission!r}"
+    gated = permission in BY_TOKEN | access.PERMISSIONS
+    assert ("code>" in route) == gated, "a page of a works passes its gate, others have none"
+    if permission in BY_TOKEN:
+        assert one.callback.scope in {"", *SCOPES}, f"{route} declares the scope {one.callback.scope!r}"
 
 
 def walked(
@@ -94,7 +103,8 @@ def test_whoever_is_not_signed_in_is_sent_to_sign_in(works):
     wrong = {}
     for name, one, status, leads_to in walked(Client(), ALL, METHODS):
         if one.callback.permission in PUBLIC:
-            right = status in (200, 302, 405)
+            # Below /api/ whatever isn't there is not found, by anybody.
+            right = status in (200, 302, 405) or (status == 404 and one.name == "nowhere")
         else:
             right = status in (401, 403) or (status, leads_to) == (302, "/sign-in/")
         if not right:
@@ -154,3 +164,43 @@ def test_former_members_are_strangers(works):
 
     actions.end_membership(book=works, username="olga", by=None, now=people.OPENED, reason="left")
     assert people.signed_in("olga").get("/w/TST/").status_code == 404
+
+
+# Machines.
+
+
+def test_no_sign_in_opens_an_address_for_machines(works):
+    for username in (*people.ROLES, "stan"):
+        wrong = {
+            name: status for name, _, status, _ in walked(people.signed_in(username), FOR_MACHINES, METHODS) if status != 401
+        }
+        assert wrong == {}, username
+
+
+def test_no_token_opens_a_page_for_people(works):
+    machine = machines.machine(works)
+    for name, one, status, leads_to in walked(machine, OF_A_WORKS, METHODS):
+        # The two pages that an enrolled tablet reaches answer those who only send with a plain refusal.
+        assert status in (401, 403, 405) or (status, leads_to) == (302, "/sign-in/"), (name, one)
+
+
+def test_the_token_of_another_works_is_told_that_there_is_no_such_thing(works):
+    other = people.open_works(people.SMALL.read_text().replace('code = "TST"', 'code = "OTH"', 1))
+    stranger = machines.machine(other)
+    wrong = {name: status for name, _, status, _ in walked(stranger, FOR_MACHINES, METHODS) if status != 404}
+    assert wrong == {}
+    for route, one in FOR_MACHINES:
+        of_others, nowhere = (stranger.get(address(route, one).replace("TST", code)) for code in ("TST", "NONE"))
+        assert of_others.content == nowhere.content
+
+
+@pytest.mark.parametrize("scope", SCOPES)
+def test_a_token_reaches_what_its_scope_names_and_nothing_else(scope, works):
+    machine = machines.machine(works, scope)
+    wrong = {}
+    for name, one, status, _ in walked(machine, FOR_MACHINES, METHODS):
+        inside = one.callback.scope in ("", scope)
+        right = status in (200, 404, 405, 415, 422) if inside else status == 403
+        if not right:
+            wrong[name] = status
+    assert wrong == {}
