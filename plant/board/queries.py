@@ -6,7 +6,7 @@ import datetime as dt
 from collections.abc import Iterable
 from dataclasses import dataclass
 
-from plant.board import line, missing, shown, things
+from plant.board import changed, line, missing, shown, things
 from plant.deviations import queries as deviations
 from plant.deviations.queries import DeviationView
 from plant.dosing import queries as dosing
@@ -33,6 +33,7 @@ class Board:
     date: str
     at: str
     empty: str = ""
+    changed: tuple[changed.Change, ...] = ()
 
 
 def names(stated: Stated, at: dt.datetime) -> dict[str, str]:
@@ -64,12 +65,13 @@ def board(at: access.At) -> Board:
     open_now = deviations.open_ones(at.book)
     labels = {name: parameter.label for name, parameter in parameters.known(stated, now).items()}
     operator = at.member.role == "operator"
+    called = names(stated, now)
     listed = things.listed(
         open_now,
         code=at.code,
         now=now,
         calendar=calendar,
-        names=names(stated, now),
+        names=called,
         labels=labels,
     )
     raised = {view.subject for view in open_now if view.kind == "missing"}
@@ -91,6 +93,7 @@ def board(at: access.At) -> Board:
         date=f"{calendar.local(now).day} {calendar.local(now):%B %Y}",
         at=f"{calendar.local(now):%H:%M}",
         empty="" if points or (doses and any(row.used_mg_l.known for row in doses)) else "readings",
+        changed=tuple(changed.changed(at.book, now=now, calendar=calendar, names=called, labels=labels)),
     )
 
 

@@ -1,10 +1,11 @@
 from django.urls import path
 
-from plant.intake.views import delivering, entry, importing, offline, photo, reading, round_page
+from plant.intake.views import delivering, entry, importing, late, offline, photo, reading, round_page
 
 app_name = "intake"
 urlpatterns = [
     path("w/<slug:code>/round/", round_page.page, name="round"),
+    path("w/<slug:code>/round/late/", late.page, name="late"),
     path("w/<slug:code>/round/data/", round_page.data, name="round_data"),
     path("sw.js", offline.worker, name="worker"),
     path("app.webmanifest", offline.manifest, name="manifest"),

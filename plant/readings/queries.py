@@ -12,6 +12,9 @@ from decimal import Decimal
 from plant.ledger.models import Book, InForceQuerySet
 from plant.readings import models
 
+LATE = dt.timedelta(hours=24)
+"""Recorded longer than this after it was taken, a reading is called late on board and paper. Common practice, no source."""
+
 _REF = re.compile(r"([0-9]{1,15})\.([0-9]{1,8})")
 
 

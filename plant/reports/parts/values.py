@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-from plant.readings.queries import Point
+from plant.readings.queries import LATE, Point
 from plant.reports import measures
 from plant.reports.month import Month
 from plant.reports.pdf.document import Cell
 
-LATE_HOURS = 24
+LATE_HOURS = int(LATE.total_seconds() // 3600)
 STATISTICS = {"reading": "", "day_min": "recorder's minimum", "day_max": "recorder's maximum", "day_mean": "recorder's mean"}
 
 
