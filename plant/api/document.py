@@ -22,6 +22,19 @@ conflict, and settled by a person.
 Problems are answered as `application/problem+json` (RFC 9457). All doses are advice to a licensed person, never an instruction.
 """
 
+EXAMPLE = {
+    "readings": [
+        {
+            "site": "ENTRY",
+            "timestamp": "2026-03-01T07:00:00Z",
+            "parameter": "free_chlorine",
+            "value": "0.52",
+            "unit": "mg/L",
+            "method": "online analyser",
+        }
+    ]
+}
+
 _PROBLEMS = {
     400: "Not JSON that can be kept.",
     401: "No token, or none in use.",
@@ -74,13 +87,14 @@ def _operation(
     if asked:
         out["parameters"] = list(asked)
     if taken is not None:
-        out["requestBody"] = {"required": True, "content": {"application/json": {"schema": taken}}}
+        content = {"schema": taken, "examples": {"one reading": {"value": EXAMPLE}}}
+        out["requestBody"] = {"required": True, "content": {"application/json": content}}
     return out
 
 
 _CODE = _in_path("code", "Code of the works.", {"type": "string", "pattern": "^[-a-zA-Z0-9_]+$", "maxLength": 24})
-_MONTH = _in_path("month", "Month, YYYY-MM.", {"type": "string", "pattern": "^[0-9]{4}-[0-9]{2}$"})
-_REVISION = _in_path("revision", "1 for the first issue.", {"type": "integer", "minimum": 0, "maximum": 9999})
+_MONTH = _in_path("month", "Month, YYYY-MM.", {"type": "string", "pattern": "^[0-9]{4}-[0-9]{2}$"}) | {"example": "2026-01"}
+_REVISION = _in_path("revision", "1 for the first issue.", {"type": "integer", "minimum": 0, "maximum": 9999}) | {"example": 1}
 _DAYS = (
     _in_query("first", f"First operating day; at most {asking.LONGEST_DAYS} days up to the last.", schemas.DAY),
     _in_query("last", "Last operating day; without it today.", schemas.DAY),

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 from typing import Any
 
 from django.contrib import messages
@@ -51,7 +52,12 @@ def revoke(request: HttpRequest, at: access.At, token: int) -> HttpResponse:
 @access.anyone
 def reference(request: HttpRequest) -> HttpResponse:
     """What can be asked, from the OpenAPI document."""
-    context = {"paragraphs": _paragraphs(), "operations": list(_operations()), "fields": _fields("Reading")}
+    context = {
+        "paragraphs": _paragraphs(),
+        "operations": list(_operations()),
+        "fields": _fields("Reading"),
+        "example": json.dumps(document.EXAMPLE, indent=1),
+    }
     return render(request, "api/reference.html", context)
 
 
