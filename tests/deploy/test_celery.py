@@ -1,4 +1,7 @@
-"""With a broker: beat and a worker, real processes, on a real PostgreSQL and a real Redis-protocol server."""
+"""With a broker: beat and a worker, real processes, on a real PostgreSQL and real servers of the Redis protocol.
+
+Everything is tried with the wheel's server and with the system's (Debian's redis-server).
+"""
 
 import json
 import os
@@ -18,6 +21,13 @@ pytestmark = [pytest.mark.service, pytest.mark.slow]
 ROOT = Path(__file__).parents[2]
 
 
+@pytest.fixture(scope="module", params=services.BROKER_SOURCES)
+def broker(request: pytest.FixtureRequest) -> Iterator[services.Broker]:
+    server = services.broker_from(request.param)
+    yield server
+    server.remove()
+
+
 @pytest.fixture(scope="module")
 def environment(
     postgres: services.Postgres, broker: services.Broker, tmp_path_factory: pytest.TempPathFactory
@@ -30,9 +40,7 @@ def environment(
         "DATABASE_URL": postgres.url,
         "REDIS_URL": broker.url,
     }
-    subprocess.run(
-        [sys.executable, "manage.py", "migrate", "--verbosity", "0"], cwd=ROOT, env=here, check=True, timeout=120
-    )
+    subprocess.run([sys.executable, "manage.py", "migrate", "--verbosity", "0"], cwd=ROOT, env=here, check=True, timeout=120)
     return here
 
 
@@ -90,20 +98,22 @@ def wait_for(found: Callable[[], bool], seconds: float) -> None:
 
 def test_rows_are_worked_off_and_survive_a_broker_that_dies(celery, environment, broker, tmp_path):
     url = environment["DATABASE_URL"]
-    for key in ("one", "two", "three"):
+    keys = [f"{name}, {broker.url}" for name in ("one", "two", "three")]
+    for key in keys:
         add_job(url, key)
     celery("worker", "--concurrency", "1", "--without-gossip", "--without-mingle")
     # Two beats: what they send twice finds the row taken.
     celery("beat", "--schedule", str(tmp_path / "beat-1"), "--max-interval", "1")
     celery("beat", "--schedule", str(tmp_path / "beat-2"), "--max-interval", "1")
-    wait_for(lambda: all(attempts(url, key) for key in ("one", "two", "three")), 40)
-    assert [attempts(url, key) for key in ("one", "two", "three")] == [1, 1, 1]
+    wait_for(lambda: all(attempts(url, key) for key in keys), 40)
+    assert [attempts(url, key) for key in keys] == [1, 1, 1]
 
     broker.kill()
-    add_job(url, "while the broker was away")
+    late = f"while the broker was away, {broker.url}"
+    add_job(url, late)
     time.sleep(2)
     broker.start()
-    wait_for(lambda: attempts(url, "while the broker was away") == 1, 60)
+    wait_for(lambda: attempts(url, late) == 1, 60)
 
 
 def test_another_worker_carries_on_after_one_is_killed(celery, environment):
@@ -112,6 +122,7 @@ def test_another_worker_carries_on_after_one_is_killed(celery, environment):
     time.sleep(1)
     os.killpg(first.pid, signal.SIGKILL)
     first.wait()
-    add_job(url, "after the kill")
+    key = f"after the kill, {environment['REDIS_URL']}"
+    add_job(url, key)
     celery("worker", "--concurrency", "1", "--beat", "--schedule", environment["WEIRBOOK_DATA"] + "/beat")
-    wait_for(lambda: attempts(url, "after the kill") == 1, 40)
+    wait_for(lambda: attempts(url, key) == 1, 40)
