@@ -8,7 +8,6 @@ from plant import clock
 from plant.intake import records
 from plant.readings.models import Reading
 from tests import browser, people
-from tests.intake.test_round_in_browser import signed_in
 
 pytestmark = [pytest.mark.browser, pytest.mark.django_db(transaction=True)]
 
@@ -34,7 +33,7 @@ def faults(page, accessibility):
 )
 def test_pages_have_nothing_serious(live_server, new_page, accessibility, doubtful, sheet, size, theme):
     page = new_page(viewport=size, color_scheme=theme)
-    signed_in(page, live_server, "sam")
+    browser.sign_in(page, live_server.url, "sam")
     at = f"{live_server.url}/w/TST"
     found = {}
     for name in (f"reading/{doubtful}", "transfer", "import", "delivery"):

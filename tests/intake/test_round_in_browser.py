@@ -3,8 +3,6 @@
 from __future__ import annotations
 
 import pytest
-from django.contrib.auth import BACKEND_SESSION_KEY, HASH_SESSION_KEY, SESSION_KEY
-from django.contrib.sessions.backends.db import SessionStore
 
 from plant.intake.models import HandOver
 from plant.ledger.models import Entry
@@ -12,17 +10,6 @@ from plant.readings.models import Reading
 from tests import browser, people
 
 pytestmark = [pytest.mark.browser, pytest.mark.django_db(transaction=True)]
-
-
-def signed_in(page, live_server, username):
-    """Gives the page's profile a session of this person."""
-    person = people.person(username)
-    session = SessionStore()
-    session[SESSION_KEY] = str(person.pk)
-    session[BACKEND_SESSION_KEY] = "django.contrib.auth.backends.ModelBackend"
-    session[HASH_SESSION_KEY] = person.get_session_auth_hash()
-    session.save()
-    page.context.add_cookies([{"name": "sessionid", "value": session.session_key, "url": live_server.url}])
 
 
 @pytest.fixture
@@ -33,7 +20,7 @@ def book():
 @pytest.fixture
 def tablet(live_server, new_page, book):
     page = new_page(viewport=browser.TABLET)
-    signed_in(page, live_server, "olga")
+    browser.sign_in(page, live_server.url, "olga")
     page.goto(f"{live_server.url}/w/TST/round/")
     page.wait_for_selector("form[data-ready=yes]")
     return page
@@ -204,7 +191,7 @@ def test_the_round_is_closed_with_a_note(tablet):
 @pytest.mark.parametrize("theme", ["light", "dark"])
 def test_axe_finds_nothing_serious(live_server, new_page, accessibility, book, size, theme):
     page = new_page(viewport=size, color_scheme=theme)
-    signed_in(page, live_server, "olga")
+    browser.sign_in(page, live_server.url, "olga")
     page.goto(f"{live_server.url}/w/TST/round/")
     page.wait_for_selector("form[data-ready=yes]")
     field(page, KEY).fill("0.05")

@@ -23,15 +23,10 @@ def page(live_server, new_page, settings, tmp_path):
     settings.WEIRBOOK_FILES = tmp_path / "files"
     walked.book()
     made = new_page(viewport=chromium.TABLET)
-    walked.sign_in(made, live_server.url, "olga")
+    chromium.sign_in(made, live_server.url, "olga")
     made.goto(live_server.url + "/w/TST/round/")
-    ready(made)
+    walked.ready(made)
     return made
-
-
-def ready(page):
-    page.wait_for_selector("form[data-ready=yes]")
-    page.wait_for_selector("html[data-offline=ready]", timeout=20_000)
 
 
 def photograph(page, key=KEY):
@@ -82,7 +77,7 @@ def test_a_photo_after_the_value_is_sent_goes_to_the_value_in_the_book(page):
     page.click("#send")
     page.locator(f'li.line[data-key="{KEY}"].sent').wait_for()
     page.reload()
-    ready(page)
+    walked.ready(page)
     line = photograph(page)
     line.get_by_text("1 photo in the book").wait_for(timeout=15_000)
     assert Document.objects.get().about == Reading.objects.get().ref

@@ -4,10 +4,8 @@ from __future__ import annotations
 
 import datetime as dt
 
-from django.contrib.auth import BACKEND_SESSION_KEY, HASH_SESSION_KEY, SESSION_KEY
-from django.contrib.sessions.backends.db import SessionStore
-
 from plant.ledger.models import Book
+from plant.readings.models import Reading
 from plant.works import queries
 from plant.works.tablets import actions
 from tests import people
@@ -50,17 +48,6 @@ def book(*, now: dt.datetime = people.OPENED) -> Book:
     return made
 
 
-def sign_in(page, address: str, username: str) -> None:
-    """Gives the page's profile a session of this person."""
-    person = people.person(username)
-    session = SessionStore()
-    session[SESSION_KEY] = str(person.pk)
-    session[BACKEND_SESSION_KEY] = "django.contrib.auth.backends.ModelBackend"
-    session[HASH_SESSION_KEY] = person.get_session_auth_hash()
-    session.save()
-    page.context.add_cookies([{"name": "sessionid", "value": session.session_key, "url": address}])
-
-
 def enrolled(made: Book, name: str = "Filter hall", *, now: dt.datetime = people.OPENED) -> tuple[actions.Device, str]:
     """A tablet of the works, and the token of its cookie."""
     return actions.enrol(book=made, name=name, by=people.person("sam"), now=now)
@@ -80,3 +67,28 @@ def field(page, key: str):
 
 def wait_for(page, text: str, timeout: float = 10_000) -> None:
     page.wait_for_function("text => document.body.innerText.includes(text)", arg=text, timeout=timeout)
+
+
+def ready(page):
+    page.wait_for_selector("form[data-ready=yes]")
+    page.wait_for_selector("html[data-offline=ready]", timeout=20_000)
+
+
+def waiting(page) -> list[dict]:
+    return page.evaluate(
+        """() => new Promise((resolve, reject) => {
+            const request = indexedDB.open("weirbook-round");
+            request.onsuccess = () => {
+                const all = request.result.transaction("outbox").objectStore("outbox").getAll();
+                all.onsuccess = () => { request.result.close(); resolve(all.result); };
+            };
+            request.onerror = () => reject(request.error);
+        })"""
+    )
+
+
+def exactly_once() -> dict[str, int]:
+    found: dict[str, int] = {}
+    for row in Reading.objects.as_known():
+        found[f"{row.site}:{row.parameter}"] = found.get(f"{row.site}:{row.parameter}", 0) + 1
+    return found
