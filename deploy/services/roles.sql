@@ -1,5 +1,6 @@
--- Rights on PostgreSQL: psql --dbname weirbook --file deploy/services/roles.sql, as a superuser, after the first
--- `migrate` and after each upgrade. Running it again changes nothing.
+-- Rights on PostgreSQL: psql --dbname weirbook --file deploy/services/roles.sql, as a superuser: once before the first
+-- `migrate`, which makes the two roles (then give each a password: \password weirbook_owner, \password weirbook), and again
+-- after each `migrate`. Running it again changes nothing.
 --
 -- weirbook_owner owns the tables; only `migrate` signs in as this role.
 -- weirbook       is the one in DATABASE_URL. It can add records and never change or remove one: the rights to do so
@@ -22,12 +23,14 @@ GRANT USAGE, CREATE ON SCHEMA public TO weirbook_owner;
 
 REVOKE ALL ON ALL TABLES IN SCHEMA public FROM weirbook;
 GRANT SELECT, INSERT ON ALL TABLES IN SCHEMA public TO weirbook;
-REVOKE INSERT ON django_migrations FROM weirbook;
 
 DO $$
 DECLARE
     name text;
 BEGIN
+    IF to_regclass('django_migrations') IS NOT NULL THEN
+        REVOKE INSERT ON django_migrations FROM weirbook;
+    END IF;
     -- Heads of the books, people and what hangs on signing in, work to be done, and what can be computed again.
     FOREACH name IN ARRAY ARRAY[
         'ledger_book',
