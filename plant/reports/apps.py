@@ -1,3 +1,5 @@
+import datetime as dt
+
 from django.apps import AppConfig
 
 
@@ -6,7 +8,10 @@ class ReportsConfig(AppConfig):
     label = "reports"
 
     def ready(self) -> None:
+        from plant.jobs import registry
         from plant.ledger import verify
-        from plant.reports import queries
+        from plant.reports import drafts, queries
 
         verify.register("reports", queries.verify)
+        registry.register(drafts.KIND, drafts.make, words="draft of a monthly report")
+        registry.regularly("drafts of monthly reports", every=dt.timedelta(minutes=30), ask=drafts.ask_night)

@@ -63,11 +63,15 @@ class Signed:
 NOBODY = (Signed("Prepared by"), Signed("Certified by"))
 
 
-def sections(month: Month) -> tuple[Section, ...]:
+def chosen(month: Month) -> list[str]:
     """The sections in the order the works has chosen, else all; those that may not be left out follow."""
-    chosen = [key for key in month.form.get("sections") or () if key in SECTIONS] or list(SECTIONS)
-    chosen += [key for key in ALWAYS if key not in chosen]
-    return tuple(SECTIONS[key](month) for key in chosen)
+    found = [key for key in month.form.get("sections") or () if key in SECTIONS] or list(SECTIONS)
+    return found + [key for key in ALWAYS if key not in found]
+
+
+def sections(month: Month) -> tuple[Section, ...]:
+    """The sections of the month as known."""
+    return tuple(SECTIONS[key](month) for key in chosen(month))
 
 
 def figures_hash(found: Sequence[Section]) -> str:

@@ -1,9 +1,11 @@
-"""What is kept of a report: who prepared it, each issue, and the content and bytes of each issue. All only added."""
+"""What is kept of a report: who prepared it, each issue, and the content and bytes of each issue; all only added. And the
+newest draft of each month, which can be made again at any time.
+"""
 
 from django.conf import settings
 from django.db import models
 
-from plant.ledger.models import AppendOnly, Record
+from plant.ledger.models import AppendOnly, Book, Record
 
 
 class Preparation(Record):
@@ -27,7 +29,7 @@ class Preparation(Record):
 
 
 class Report(Record):
-    """One issued report. A revision supersedes the issue before it and gives the reason; drafts are never stored here.
+    """One issued report. A revision supersedes the issue before it and gives the reason; drafts stand apart.
 
     ``known_seq`` is the seq up to which records were known, ``head_hash`` the hash of that entry. The content and the bytes
     lie in a ReportFile; their hashes stand here, bound into the chain with the row.
@@ -73,3 +75,19 @@ class ReportFile(AppendOnly):
 
     def __str__(self) -> str:
         return f"file of {self.report_id}"
+
+
+class Draft(models.Model):
+    """The newest draft of a month, made by a worker: derived, replaced by the next, nobody's signature rests on it."""
+
+    book = models.ForeignKey(Book, models.PROTECT, related_name="+")
+    month = models.CharField(max_length=7)
+    known_seq = models.PositiveBigIntegerField()
+    made_at = models.DateTimeField()
+    pdf = models.BinaryField()
+
+    class Meta:
+        constraints = [models.UniqueConstraint(fields=["book", "month"], name="draft_once_a_month")]
+
+    def __str__(self) -> str:
+        return f"draft of {self.month} as known at {self.known_seq}"

@@ -7,11 +7,12 @@ from typing import Any
 
 from django.contrib import messages
 from django.contrib.auth import authenticate
+from django.core.exceptions import PermissionDenied
 from django.http import Http404, HttpRequest, HttpResponse
 from django.shortcuts import redirect, render
 from django.views.decorators.http import require_http_methods, require_POST, require_safe
 
-from plant.reports import actions, checklist, content, facts, forms, queries, shown, workbook
+from plant.reports import actions, checklist, content, drafts, facts, forms, queries, shown, workbook
 from plant.reports.month import Month, NoSuchMonth, gather
 from plant.reports.pdf.document import Document
 from plant.works import access
@@ -82,6 +83,8 @@ def _context(at: access.At, gathered: Month, issues: list[Any], report: Any, *, 
         "sections": shown.sections(made, at.code),
         "changed_since_prepared": changed_since_prepared,
         "draft": draft,
+        **_draft_context(at, gathered.code),
+        "code": gathered.code,
         "notice": content.document.NOTICE,
         "may_prepare": at.member.may(actions.PREPARED),
         "may_certify": at.member.may(actions.CERTIFIED),
@@ -166,6 +169,36 @@ def draft_file(request: HttpRequest, at: access.At, month: str, kind: str) -> Ht
     """The draft as a file."""
     year, number = _parsed(month)
     return _file(content.draft(_gathered(at, year, number)), f"{at.code}-{month}-draft", kind)
+
+
+@require_http_methods(["GET", "HEAD", "POST"])
+@access.needs("see")
+def draft_state(request: HttpRequest, at: access.At, month: str) -> HttpResponse:
+    """How far the draft is, for the page that is open to fetch again; a POST asks for a new one."""
+    year, number = _parsed(month)
+    if request.method == "POST":
+        if not at.member.may(actions.PREPARED):
+            raise PermissionDenied("Whoever prepares reports asks for a draft.")
+        drafts.ask(book=at.book, month=f"{year:04d}-{number:02d}", now=at.now)
+        return redirect("reports:month", code=at.code, month=month)
+    return render(request, "reports/draft.html", {"at": at, "code": month, **_draft_context(at, month)})
+
+
+def _draft_context(at: access.At, month: str) -> dict[str, Any]:
+    calendar = at.stated.calendar(at.now)
+    found = drafts.state(at.book, month, calendar=calendar, now=at.now)
+    made_at = calendar.local(found.kept.made_at).replace(tzinfo=None) if found.kept else None
+    return {"making": found, "made_at": made_at, "may_prepare": at.member.may(actions.PREPARED)}
+
+
+@require_safe
+@access.needs("see")
+def kept_draft(request: HttpRequest, at: access.At, month: str) -> HttpResponse:
+    """The draft that a worker has made."""
+    kept = drafts.of(at.book, month)
+    if kept is None:
+        raise Http404("No draft of this month has been made.")
+    return _attached(bytes(kept.pdf), f"{at.code}-{month}-draft", "pdf")
 
 
 @require_safe
