@@ -7,7 +7,6 @@ from typing import Any
 
 from django.contrib import messages
 from django.contrib.auth import authenticate
-from django.core.exceptions import PermissionDenied
 from django.http import Http404, HttpRequest, HttpResponse
 from django.shortcuts import redirect, render
 from django.views.decorators.http import require_http_methods, require_POST, require_safe
@@ -171,24 +170,29 @@ def draft_file(request: HttpRequest, at: access.At, month: str, kind: str) -> Ht
     return _file(content.draft(_gathered(at, year, number)), f"{at.code}-{month}-draft", kind)
 
 
-@require_http_methods(["GET", "HEAD", "POST"])
+@require_safe
 @access.needs("see")
 def draft_state(request: HttpRequest, at: access.At, month: str) -> HttpResponse:
-    """How far the draft is, for the page that is open to fetch again; a POST asks for a new one."""
-    year, number = _parsed(month)
-    if request.method == "POST":
-        if not at.member.may(actions.PREPARED):
-            raise PermissionDenied("Whoever prepares reports asks for a draft.")
-        drafts.ask(book=at.book, month=f"{year:04d}-{number:02d}", now=at.now)
-        return redirect("reports:month", code=at.code, month=month)
+    """How far the draft is, for the page that is open to fetch again."""
+    _parsed(month)
     return render(request, "reports/draft.html", {"at": at, "code": month, **_draft_context(at, month)})
+
+
+@require_POST
+@access.needs("report.sign_prepared")
+def ask_draft(request: HttpRequest, at: access.At, month: str) -> HttpResponse:
+    """Asks for a new draft. Asking twice is asking once."""
+    _parsed(month)
+    drafts.ask(book=at.book, month=month, now=at.now)
+    return redirect("reports:month", code=at.code, month=month)
 
 
 def _draft_context(at: access.At, month: str) -> dict[str, Any]:
     calendar = at.stated.calendar(at.now)
     found = drafts.state(at.book, month, calendar=calendar, now=at.now)
     made_at = calendar.local(found.kept.made_at).replace(tzinfo=None) if found.kept else None
-    return {"making": found, "made_at": made_at, "may_prepare": at.member.may(actions.PREPARED)}
+    may_ask = at.member.may(actions.PREPARED) and queries.preparation(at.book, month) is None
+    return {"making": found, "made_at": made_at, "may_ask_draft": may_ask}
 
 
 @require_safe

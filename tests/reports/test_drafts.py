@@ -87,7 +87,7 @@ class TestAsked:
 
     def test_twice_is_one_job_and_one_draft(self, book, sam):
         for _ in range(2):
-            assert sam.post("/w/TST/reports/2026-03/draft/").status_code == 302
+            assert sam.post("/w/TST/reports/2026-03/draft/ask/").status_code == 302
         assert waiting() == [f"{book.pk} 2026-03"]
         assert "A draft is being made: waits" in sam.get("/w/TST/reports/2026-03/draft/").content.decode()
         assert sam.get("/w/TST/reports/2026-03/draft/night.pdf").status_code == 404
@@ -109,8 +109,8 @@ class TestAsked:
         for who in ("olga", "ira"):
             other = Client()
             other.force_login(people.person(who))
-            assert other.post("/w/TST/reports/2026-03/draft/").status_code == 403
-        assert sam.post("/w/TST/reports/soon/draft/").status_code == 404
+            assert other.post("/w/TST/reports/2026-03/draft/ask/").status_code == 403
+        assert sam.post("/w/TST/reports/soon/draft/ask/").status_code == 404
         assert waiting() == []
 
     def test_a_failure_is_said(self, book, sam, monkeypatch):
