@@ -92,7 +92,8 @@ def safe(text: str) -> str:
 def rows(document: Document) -> Iterator[list[str]]:
     """Under CSV_HEADER, one row a fact. ``value`` is the number as printed, ``full_value`` before rounding; words stand in
     ``text`` only."""
-    issue = "draft" if document.draft else f"{document.number} revision {document.revision}"
+    issue = f"{document.number} revision {document.revision}" if document.revision else document.number
+    issue = "draft" if document.draft else issue
     for fact in facts(document):
         number = number_of(Cell(fact.printed, fact.value))
         full = "" if number is None else repr(fact.value)

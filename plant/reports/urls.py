@@ -6,6 +6,7 @@ app_name = "reports"
 urlpatterns = [
     path("w/<slug:code>/reports/", views.months, name="months"),
     path("w/<slug:code>/reports/check/", views.check, name="check"),
+    path("w/<slug:code>/reports/year/<int:year>.<str:kind>", views.year_file, name="year_file"),
     path("w/<slug:code>/reports/<str:month>/", views.month, name="month"),
     path("w/<slug:code>/reports/<str:month>/prepare/", views.prepare, name="prepare"),
     path("w/<slug:code>/reports/<str:month>/certify/", views.certify, name="certify"),

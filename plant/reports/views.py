@@ -11,7 +11,7 @@ from django.http import Http404, HttpRequest, HttpResponse
 from django.shortcuts import redirect, render
 from django.views.decorators.http import require_http_methods, require_POST, require_safe
 
-from plant.reports import actions, checklist, content, drafts, facts, forms, queries, shown, workbook
+from plant.reports import actions, checklist, content, drafts, facts, forms, queries, shown, workbook, yearly
 from plant.reports.month import Month, NoSuchMonth, gather
 from plant.reports.pdf.document import Document
 from plant.works import access
@@ -32,7 +32,8 @@ def months(request: HttpRequest, at: access.At) -> HttpResponse:
     calendar = at.stated.calendar(at.now)
     found = queries.months(at.book, calendar, at.now, due_day=form.get("due_day"))
     today = calendar.local(at.now).date()
-    return render(request, "reports/months.html", {"at": at, "months": found, "today": today})
+    years = sorted({one.code[:4] for one in found if one.issued}, reverse=True)
+    return render(request, "reports/months.html", {"at": at, "months": found, "today": today, "years": years})
 
 
 @require_safe
@@ -193,6 +194,17 @@ def _draft_context(at: access.At, month: str) -> dict[str, Any]:
     made_at = calendar.local(found.kept.made_at).replace(tzinfo=None) if found.kept else None
     may_ask = at.member.may(actions.PREPARED) and queries.preparation(at.book, month) is None
     return {"making": found, "made_at": made_at, "may_ask_draft": may_ask}
+
+
+@require_safe
+@access.needs("see")
+def year_file(request: HttpRequest, at: access.At, year: int, kind: str) -> HttpResponse:
+    """The yearly summary as a file."""
+    try:
+        made = yearly.summary(at.book, year, now=at.now)
+    except yearly.NothingIssued as problem:
+        raise Http404(str(problem)) from None
+    return _file(made, f"{at.code}-{year}-summary", kind)
 
 
 @require_safe

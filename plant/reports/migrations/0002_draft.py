@@ -5,25 +5,24 @@ from django.db import migrations, models
 
 
 class Migration(migrations.Migration):
-
     dependencies = [
-        ('ledger', '0001_initial'),
-        ('reports', '0001_initial'),
+        ("ledger", "0001_initial"),
+        ("reports", "0001_initial"),
     ]
 
     operations = [
         migrations.CreateModel(
-            name='Draft',
+            name="Draft",
             fields=[
-                ('id', models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name='ID')),
-                ('month', models.CharField(max_length=7)),
-                ('known_seq', models.PositiveBigIntegerField()),
-                ('made_at', models.DateTimeField()),
-                ('pdf', models.BinaryField()),
-                ('book', models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name='+', to='ledger.book')),
+                ("id", models.BigAutoField(auto_created=True, primary_key=True, serialize=False, verbose_name="ID")),
+                ("month", models.CharField(max_length=7)),
+                ("known_seq", models.PositiveBigIntegerField()),
+                ("made_at", models.DateTimeField()),
+                ("pdf", models.BinaryField()),
+                ("book", models.ForeignKey(on_delete=django.db.models.deletion.PROTECT, related_name="+", to="ledger.book")),
             ],
             options={
-                'constraints': [models.UniqueConstraint(fields=('book', 'month'), name='draft_once_a_month')],
+                "constraints": [models.UniqueConstraint(fields=("book", "month"), name="draft_once_a_month")],
             },
         ),
     ]

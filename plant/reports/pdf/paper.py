@@ -128,7 +128,8 @@ def _running_lines(document: Document, canvas: TaggedCanvas, page: int, pages: i
     page_width, page_height = SIZES[document.page]
     right = page_width - SIDE
     head = page_height - 13 * mm
-    issue = f"{document.number}, revision {document.revision}" if not document.draft else "DRAFT, not issued"
+    issue = f"{document.number}, revision {document.revision}" if document.revision else document.number
+    issue = "DRAFT, not issued" if document.draft else issue
     canvas.setFont(faces.REGULAR, 7.4)
     canvas.setFillColor(ink.QUIET)
     canvas.drawString(

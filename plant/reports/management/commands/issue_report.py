@@ -10,6 +10,7 @@ from django.core.management.base import CommandError, CommandParser
 
 from plant.accounts.models import Person
 from plant.reports import actions, content, facts, queries
+from plant.reports.management import writing
 from plant.reports.month import NoSuchMonth, gather
 from plant.reports.pdf.document import Document
 from plant.works import commands
@@ -39,9 +40,9 @@ class Command(commands.WorksCommand):
                 made, pdf, words = self._issued(asked, year, month, options)
         except NoSuchMonth as problem:
             raise CommandError(str(problem)) from None
-        _write(options["output"], pdf)
+        writing.write(options["output"], pdf)
         if options["figures"] is not None:
-            _write(options["figures"], facts.to_csv(made).encode())
+            writing.write(options["figures"], facts.to_csv(made).encode())
         self.stderr.write(words)
         self.stdout.write(str(options["output"]))
 
@@ -71,10 +72,3 @@ def _person(name: str | None) -> Person | None:
     if found is None:
         raise CommandError(f"there is nobody called {name!r}")
     return found
-
-
-def _write(path: Path, data: bytes) -> None:
-    try:
-        path.write_bytes(data)
-    except OSError as problem:
-        raise CommandError(f"{path} can't be written: {problem.strerror}") from None
