@@ -13,12 +13,15 @@ from plant.reports.month import Month
 from plant.reports.parts import (
     chemicals,
     corrections,
+    cost,
     daily,
     deviations,
     disinfection,
+    flow,
     lots,
     method,
     missing,
+    network,
     quality,
     settings,
     stock,
@@ -32,10 +35,13 @@ SECTIONS: dict[str, Callable[[Month], Section]] = {
     for part in (
         summary,
         daily,
+        flow,
         chemicals,
+        cost,
         stock,
         quality,
         disinfection,
+        network,
         deviations,
         missing,
         corrections,
@@ -46,6 +52,8 @@ SECTIONS: dict[str, Callable[[Month], Section]] = {
 }
 ALWAYS = ("missing", "corrections", "method")
 """Sections no choice can leave out: a report that hides its gaps and corrections can't be checked."""
+ONLY_IF_CHOSEN = frozenset({"cost"})
+"""Sections that print only where the works' form names them: what a regulator has no use for."""
 UNSIGNED = "Issued from the shell, not signed"
 
 
@@ -65,7 +73,8 @@ NOBODY = (Signed("Prepared by"), Signed("Certified by"))
 
 def chosen(month: Month) -> list[str]:
     """The sections in the order the works has chosen, else all; those that may not be left out follow."""
-    found = [key for key in month.form.get("sections") or () if key in SECTIONS] or list(SECTIONS)
+    found = [key for key in month.form.get("sections") or () if key in SECTIONS]
+    found = found or [key for key in SECTIONS if key not in ONLY_IF_CHOSEN]
     return found + [key for key in ALWAYS if key not in found]
 
 

@@ -74,7 +74,7 @@ def _one(month: Month, segment: ContactSegment, day: dt.date) -> SegmentDay:
     residual = _extreme(month, segment.sample_point, parameter, start, end, lowest=True) if parameter else None
     temperature = _extreme(month, segment.sample_point, "temperature", start, end, lowest=True)
     acidity = _extreme(month, segment.sample_point, "pH", start, end, lowest=False)
-    flow, flow_words = _peak_flow(month, segment.peak_flow_meter, start, end)
+    flow, flow_words = peak_flow(month, segment.peak_flow_meter, start, end)
     if residual is None:
         lacking.append("residual")
     if temperature is None:
@@ -151,7 +151,7 @@ def _within(month: Month, site: str, parameter: str, start: dt.datetime, end: dt
     return [point for point in month.series.get((site, parameter), []) if start <= point.at < end]
 
 
-def _peak_flow(month: Month, meter: str, start: dt.datetime, end: dt.datetime) -> tuple[float | None, str]:
+def peak_flow(month: Month, meter: str, start: dt.datetime, end: dt.datetime) -> tuple[float | None, str]:
     """The day's highest ``peak_hourly_flow``; without one, the highest mean flow between two counts, which is less."""
     read = [
         point.value

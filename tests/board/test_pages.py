@@ -124,7 +124,7 @@ class TestFewQuestions:
         ("path", "most"),
         [
             ("/", 8),
-            ("/w/TST/", 14),
+            ("/w/TST/", 16),
             ("/w/TST/stock/", 18),
             ("/w/TST/dosing/HYPO-POST/", 16),
             ("/w/TST/readings/", 8),

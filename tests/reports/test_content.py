@@ -7,13 +7,17 @@ import datetime as dt
 import io
 from pathlib import Path
 
+import pandas as pd
 import pypdf
 import pytest
 
 from plant import clock
+from plant.ledger import actions as ledger
 from plant.reports import content, facts
 from plant.reports.month import NoSuchMonth, gather
 from plant.reports.pdf.document import Document
+from plant.stock.models import Delivery
+from plant.works import actions as works_actions
 from tests import people
 from tests.reports import plan, reckoned
 
@@ -194,3 +198,41 @@ def test_characters_without_a_form_are_named_not_hidden(tmp_path: Path) -> None:
     plan.bring(book, [("ENTRY", "2026-03-05T08:00", "pH", "8.10", "", "")], tmp_path, now=now)
     document = content.draft(gather(book, 2026, 3, now=now))
     assert any("U+6C34" in words for _, words in document.closing)
+
+
+LATE = dt.datetime(2026, 4, 2, 10, tzinfo=dt.UTC)
+
+
+def test_flow_is_the_sum_of_its_days_with_the_highest_and_the_lowest(tmp_path: Path) -> None:
+    book, _ = plan.works(tmp_path, dt.date(2026, 3, 1), dt.date(2026, 3, 31), now=LATE)
+    made = content.draft(gather(book, 2026, 3, now=LATE))
+    frame = pd.read_csv(io.StringIO(facts.to_csv(made)), keep_default_na=False)
+    flow = frame[frame["table"] == "flow"].set_index("quantity")["full_value"]
+    days = frame[(frame["table"] == "doses") & frame["quantity"].str.startswith("Treated") & (frame["row"] != "Month")]
+    daily = days["full_value"].astype(float)
+    assert float(flow["month"]) == pytest.approx(daily.sum(), rel=1e-9)
+    assert float(flow["highest day"]) == pytest.approx(daily.max())
+    assert float(flow["lowest day"]) == pytest.approx(daily.min())
+    assert float(flow["mean of a day"]) == pytest.approx(daily.mean(), rel=1e-9)
+
+
+def test_cost_prints_only_where_it_is_chosen_and_is_price_times_mass(tmp_path: Path) -> None:
+    book, _ = plan.works(tmp_path, dt.date(2026, 3, 1), dt.date(2026, 3, 31), now=LATE)
+    made = content.draft(gather(book, 2026, 3, now=LATE))
+    assert "cost" not in [section.key for section in made.sections]
+    load = Delivery(
+        taken_at=plan.local("2026-02-20T10:00").astimezone(dt.UTC), vessel="NAOH-BULK", product="NAOH", quantity=1000.0, unit="kg",
+        strength=25.0, strength_basis="weight_pct", cost=300.0, currency="EUR",
+    )  # fmt: skip
+    ledger.append(book=book, client_id="priced", kind="line", received={}, rows=[load], by=people.person("olga"), now=LATE)
+    works_actions.state(
+        book=book, kind="report", subject="form", effective_from=plan.local("2026-03-01T00:00"), by=people.person("adam"),
+        value={"sections": ["summary", "cost"]}, now=LATE, reason="the council asks",
+    )  # fmt: skip
+    made = content.draft(gather(book, 2026, 3, now=LATE))
+    assert [section.key for section in made.sections] == ["summary", "cost", *content.ALWAYS]
+    frame = pd.read_csv(io.StringIO(facts.to_csv(made)), keep_default_na=False)
+    cost = frame[(frame["table"] == "cost") & (frame["row"] == "CAUSTIC-PH, NAOH")].set_index("quantity")["full_value"]
+    # 1,000 kg at 25 % for 300.00 is 1.20 a kilogram of NaOH.
+    assert float(cost["price"]) == pytest.approx(1.20)
+    assert float(cost["cost"]) == pytest.approx(1.20 * float(cost["used, as dosed"]), rel=1e-9)

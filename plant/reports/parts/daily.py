@@ -37,7 +37,7 @@ def _doses(month: Month) -> Table:
     by_day = {(row.day, row.dosing_point): row for row in month.doses}
     codes = list(dict.fromkeys(row.dosing_point for row in month.doses))
     periods = {row.dosing_point: row for row in month.periods}
-    meters = _meters(month, codes)
+    meters = meters_of(month, codes)
     columns = [Column("Day", number=False)]
     columns += [Column(f"Treated {meter}", show.label("ML")) for meter in meters]
     series: list[tuple[str, str, str, list[Figure | None], Figure | None]] = [
@@ -75,7 +75,7 @@ def _doses(month: Month) -> Table:
     )
 
 
-def _meters(month: Month, codes: list[str]) -> dict[str, str]:
+def meters_of(month: Month, codes: list[str]) -> dict[str, str]:
     """Each meter once, with a dosing point that counts by it."""
     out: dict[str, str] = {}
     for code in codes:
