@@ -211,8 +211,8 @@ def test_flow_is_the_sum_of_its_days_with_the_highest_and_the_lowest(tmp_path: P
     days = frame[(frame["table"] == "doses") & frame["quantity"].str.startswith("Treated") & (frame["row"] != "Month")]
     daily = days["full_value"].astype(float)
     assert float(flow["month"]) == pytest.approx(daily.sum(), rel=1e-9)
-    assert float(flow["highest day"]) == pytest.approx(daily.max())
-    assert float(flow["lowest day"]) == pytest.approx(daily.min())
+    assert float(flow["highest day volume"]) == pytest.approx(daily.max())
+    assert float(flow["lowest day volume"]) == pytest.approx(daily.min())
     assert float(flow["mean of a day"]) == pytest.approx(daily.mean(), rel=1e-9)
 
 

@@ -22,14 +22,14 @@ def section(month: Month) -> Section:
         Column("Meter", number=False),
         Column("month", show.label("ML")),
         Column("mean of a day", show.label("ML")),
-        Column("highest day", show.label("ML")),
-        Column("on", number=False),
-        Column("lowest day", show.label("ML")),
-        Column("on ", number=False),
+        Column("volume", show.label("ML"), "highest day"),
+        Column("on", group="highest day", number=False),
+        Column("volume", show.label("ML"), "lowest day"),
+        Column("on", group="lowest day", number=False),
         Column("days", "known/due"),
-        Column("peak hour", show.label("m3/h")),
-        Column("on  ", number=False),
-        Column("peak rests on", number=False, wraps=True),
+        Column("flow", show.label("m3/h"), "peak hour"),
+        Column("on", group="peak hour", number=False),
+        Column("rests on", group="peak hour", number=False, wraps=True),
     )
     rows = tuple(_row(month, meter, point) for meter, point in meters.items())
     note = (
