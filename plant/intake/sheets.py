@@ -10,6 +10,7 @@ from pathlib import Path
 from typing import Any, BinaryIO
 
 MOST_BYTES = 1_000_000_000
+MOST_COLUMNS = 500
 _SEPARATORS = (",", ";", "\t")
 _BOM_UTF16 = (b"\xff\xfe", b"\xfe\xff")
 
@@ -66,6 +67,8 @@ class Sheet:
         self._separator = max(_SEPARATORS, key=text.count)
         with self.path.open("rb") as file:
             found = next(self._cells(self._reader(file)), [])
+        if len(found) > MOST_COLUMNS:
+            raise NotASheet(f"{self.name}, line 1: {len(found)} columns; expected at most {MOST_COLUMNS}")
         header = tuple(cell.strip().lstrip("\ufeff") for cell in found)
         if not any(header):
             raise NotASheet(f"{self.name} has no header; expected: {','.join(self._required)}")

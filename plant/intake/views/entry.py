@@ -32,7 +32,9 @@ def put(request: HttpRequest, at: access.At, client_id: str) -> JsonResponse:
         return JsonResponse({"general": "more than a megabyte; send it as a file"}, status=413)
     try:
         received = json.loads(request.body)
-    except ValueError:
+        # Half of a surrogate pair can be written as an escape and is no text that could be kept.
+        json.dumps(received, ensure_ascii=False).encode()
+    except (ValueError, RecursionError):
         return JsonResponse({"general": "not JSON"}, status=400)
     tablet = request.tablet  # type: ignore[attr-defined]  # set by the gate
     said = received if isinstance(received, dict) else {}
