@@ -12,7 +12,7 @@ _ABOUT = f"""\
 A control system or a laboratory sends readings; others read comparison, deviations and issued reports.
 
 A token belongs to one device at one works and is made by the administrator of the works (Settings, Devices and tokens). Send it
-with every request: `Authorization: Bearer …`. Another works' token finds nothing.
+with every request, as `Authorization: Bearer` and the token. Another works' token finds nothing.
 
 A batch has an id that the sender makes: a UUID. Send the same batch under the same id until it is answered with 200 or 201;
 however often that is, it is taken once. At most {batches.MOST_ROWS:,} readings and {body.MOST_BYTES // 1_000_000} MB a batch.
