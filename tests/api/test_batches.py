@@ -15,6 +15,7 @@ from plant.deviations.models import Deviation
 from plant.ledger import verify
 from plant.ledger.models import Entry
 from plant.readings.models import Reading
+from tests import people
 from tests.api.machines import batch, reading
 
 
@@ -32,6 +33,12 @@ def test_a_batch_is_one_entry_through_the_one_door(book, machine):
     assert (entry.device, entry.attested, entry.recorded_by) == ("control system", "token", None)
     assert {row.by_name for row in Reading.objects.filter(entry=entry)} == {"control system"}
     assert not list(verify.everything())
+
+
+def test_the_readings_page_names_the_device(book, machine):
+    ref = machine.send(batch(reading())).json()["rows"][0]["ref"]
+    page = people.signed_in("olga").get(f"/w/TST/reading/{ref}/").content.decode()
+    assert "by the device control system" in page
 
 
 def test_its_days_are_judged_as_a_rounds_are(book, machine):
