@@ -5,6 +5,7 @@ from __future__ import annotations
 import datetime as dt
 import hashlib
 import secrets
+import uuid
 from collections.abc import Sequence
 from typing import Any
 
@@ -14,6 +15,7 @@ from django.db.models import F
 
 from plant.api.models import Token
 from plant.api.scopes import SCOPES
+from plant.ledger import actions as ledger
 from plant.ledger.models import Book
 
 PREFIX = "wb_"
@@ -40,7 +42,7 @@ def digest(secret: str) -> str:
 
 
 def make(*, book: Book, name: str, scopes: Sequence[str], by: Any, now: dt.datetime) -> tuple[Token, str]:
-    """A new token of a works, and its secret, which is kept nowhere else. Raises Refused."""
+    """A new token of a works, and its secret, which is kept nowhere else; the book notes what it may do. Raises Refused."""
     name = " ".join(name.split())
     if not name or len(name) > 40:
         raise Refused("Give the device a name of at most 40 characters: it stands beside every reading it sends.")
@@ -52,6 +54,7 @@ def make(*, book: Book, name: str, scopes: Sequence[str], by: Any, now: dt.datet
     try:
         with transaction.atomic():
             made = Token.objects.create(book=book, name=name, token_hash=digest(secret), scopes=kept, made_by=by, made_at=now)
+            _note(made, {"is": "let in", "scopes": kept}, by, now)
     except IntegrityError:
         raise Refused(f"There is, or was, a device named {name} here already: take another name.") from None
     return made, secret
@@ -61,7 +64,25 @@ def revoke(*, token: Token, why: str, by: Any, now: dt.datetime) -> None:
     """The token is refused from now on; what was sent with it stays. Raises Refused."""
     if not why.strip():
         raise Refused("Say why: device replaced, token written down somewhere …")
-    Token.objects.filter(pk=token.pk, revoked_at=None).update(revoked_by=by, revoked_at=now, revoked_why=why.strip()[:200])
+    why = why.strip()[:200]
+    with transaction.atomic():
+        mine = Token.objects.filter(pk=token.pk, revoked_at=None)
+        if mine.update(revoked_by=by, revoked_at=now, revoked_why=why):
+            _note(token, {"is": "withdrawn", "why": why}, by, now)
+
+
+def _note(token: Token, what: dict[str, Any], by: Any, now: dt.datetime) -> None:
+    """An entry of the book without rows: who let a device in, and who withdrew it, can't be changed afterwards."""
+    ledger.append(
+        book=token.book,
+        client_id=f"device {uuid.uuid4()}",
+        kind="device",
+        received={"device": token.name, **what},
+        rows=[],
+        by=by,
+        now=now,
+        attested="session" if by is not None else "shell",
+    )
 
 
 def use(*, token: Token, now: dt.datetime) -> None:

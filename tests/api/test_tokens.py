@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import datetime as dt
 import io
+import json
 
 import pytest
 from django.core.management import CommandError, call_command
@@ -12,6 +13,8 @@ from django.db import OperationalError
 from plant.api import actions, views
 from plant.api.models import Token
 from plant.api.scopes import SCOPES
+from plant.ledger import verify
+from plant.ledger.models import Entry
 from tests import people
 from tests.api import machines
 from tests.api.machines import Machine, batch, reading
@@ -47,6 +50,19 @@ def test_a_token_is_withdrawn_by_the_page_at_once(book, machine):
     assert answer.status_code == 401
     assert answer["WWW-Authenticate"].startswith("Bearer")
     assert "replaced" in client.get("/w/TST/devices/").content.decode()
+
+
+def test_who_let_a_device_in_and_who_withdrew_it_stands_in_the_book(book):
+    client = people.signed_in("adam")
+    secret = client.post("/w/TST/devices/", {"name": "laboratory", "scopes": ["reports.read"]}).context["secret"]
+    for _ in range(2):
+        client.post(f"/w/TST/devices/{Token.objects.get().pk}/revoke/", {"reason": "replaced"})
+    made, withdrawn = Entry.objects.filter(book=book, kind="device").order_by("seq")
+    assert json.loads(made.payload)["received"] == {"device": "laboratory", "is": "let in", "scopes": ["reports.read"]}
+    assert json.loads(withdrawn.payload)["received"] == {"device": "laboratory", "is": "withdrawn", "why": "replaced"}
+    assert {made.recorded_by.username, withdrawn.recorded_by.username} == {"adam"}
+    assert secret not in made.payload
+    assert not list(verify.everything())
 
 
 @pytest.mark.parametrize(
