@@ -12,6 +12,12 @@ SOURCES: dict[str, str] = {
     "SM-2320": "Standard Methods 2320 B, alkalinity; from memory",
     "SM-2340": "Standard Methods 2340 B, hardness by calculation; second-hand",
     "DAVIS-2010": "Davis, Water and Wastewater Engineering (2010), chapters 5 to 7; opened in part",
+    "CSB-2017": (
+        "US Chemical Safety Board, Case Study 2017-01-I-KS (Dec 2017), acid unloaded into hypochlorite; opened in part"
+    ),
+    "DAVIS-5-14": "Davis, Water and Wastewater Engineering (2010), p. 5-14 and table 5-4; opened in part",
+    "EPA-ICS": "US EPA, Incompatible Chemicals Storage, quick reference (P10058CY); one side opened",
+    "WI-NR811-51": "Wisconsin Administrative Code NR 811.51, fluoridation; opened",
     "WTPD-11": "ASCE/AWWA, Water Treatment Plant Design, ch. 11, eq. 11.10, 11.18, 11.20; opened",
     "ADAM-GORDON-1999": (
         "Adam & Gordon 1999, Inorganic Chemistry 38:1299, rate law of hypochlorite decomposition; abstract opened"

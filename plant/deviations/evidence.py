@@ -22,7 +22,7 @@ from plant.ledger.models import Book
 from plant.readings import queries as readings
 from plant.readings.queries import Point
 from plant.stock import queries as stock
-from plant.stock.models import Delivery
+from plant.stock.models import Delivery, Transfer
 from plant.works.described import DosingPoint
 from plant.works.stated import Stated
 
@@ -96,6 +96,12 @@ class Evidence:
         if index and found[index - 1].date_only:
             return end
         return next((point.at for point in found[index:] if point.usable), None)
+
+    @cached_property
+    def transfers(self) -> list[Transfer]:
+        """Transfers of the days at hand."""
+        start, end = self.calendar.span(self.first, self.last)
+        return stock.transfers(self.book, start=start, end=end, known=self.known)
 
     def stock_at(self, at: dt.datetime) -> list[VesselStock]:
         """All vessels at a moment; those of the ends of all days at hand come from one reckoning."""

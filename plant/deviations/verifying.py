@@ -12,6 +12,7 @@ from plant.deviations.queries import DeviationView
 from plant.deviations.rules import bounds
 from plant.ledger.models import Book
 from plant.readings import queries as readings
+from plant.stock import queries as stock
 from plant.works import queries as works
 from plant.works.described import Limit
 
@@ -34,9 +35,22 @@ def back_inside(book: Book, view: DeviationView, now: dt.datetime) -> Verdict:
     today = stated.calendar(now).day_of(now)
     first = max(view.last_day, today - dt.timedelta(days=14))
     evidence = gather(book, stated, first, today, now=now)
+    if view.kind == "suspicious_reading" and view.subject_kind == "vessel" and not view.parameter:
+        return _by_movement(book, view, evidence, now)
     if view.kind in BY_READING:
         return _by_reading(book, evidence, view, now)
     return _by_day(evidence, view, today)
+
+
+def _by_movement(book: Book, view: DeviationView, evidence: Evidence, now: dt.datetime) -> Verdict:
+    """A load against a check is behind us once it has been reversed, or the vessel has been stated back in service."""
+    rows = [*stock.deliveries(book, start=view.since, end=now + dt.timedelta(days=1), vessels=[view.subject])]
+    moved = stock.transfers(book, start=view.since, end=now + dt.timedelta(days=1), vessels=[view.subject])
+    if not any(row.ref in view.refs and row.marks for row in (*rows, *moved)):
+        return Verdict(True, "the load has been taken out of the reckoning")
+    if evidence.stated.state("vessel", view.subject, now) == "in_service":
+        return Verdict(True, "the vessel has been stated back in service")
+    return Verdict(False, "the vessel is still out of service: state it in service once it is emptied and clean")
 
 
 def _by_reading(book: Book, evidence: Evidence, view: DeviationView, now: dt.datetime) -> Verdict:

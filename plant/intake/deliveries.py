@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+from typing import Any
+
 from chemistry import errors, units, vessels
 from plant.intake import ground as grounds
 from plant.intake.cells import Cells, Unreadable
@@ -111,11 +114,16 @@ def _goes_in(delivery: models.Delivery, ground: grounds.Ground) -> bool:
 
 def volume_l(delivery: models.Delivery, ground: grounds.Ground) -> float | None:
     """The load in litres, by its own density or the product's; None where neither is known."""
-    if units.kind_of(delivery.unit) == "volume":
-        return float(units.volume_l(delivery.quantity, delivery.unit))
     product = ground.value("product", delivery.product, delivery.taken_at) or {}
-    density = delivery.density_kg_per_l or product.get("density_kg_per_L")
-    return float(units.mass_kg(delivery.quantity, delivery.unit)) / float(density) if density else None
+    return quantity_l(delivery.quantity, delivery.unit, product, delivery.density_kg_per_l)
+
+
+def quantity_l(quantity: float, unit: str, product: Mapping[str, Any], density_kg_l: float | None = None) -> float | None:
+    """A quantity of a product in litres, by the density given or the one stated; None where neither is known."""
+    if units.kind_of(unit) == "volume":
+        return float(units.volume_l(quantity, unit))
+    density = density_kg_l or product.get("density_kg_per_L")
+    return float(units.mass_kg(quantity, unit)) / float(density) if density else None
 
 
 def key_of(delivery: models.Delivery) -> tuple[object, ...]:

@@ -9,7 +9,7 @@ import datetime as dt
 from dataclasses import dataclass
 
 from chemistry import errors, vessels
-from plant.intake import deliveries, ground
+from plant.intake import deliveries, ground, meeting
 from plant.ledger.models import Book
 from plant.readings import queries as readings
 from plant.stock import models
@@ -71,17 +71,35 @@ def problems(book: Book, stated: Stated, delivery: models.Delivery, at: dt.datet
     if value is None:
         return [f"{delivery.vessel} is not a vessel of this works."]
     vessel = described.vessel(delivery.vessel, value)
-    found = []
-    if vessel.product != delivery.product:
-        found.append(f"{vessel.name or vessel.code} holds {vessel.product}, the load is {delivery.product}. Do not connect.")
     litres = deliveries.volume_l(delivery, ground.Ground(stated, stated.calendar(at)))
+    against = meeting.problems(stated, vessel, delivery.product, at, what="load")
+    return against + overfill(book, stated, vessel, litres, at, what="load")
+
+
+def transfer_problems(book: Book, stated: Stated, transfer: models.Transfer, at: dt.datetime) -> list[str]:
+    """Why product may not be moved from one vessel into another."""
+    values = [stated.value("vessel", code, at) for code in (transfer.from_vessel, transfer.to_vessel)]
+    if None in values:
+        return ["One of the two is not a vessel of this works."]
+    source = described.vessel(transfer.from_vessel, values[0] or {})
+    target = described.vessel(transfer.to_vessel, values[1] or {})
+    litres = deliveries.quantity_l(transfer.quantity, transfer.unit, stated.value("product", source.product, at) or {})
+    whole = None if litres is None else litres + transfer.carrier_water_l
+    against = meeting.problems(stated, target, source.product, at, what="transfer")
+    return against + overfill(book, stated, target, whole, at, what="transfer")
+
+
+def overfill(
+    book: Book, stated: Stated, vessel: described.Vessel, litres: float | None, at: dt.datetime, *, what: str
+) -> list[str]:
+    """Whether so many litres go in, by the last dip; what can't be known stops nothing."""
     space = room(book, stated, vessel, at)
     if litres is not None and space.room_l is not None and litres > space.room_l:
         dip = stated.calendar(at).local(space.dip_at).strftime("%d %b %H:%M") if space.dip_at else "no dip"
-        found.append(
-            f"The load is {litres:,.0f} L; there is room for {max(space.room_l, 0):,.0f} L up to {vessel.max_fill_pct:g} % "
-            f"(by the dip of {dip}). Do not connect; take a fresh dip, or have part of the load taken back."
-        )
-    elif litres is not None and space.most_l is not None and litres > space.most_l:
-        found.append(f"The load is {litres:,.0f} L, the whole vessel may hold {space.most_l:,.0f} L. Do not connect.")
-    return found
+        return [
+            f"The {what} is {litres:,.0f} L; there is room for {max(space.room_l, 0):,.0f} L up to {vessel.max_fill_pct:g} % "
+            f"(by the dip of {dip}). Do not connect; take a fresh dip, or have part of it taken back."
+        ]
+    if litres is not None and space.most_l is not None and litres > space.most_l:
+        return [f"The {what} is {litres:,.0f} L, the whole vessel may hold {space.most_l:,.0f} L. Do not connect."]
+    return []

@@ -54,6 +54,10 @@ class _Movement(forms.Form):
         out = {name: str(self.cleaned_data.get(name) or "") for name in self.columns}
         return out | {"timestamp": self.cleaned_data["timestamp"]}
 
+    def typed(self) -> dict[str, str]:
+        """The same line from what was typed, valid or not."""
+        return {name: str(self.data.get(name) or "").strip() for name in self.columns}
+
     def refuse(self, column: str, said: str) -> None:
         """Puts a refusal under the field it belongs to."""
         self.add_error(column if column in self.fields else None, said)
@@ -83,12 +87,27 @@ class DeliveryForm(_Movement):
     document = forms.CharField(label="Delivery note", required=False, max_length=120)
     cost = _number("Cost")
     currency = forms.CharField(label="Currency", required=False, max_length=8)
+    level_before = _number("Level before, m (weight, kg)", hint="With the level after: held against the papers.")
+    level_after = _number("Level after, m (weight, kg)")
+    certificate = forms.FileField(label="Certificate (PDF or photo)", required=False)
     second_person = forms.CharField(label="Second person at the fill point", required=False, max_length=80)
+    others_locked = forms.BooleanField(
+        label="The fill point of this vessel is unlocked, and the caps of all others are locked",
+        required=False,
+        error_messages={"required": "Look at every other fill point: each must be locked."},
+    )
     checked = forms.BooleanField(
-        label="We have done these checks",
+        label="We have done these checks, two of us",
         required=False,
         error_messages={"required": "Do the checks before connecting, then tick this."},
     )
+
+    def clean(self) -> dict[str, Any]:
+        """One level alone says nothing."""
+        given = super().clean() or self.cleaned_data
+        if bool(given.get("level_before")) != bool(given.get("level_after")):
+            self.add_error("level_after", "Give the level before and the level after, or neither.")
+        return given
 
 
 class TransferForm(_Movement):

@@ -44,7 +44,7 @@ def deliveries(
     rows = models.Delivery.objects.filter(book=book, taken_at__gte=start, taken_at__lt=end)
     if vessels is not None:
         rows = rows.filter(vessel__in=list(vessels))
-    return list(rows.as_known(known).order_by("taken_at", "seq", "line"))
+    return list(rows.as_known(known).select_related("entry").order_by("taken_at", "seq", "line"))
 
 
 def transfers(
@@ -60,4 +60,4 @@ def transfers(
     if vessels is not None:
         named = list(vessels)
         rows = rows.filter(Q(from_vessel__in=named) | Q(to_vessel__in=named))
-    return list(rows.as_known(known).order_by("taken_at", "seq", "line"))
+    return list(rows.as_known(known).select_related("entry").order_by("taken_at", "seq", "line"))

@@ -93,6 +93,7 @@ class Vessel:
     heel_kg: float = 0.0
     max_fill_pct: float = 95.0
     containment: str | None = None
+    fill_line: str | None = None
     fed_from: str | None = None
     form: dict[str, Any] = field(default_factory=dict)
 

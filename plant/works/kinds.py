@@ -234,6 +234,7 @@ ALL = (
             _from_zero("heel_kg"),
             Key("max_fill_pct", "number", above=0.0, high=100.0),
             Key("containment", help="vessels that share a bund bear the same name here"),
+            Key("fill_line", help="vessels that share a fill line bear the same name here"),
             Key("fed_from", "code", refers="vessel", help="the vessel it is filled from"),
         ),
         site=True,

@@ -67,6 +67,7 @@ def judge_day(day: Day, only: Limit | None = None) -> list[Finding]:
         found += RULES[limit.kind](day, limit, ref)
     if only is None:
         found += doubts.suspicious(day)
+        found += doubts.movements(day)
     unique = _one_for_one_cause(_once(found))
     return [replace(item, causes=causes.likely(item, day, unique)) for item in unique]
 

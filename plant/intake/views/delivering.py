@@ -12,7 +12,10 @@ from django.http import Http404, HttpRequest, HttpResponse
 from django.shortcuts import redirect, render
 from django.views.decorators.http import require_http_methods
 
-from plant.intake import advice, cells, corrections, filling, movement_forms, receiving
+from plant.files import actions as files
+from plant.files import kinds
+from plant.files import queries as documents
+from plant.intake import advice, cells, corrections, filling, meeting, movement_forms, receiving, weighing
 from plant.intake.views import wall
 from plant.ledger import actions as ledger
 from plant.stock import actions as stock_actions
@@ -29,6 +32,7 @@ def delivery(request: HttpRequest, at: access.At) -> HttpResponse:
     """The checks before connecting, the form, and the loads of the last weeks."""
     form = movement_forms.DeliveryForm(
         request.POST or None,
+        request.FILES or None,
         stated=at.stated,
         at=at.now,
         initial={"timestamp": _local(at), "vessel": request.GET.get("vessel")},
@@ -36,27 +40,37 @@ def delivery(request: HttpRequest, at: access.At) -> HttpResponse:
     refused: list[str] = []
     if request.method == "POST":
         already_in = "already_in" in request.POST
-        form.fields["checked"].required = not already_in
+        for name in ("checked", "others_locked", "second_person"):
+            form.fields[name].required = not already_in
         if form.is_valid():
+            given = form.cleaned_data
             try:
-                taken = receiving.deliver(
+                received = receiving.deliver(
                     book=at.book,
                     stated=at.stated,
                     cells=form.cells(),
-                    second_person=form.cleaned_data["second_person"],
+                    second_person=given["second_person"],
                     already_in=already_in,
                     by=request.user,
                     now=at.now,
                     client_id=_client_id(request),
+                    levels=weighing.Levels(given["level_before"], given["level_after"]) if given["level_after"] else None,
+                    papers=_papers(at, given["certificate"], _client_id(request)),
                 )
             except cells.Unreadable as problem:
                 form.refuse(problem.column, f"Read {problem.read}; expected {problem.expected}.")
             except receiving.NotToBeConnected as problem:
                 refused = problem.problems
+            except kinds.NotKept as problem:
+                form.refuse("certificate", f"Not kept: {problem}.")
             except ledger.ContentDiffers:
                 form.refuse("", _TWICE)
             else:
-                return _done(request, at, taken, "intake:delivery")
+                if received.rise:
+                    (messages.warning if received.differs else messages.info)(request, received.rise)
+                return _done(request, at, received.taken, "intake:delivery")
+        if form.errors:
+            refused = receiving.against(book=at.book, stated=at.stated, cells=form.typed(), now=at.now)
     context = {
         "form": form,
         "cautions": advice.DELIVERY,
@@ -74,11 +88,15 @@ def delivery(request: HttpRequest, at: access.At) -> HttpResponse:
 def transfer(request: HttpRequest, at: access.At) -> HttpResponse:
     """The form for a transfer, and those of the last weeks."""
     form = movement_forms.TransferForm(request.POST or None, stated=at.stated, at=at.now, initial={"timestamp": _local(at)})
+    refused: list[str] = []
     if request.method == "POST" and form.is_valid():
         try:
             taken = receiving.move(
-                book=at.book, stated=at.stated, cells=form.cells(), by=request.user, now=at.now, client_id=_client_id(request)
-            )
+                book=at.book, stated=at.stated, cells=form.cells(), already_in="already_in" in request.POST, by=request.user,
+                now=at.now, client_id=_client_id(request),
+            ).taken  # fmt: skip
+        except receiving.NotToBeConnected as problem:
+            refused = problem.problems
         except cells.Unreadable as problem:
             form.refuse(problem.column, f"Read {problem.read}; expected {problem.expected}.")
         except ledger.ContentDiffers:
@@ -87,10 +105,12 @@ def transfer(request: HttpRequest, at: access.At) -> HttpResponse:
             return _done(request, at, taken, "intake:transfer")
     context = {
         "form": form,
+        "refused": refused,
+        "already": advice.ALREADY_UNLOADED,
         "recent": _recent(at, stock.transfers(at.book, start=at.now - RECENT, end=at.now + dt.timedelta(days=1))),
         "client_id": _client_id(request),
     }
-    return render(request, "intake/transfer.html", context, status=_status(form, []))
+    return render(request, "intake/transfer.html", context, status=_status(form, refused))
 
 
 @access.needs("delivery.enter")
@@ -152,15 +172,32 @@ def _local(at: access.At) -> str:
     return f"{at.stated.calendar(at.now).local(at.now):%Y-%m-%dT%H:%M}"
 
 
+def _papers(at: access.At, upload: Any, client_id: str) -> list[Any]:
+    """The certificate as a document of this delivery. Raises kinds.NotKept."""
+    if not upload:
+        return []
+    if upload.size > kinds.MOST_BYTES:
+        raise kinds.NotKept(f"the file has {upload.size / 1e6:.1f} MB; at most {kinds.MOST_BYTES / 1e6:.0f} MB are kept")
+    return [files.document(content=upload.read(), name=upload.name, about=client_id, made_at=at.now)]
+
+
 def _rooms(at: access.At) -> list[dict[str, Any]]:
     calendar = at.stated.calendar(at.now)
     out = []
     for vessel in at.stated.vessels(at.now):
         space = filling.room(at.book, at.stated, vessel, at.now)
-        out.append({"vessel": vessel, "room": space, "dip_at": wall.at(calendar, space.dip_at) if space.dip_at else None})
+        beside = meeting.neighbours(at.stated, vessel, vessel.product, at.now)
+        dip_at = wall.at(calendar, space.dip_at) if space.dip_at else None
+        out.append({"vessel": vessel, "room": space, "dip_at": dip_at, "beside": [one.words for one in beside]})
     return out
 
 
 def _recent(at: access.At, rows: Any) -> list[dict[str, Any]]:
     calendar = at.stated.calendar(at.now)
-    return [{"row": row, "at": wall.at(calendar, row.taken_at)} for row in reversed(rows)]
+    papers: dict[str, list[Any]] = {}
+    for paper in documents.about(at.book, [row.entry.client_id for row in rows]):
+        papers.setdefault(paper.about, []).append(paper)
+    return [
+        {"row": row, "at": wall.at(calendar, row.taken_at), "papers": papers.get(row.entry.client_id, [])}
+        for row in reversed(rows)
+    ]
