@@ -166,15 +166,17 @@ def test_other_methods_and_addresses_are_problems_in_words(book, machine):
         assert (answer.status_code, answer["Content-Type"]) == (404, "application/problem+json")
 
 
-def test_a_database_that_is_away_is_a_problem_in_words(book, machine, monkeypatch):
-    def away(book):
-        raise OperationalError
+@pytest.mark.parametrize(("error", "status"), [(OperationalError, 503), (ZeroDivisionError, 500)])
+def test_a_database_that_is_away_or_a_fault_is_a_problem_in_words(book, machine, monkeypatch, error, status):
+    def broken(book):
+        raise error
 
-    monkeypatch.setattr(views.queries, "issued", away)
+    monkeypatch.setattr(views.queries, "issued", broken)
     machine.raise_request_exception = False
     answer = machine.get("/api/w/TST/reports")
-    assert (answer.status_code, answer["Content-Type"]) == (503, "application/problem+json")
-    assert answer["Retry-After"]
+    assert (answer.status_code, answer["Content-Type"]) == (status, "application/problem+json")
+    assert answer.json()["detail"]
+    assert ("Retry-After" in answer) == (status == 503)
 
 
 def test_secrets_are_long_and_all_different(book):
