@@ -13,6 +13,7 @@ from plant.deviations.rules import bounds
 from plant.ledger.models import Book
 from plant.readings import queries as readings
 from plant.stock import queries as stock
+from plant.stock.models import Delivery, Transfer
 from plant.works import queries as works
 from plant.works.described import Limit
 
@@ -44,9 +45,10 @@ def back_inside(book: Book, view: DeviationView, now: dt.datetime) -> Verdict:
 
 def _by_movement(book: Book, view: DeviationView, evidence: Evidence, now: dt.datetime) -> Verdict:
     """A load against a check is behind us once it has been reversed, or the vessel has been stated back in service."""
-    rows = [*stock.deliveries(book, start=view.since, end=now + dt.timedelta(days=1), vessels=[view.subject])]
-    moved = stock.transfers(book, start=view.since, end=now + dt.timedelta(days=1), vessels=[view.subject])
-    if not any(row.ref in view.refs and row.marks for row in (*rows, *moved)):
+    start, end = view.since, now + dt.timedelta(days=1)
+    rows: list[Delivery | Transfer] = [*stock.deliveries(book, start=start, end=end, vessels=[view.subject])]
+    rows += stock.transfers(book, start=start, end=end, vessels=[view.subject])
+    if not any(row.ref in view.refs and row.marks for row in rows):
         return Verdict(True, "the load has been taken out of the reckoning")
     if evidence.stated.state("vessel", view.subject, now) == "in_service":
         return Verdict(True, "the vessel has been stated back in service")

@@ -156,6 +156,9 @@ def _vessel(out: Reckoning, walked: VesselWalk, at: dt.datetime, supply: dict[st
     size = capacity(walked.vessel)
     active = products.active_kg(product, held.kg, held.kg * held.fraction)
     usable = products.active_kg(product, held.usable_kg, held.usable_kg * held.fraction)
+    if out.stated.state("vessel", code, at) == "off":
+        usable = 0.0
+        remarks.append("out of service or in quarantine: nothing of it counts as usable")
     if at - held.mark.at > dt.timedelta(hours=30):
         remarks.append(f"last dip {(at - held.mark.at).total_seconds() / 3600:.0f} h ago")
     remarks += out.found.problems.get(code, [])

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import datetime as dt
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from typing import Any
 
 from django import forms
@@ -87,10 +87,13 @@ class DeliveryForm(_Movement):
     document = forms.CharField(label="Delivery note", required=False, max_length=120)
     cost = _number("Cost")
     currency = forms.CharField(label="Currency", required=False, max_length=8)
+    order = forms.ChoiceField(label="Of which order", required=False)
     level_before = _number("Level before, m (weight, kg)", hint="With the level after: held against the papers.")
     level_after = _number("Level after, m (weight, kg)")
     certificate = forms.FileField(label="Certificate (PDF or photo)", required=False)
     second_person = forms.CharField(label="Second person at the fill point", required=False, max_length=80)
+    quarantine = forms.BooleanField(label="Quarantine: the vessel stays out of service until it is accepted", required=False)
+    accepted_because = forms.CharField(label="Accepted outside its terms, because", required=False, max_length=400)
     others_locked = forms.BooleanField(
         label="The fill point of this vessel is unlocked, and the caps of all others are locked",
         required=False,
@@ -101,6 +104,14 @@ class DeliveryForm(_Movement):
         required=False,
         error_messages={"required": "Do the checks before connecting, then tick this."},
     )
+
+    def __init__(self, *args: Any, orders: Sequence[tuple[str, str]] = (), may_accept: bool = False, **kwargs: Any) -> None:
+        super().__init__(*args, **kwargs)
+        self.fields["order"].choices = [("", "none"), *orders]  # type: ignore[attr-defined]  # a ChoiceField
+        if not orders:
+            del self.fields["order"]
+        if not may_accept:
+            del self.fields["accepted_because"]
 
     def clean(self) -> dict[str, Any]:
         """One level alone says nothing."""
@@ -123,3 +134,25 @@ class TransferForm(_Movement):
     unit = forms.ChoiceField(label="Unit", choices=[(name, name) for name in deliveries.UNITS], initial="L")
     carrier_water_L = _number("Dilution water added, L", hint="Counted apart: 200 L of a 1:4 make-up are 40 L of product.")
     note = forms.CharField(label="Note", required=False, widget=forms.Textarea(attrs={"rows": 2}), max_length=1000)
+
+
+class OrderForm(forms.Form):
+    """A load that has been ordered."""
+
+    product = forms.ChoiceField(label="Product")
+    quantity_kg = forms.FloatField(label="Quantity, kg", min_value=0.001, max_value=1e7)
+    ordered_on = forms.DateField(label="Ordered on", widget=forms.DateInput(attrs={"type": "date"}, format="%Y-%m-%d"))
+    expected_on = forms.DateField(label="Expected on", widget=forms.DateInput(attrs={"type": "date"}, format="%Y-%m-%d"))
+    supplier = forms.CharField(label="Supplier", required=False, max_length=80)
+    reference = forms.CharField(label="Order number", required=False, max_length=80)
+
+    def __init__(self, *args: Any, stated: Stated, at: dt.datetime, **kwargs: Any) -> None:
+        super().__init__(*args, **kwargs)
+        self.fields["product"].choices = _products(stated, at)  # type: ignore[attr-defined]  # a ChoiceField
+
+    def clean(self) -> dict[str, Any]:
+        """Nothing comes before it is ordered."""
+        given = super().clean() or self.cleaned_data
+        if given.get("ordered_on") and given.get("expected_on") and given["expected_on"] < given["ordered_on"]:
+            self.add_error("expected_on", "Not before the day it was ordered.")
+        return given

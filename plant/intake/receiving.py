@@ -10,10 +10,11 @@ from typing import Any
 from django.db import transaction
 
 from plant.files.models import Document
-from plant.intake import actions, deliveries, filling, ground, numbers, transfers, weighing
+from plant.intake import accepting, actions, deliveries, filling, ground, numbers, transfers, weighing
 from plant.intake.cells import Unreadable
 from plant.ledger.models import Book, Row
 from plant.readings import marks
+from plant.stock import actions as stock_actions
 from plant.stock import models
 from plant.works import actions as works_actions
 from plant.works.stated import Stated
@@ -21,6 +22,14 @@ from plant.works.stated import Stated
 
 class NotToBeConnected(ValueError):
     """Something speaks against it; ``problems`` say what. There is no way round, except that it has gone in already."""
+
+    def __init__(self, problems: list[str]) -> None:
+        self.problems = problems
+        super().__init__(" ".join(problems))
+
+
+class WantsAcceptance(ValueError):
+    """The load is outside its stated terms; a supervisor may accept it with a reason."""
 
     def __init__(self, problems: list[str]) -> None:
         self.problems = problems
@@ -48,12 +57,16 @@ def deliver(
     client_id: str,
     levels: weighing.Levels | None = None,
     papers: Sequence[Document] = (),
+    order: models.Order | None = None,
+    accepted_because: str = "",
+    quarantine: bool = False,
 ) -> Received:
-    """Records a delivery. Raises cells.Unreadable, NotToBeConnected.
+    """Records a delivery. Raises cells.Unreadable, NotToBeConnected, WantsAcceptance.
 
     What has gone in already is always recorded; if it should not have, it is marked and its vessel goes out of service.
     ``levels`` are the vessel's readings before and after: they become readings, and their rise is held against the papers.
-    ``papers`` are documents of the load, such as its certificate.
+    ``papers`` are documents of the load, such as its certificate; ``order`` is the one it fulfils. ``accepted_because`` is a
+    supervisor's reason for a load outside its terms; ``quarantine`` keeps its vessel out of service until stated otherwise.
     """
     here = _here(stated, now)
     delivery = deliveries.read(cells, here, already_in=True)
@@ -63,6 +76,12 @@ def deliver(
     problems = [] if repeated else filling.problems(book, stated, delivery, delivery.taken_at)
     if problems and not already_in:
         raise NotToBeConnected(problems)
+    day = here.calendar.local(delivery.taken_at).date()
+    terms = [] if repeated else accepting.outside_terms(stated, delivery, day)
+    if terms and not already_in and len(accepted_because.strip()) < 3:
+        raise WantsAcceptance(terms)
+    if terms:
+        delivery.marks = [*delivery.marks, marks.ACCEPTED]
     if problems and marks.WRONG_PRODUCT not in delivery.marks:
         delivery.marks = [
             *delivery.marks,
@@ -74,8 +93,14 @@ def deliver(
         received["levels"] = levels.as_received()
     if papers:
         received["papers"] = [paper.sha256 for paper in papers]
+    if terms:
+        received["accepted_because"] = accepted_because.strip() or "it had gone in already"
     rows: list[Row] = [delivery, *(rise.readings if rise else ()), *papers]
-    taken = _take(book, "delivery", received, rows, delivery.vessel if problems else "", problems, by, now, client_id)
+    if order is not None:
+        received["order"] = order.ref
+        rows += stock_actions.reversal(old=order, reason=f"delivered: {delivery}")
+    why = problems or (["quarantine until accepted"] if quarantine else [])
+    taken = _take(book, "delivery", received, rows, delivery.vessel if why else "", why, by, now, client_id)
     return Received(taken, rise.words if rise else "", bool(rise and rise.differs))
 
 
@@ -138,7 +163,7 @@ def _take(
                 subject=f"vessel:{out_of_service}",
                 value={"is": "off"},
                 effective_from=now,
-                reason=f"filled against a check: {' '.join(problems)}",
+                reason=f"filled: {' '.join(problems)}",
                 by=by,
                 now=now,
             )

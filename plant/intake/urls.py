@@ -1,6 +1,6 @@
 from django.urls import path
 
-from plant.intake.views import delivering, entry, importing, late, offline, photo, reading, round_page
+from plant.intake.views import delivering, entry, importing, late, offline, ordering, photo, reading, round_page
 
 app_name = "intake"
 urlpatterns = [
@@ -15,6 +15,9 @@ urlpatterns = [
     path("w/<slug:code>/reading/<str:ref>/", reading.page, name="reading"),
     path("w/<slug:code>/delivery/", delivering.delivery, name="delivery"),
     path("w/<slug:code>/transfer/", delivering.transfer, name="transfer"),
+    path("w/<slug:code>/orders/", ordering.orders, name="orders"),
+    path("w/<slug:code>/orders/place/", ordering.place, name="place_order"),
+    path("w/<slug:code>/orders/<str:ref>/cancel/", ordering.cancel, name="cancel_order"),
     path("w/<slug:code>/movement/<str:kind>/<str:ref>/reverse/", delivering.reverse, name="reverse"),
     path("w/<slug:code>/import/", importing.page, name="import"),
 ]

@@ -8,6 +8,7 @@ PH_IS_CHLORINE = "ph_equals_chlorine"
 CONFLICT = "conflict"
 WRONG_PRODUCT = "wrong_product"
 OVERFILL = "overfill"
+ACCEPTED = "accepted_outside_terms"
 
 WORDS: dict[str, str] = {
     IMPOSSIBLE: "outside what is physically possible",
@@ -16,6 +17,7 @@ WORDS: dict[str, str] = {
     CONFLICT: "another value was recorded for the same sample and time",
     WRONG_PRODUCT: "another product than the vessel holds",
     OVERFILL: "more than the vessel had room for",
+    ACCEPTED: "outside the stated terms, accepted by a supervisor",
 }
 
 

@@ -1,4 +1,4 @@
-"""What may be done to a delivery or a transfer that is in the book: reverse it, or put a corrected one in its place.
+"""What may be done to an order, a delivery or a transfer that is in the book: end it, or put a corrected one in its place.
 
 A delivery booked to the wrong vessel is mended by reversing it and entering it again; the reversal is a row too. These
 make the rows; ``plant.intake.actions`` appends them as an entry and has the days judged again.
@@ -10,7 +10,7 @@ from typing import TypeVar
 
 from plant.stock import models
 
-Movement = TypeVar("Movement", models.Delivery, models.Transfer)
+Movement = TypeVar("Movement", models.Delivery, models.Transfer, models.Order)
 
 
 class AlreadyReversed(ValueError):
@@ -41,7 +41,7 @@ def replacement(*, old: Movement, new: Movement, reason: str) -> list[Movement]:
     return [new]
 
 
-def _ready(old: models.Delivery | models.Transfer, reason: str) -> str:
+def _ready(old: models.Delivery | models.Transfer | models.Order, reason: str) -> str:
     newer = type(old).objects.filter(supersedes=old.pk).select_related("entry__recorded_by").first()
     if newer is not None:
         who = newer.entry.recorded_by or "the system"

@@ -1,4 +1,4 @@
-"""Deliveries and transfers."""
+"""Orders, deliveries and transfers."""
 
 from django.db import models
 
@@ -59,3 +59,21 @@ class Transfer(Record):
             models.Index(fields=["book", "from_vessel", "taken_at"], name="transfer_from"),
             models.Index(fields=["book", "to_vessel", "taken_at"], name="transfer_to"),
         ]
+
+
+class Order(Record):
+    """A load that has been ordered. It ends when it is delivered or cancelled: that is its void, with the reason."""
+
+    product = models.CharField(max_length=40)
+    quantity_kg = models.FloatField()
+    ordered_on = models.DateField()
+    expected_on = models.DateField()
+    supplier = models.CharField(max_length=80, blank=True)
+    reference = models.CharField(max_length=80, blank=True)
+
+    class Meta(Record.Meta):
+        abstract = False
+        indexes = [models.Index(fields=["book", "product"], name="order_by_product")]
+
+    def __str__(self) -> str:
+        return f"{self.quantity_kg:g} kg {self.product}, expected {self.expected_on}"

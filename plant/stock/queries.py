@@ -1,4 +1,4 @@
-"""Reads of deliveries and transfers."""
+"""Reads of orders, deliveries and transfers."""
 
 from __future__ import annotations
 
@@ -61,3 +61,14 @@ def transfers(
         named = list(vessels)
         rows = rows.filter(Q(from_vessel__in=named) | Q(to_vessel__in=named))
     return list(rows.as_known(known).select_related("entry").order_by("taken_at", "seq", "line"))
+
+
+def orders(book: Book, *, known: int | None = None) -> list[models.Order]:
+    """Orders that are neither delivered nor cancelled, the first expected first."""
+    rows = models.Order.objects.filter(book=book).as_known(known)
+    return list(rows.select_related("entry__recorded_by").order_by("expected_on", "seq", "line"))
+
+
+def order(book: Book, ref: str) -> models.Order | None:
+    """The open order called ``seq.line``."""
+    return next((one for one in orders(book) if one.ref == ref), None)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import datetime as dt
 import functools
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, replace
 
 from chemistry import units
@@ -14,8 +14,9 @@ from plant.dosing.figures import VesselStock
 from plant.dosing.reckoning import capacity
 from plant.ledger.models import Book
 from plant.stock import queries as movements
+from plant.stock.models import Order
 from plant.supply.forecast import DayUse, Forecast, forecast
-from plant.supply.window import Terms, Window, window
+from plant.supply.window import Placed, Terms, Window, window
 from plant.works import queries as works
 from plant.works.described import Product
 from plant.works.stated import Stated
@@ -51,6 +52,7 @@ def supply(book: Book, at: dt.datetime, *, known: int | None = None, stated: Sta
     calendar = stated.calendar(at)
     yesterday = calendar.day_of(at) - dt.timedelta(days=1)
     history = _history(book, yesterday, known, stated)
+    orders = movements.orders(book, known=known)
     return [
         _one(
             book,
@@ -61,6 +63,7 @@ def supply(book: Book, at: dt.datetime, *, known: int | None = None, stated: Sta
             history.get(product.code, {}),
             tuple(row for row in vessels if row.product == product.code),
             known,
+            [order for order in orders if order.product == product.code],
         )
         for product in stated.products(at)
     ]
@@ -118,6 +121,7 @@ def _one(
     history: dict[dt.date, DayUse],
     vessels: tuple[VesselStock, ...],
     known: int | None,
+    orders: Sequence[Order],
 ) -> ProductSupply:
     made = forecast(history, yesterday, design=_design(stated, product, at))
     usable = _sum(row.usable_active_kg for row in vessels)
@@ -127,6 +131,10 @@ def _one(
         remarks.append("too little past for a forecast")
     elif made.past_checked == 0:
         remarks.append("band: usual error, the past is too short to tell")
+    today = yesterday + dt.timedelta(days=1)
+    # One that is overdue may never come: it is named, and keeps nobody from ordering in time.
+    placed = [Placed(order.expected_on, order.quantity_kg) for order in orders if order.expected_on >= today]
+    remarks += [f"on order: {order}" + ("; overdue, not counted on" if order.expected_on < today else "") for order in orders]
     lasts = None if made is None or usable is None else made.lasts_days(usable)
     price, currency = _price(book, product, at, known)
     return ProductSupply(
@@ -139,7 +147,7 @@ def _one(
         days_low=None if made is None or usable is None else made.lasts_days(usable, high=True),
         days_high=None,
         forecast=made,
-        window=_window(stated, product, at, yesterday, made, usable, kg, vessels),
+        window=_window(stated, product, at, yesterday, made, usable, kg, vessels, placed),
         vessels=vessels,
         price_per_active_kg=price,
         currency=currency,
@@ -175,6 +183,7 @@ def _window(
     usable: float | None,
     kg: float | None,
     vessels: tuple[VesselStock, ...],
+    placed: Sequence[Placed] = (),
 ) -> Window | None:
     """In kg of product, at the strength the stock has now."""
     if made is None or usable is None or not kg or product.load_kg is None or product.lead_time_days is None:
@@ -201,7 +210,8 @@ def _window(
         total = {"low": low, "high": high}.get(edge, made.total(max(days, 1)))
         return (total if days > 0 else 0.0) / share
 
-    return window(today=yesterday + dt.timedelta(days=1), usable_kg=usable / share, room_kg=room, terms=terms, use_kg=use_kg)
+    today = yesterday + dt.timedelta(days=1)
+    return window(today=today, usable_kg=usable / share, room_kg=room, terms=terms, use_kg=use_kg, placed=placed)
 
 
 def _price(book: Book, product: Product, at: dt.datetime, known: int | None) -> tuple[float | None, str]:

@@ -59,6 +59,8 @@ class Product:
     storage_temperature_C: float | None = None
     lead_time_days: float | None = None
     load_kg: float | None = None
+    accepted_strength_low: float | None = None
+    accepted_strength_high: float | None = None
     reserve_days: float | None = None
     no_delivery_days: tuple[str, ...] = ()
     extra: dict[str, Any] = field(default_factory=dict)

@@ -216,6 +216,8 @@ ALL = (
             Key("storage_temperature_C", "number", low=-40.0, high=60.0),
             _from_zero("lead_time_days"),
             _positive("load_kg"),
+            _from_zero("accepted_strength_low", text="a load below it needs a supervisor's acceptance, in strength_basis"),
+            _positive("accepted_strength_high", text="a load above it likewise"),
             _from_zero("reserve_days"),
             Key("no_delivery_days", "weekdays"),
         ),

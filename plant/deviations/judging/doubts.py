@@ -45,7 +45,8 @@ def suspicious(day: Day) -> Iterator[Finding]:
 def movements(day: Day) -> Iterator[Finding]:
     """One finding for each vessel that was filled against a check, or of whose loads two contradict each other."""
     found: dict[str, list[Delivery | Transfer]] = {}
-    for row in (*day.of.deliveries, *day.of.transfers):
+    moved: list[Delivery | Transfer] = [*day.of.deliveries, *day.of.transfers]
+    for row in moved:
         if row.marks and day.start <= row.taken_at < day.until:
             found.setdefault(row.vessel if isinstance(row, Delivery) else row.to_vessel, []).append(row)
     for vessel, rows in found.items():

@@ -35,7 +35,9 @@ def delivery(request: HttpRequest, at: access.At) -> HttpResponse:
         request.FILES or None,
         stated=at.stated,
         at=at.now,
-        initial={"timestamp": _local(at), "vessel": request.GET.get("vessel")},
+        initial={"timestamp": _local(at), "vessel": request.GET.get("vessel"), "order": request.GET.get("order")},
+        orders=[(one.ref, str(one)) for one in stock.orders(at.book)],
+        may_accept=at.member.may("record.correct"),
     )
     refused: list[str] = []
     if request.method == "POST":
@@ -56,11 +58,21 @@ def delivery(request: HttpRequest, at: access.At) -> HttpResponse:
                     client_id=_client_id(request),
                     levels=weighing.Levels(given["level_before"], given["level_after"]) if given["level_after"] else None,
                     papers=_papers(at, given["certificate"], _client_id(request)),
+                    order=stock.order(at.book, given.get("order") or ""),
+                    accepted_because=given.get("accepted_because", ""),
+                    quarantine=given["quarantine"],
                 )
             except cells.Unreadable as problem:
                 form.refuse(problem.column, f"Read {problem.read}; expected {problem.expected}.")
             except receiving.NotToBeConnected as problem:
                 refused = problem.problems
+            except receiving.WantsAcceptance as problem:
+                who = (
+                    "State why it is accepted, below"
+                    if "accepted_because" in form.fields
+                    else "A supervisor may accept it, with a reason"
+                )
+                form.refuse("accepted_because", f"{problem} {who}; or send it back.")
             except kinds.NotKept as problem:
                 form.refuse("certificate", f"Not kept: {problem}.")
             except ledger.ContentDiffers:
