@@ -1,4 +1,4 @@
-"""What people are told when a page breaks."""
+"""What people, and machines, are told when a page breaks or isn't there."""
 
 import sys
 
@@ -8,6 +8,11 @@ from django.template import loader
 from django.views import defaults
 
 from plant.api import problems
+
+
+def missing(request: HttpRequest, exception: Exception) -> HttpResponse:
+    """404: in words for a person, as problem details for a machine."""
+    return problems.nowhere() if request.path.startswith("/api/") else defaults.page_not_found(request, exception)
 
 
 def broken(request: HttpRequest) -> HttpResponse:

@@ -14,4 +14,5 @@ urlpatterns = [
     *(path("", include(f"{app}.urls")) for app in settings.PLANT_APPS if importlib.util.find_spec(f"{app}.urls") is not None),
 ]
 
+handler404 = "deploy.errors.missing"
 handler500 = "deploy.errors.broken"

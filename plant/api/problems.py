@@ -31,6 +31,11 @@ class Problem(Exception):
         return out
 
 
+def nowhere() -> HttpResponse:
+    """For an address below /api/ that isn't there."""
+    return Problem(404, "There is no such address. /api/openapi.json lists those there are.").answer()
+
+
 def away() -> HttpResponse:
     """While the database is away, for a moment as a rule."""
     words = "The database does not answer at the moment. Send the same again: nothing is taken twice."

@@ -15,5 +15,4 @@ urlpatterns = [
     path("api/w/<slug:code>/reports", views.report_list, name="reports"),
     path("api/w/<slug:code>/reports/<str:month>/<str:revision>", views.report, name="report"),
     path("api/w/<slug:code>/reports/<str:month>/<str:revision>/pdf", views.report_pdf, name="report_pdf"),
-    path("api/<path:rest>", views.nowhere, name="nowhere"),
 ]

@@ -162,8 +162,9 @@ def test_other_methods_and_addresses_are_problems_in_words(book, machine):
     answer = machine.delete(WORKS)
     assert (answer.status_code, answer["Allow"]) == (405, "GET, HEAD")
     for method in ("get", "put", "post", "delete"):
-        answer = getattr(machine, method)("/api/w/TST/anything/else")
-        assert (answer.status_code, answer["Content-Type"]) == (404, "application/problem+json")
+        for address in ("/api/w/TST/anything/else", "/api/w/%0AX/", "/api/w/a%2Fb/reports", "/api/x"):
+            answer = getattr(machine, method)(address)
+            assert (answer.status_code, answer["Content-Type"]) == (404, "application/problem+json"), address
 
 
 @pytest.mark.parametrize(("error", "status"), [(OperationalError, 503), (ZeroDivisionError, 500)])

@@ -103,8 +103,7 @@ def test_whoever_is_not_signed_in_is_sent_to_sign_in(works):
     wrong = {}
     for name, one, status, leads_to in walked(Client(), ALL, METHODS):
         if one.callback.permission in PUBLIC:
-            # Below /api/ whatever isn't there is not found, by anybody.
-            right = status in (200, 302, 405) or (status == 404 and one.name == "nowhere")
+            right = status in (200, 302, 405)
         else:
             right = status in (401, 403) or (status, leads_to) == (302, "/sign-in/")
         if not right:
