@@ -20,8 +20,9 @@ SEASON_BOUNDS = (0.6, 1.6)
 USUAL_ERROR = 0.15
 """Relative standard error of a forecast where the past is too short to tell (common practice, no source)."""
 FEWEST_PAST = 8
-BAND = 1.645
-"""Half-width of the band in standard errors: nine of ten, were the errors normal."""
+BAND = 1.895
+"""Half-width of the band in standard errors: nine of ten by Student's t for eight past weeks, the fewest that are used (t
+table, from memory). The weeks overlap, so many of them tell little more than eight."""
 
 
 @dataclass(frozen=True)

@@ -51,7 +51,7 @@ def supply(book: Book, at: dt.datetime, *, known: int | None = None, stated: Sta
     vessels = dosing.stock(book, at, known=known, stated=stated)
     calendar = stated.calendar(at)
     yesterday = calendar.day_of(at) - dt.timedelta(days=1)
-    history = _history(book, yesterday, known, stated)
+    history = history_of(book, yesterday, known, stated)
     orders = movements.orders(book, known=known)
     return [
         _one(
@@ -94,7 +94,7 @@ def by_vessel(products: Iterable[ProductSupply]) -> list[VesselStock]:
     return out
 
 
-def _history(book: Book, last: dt.date, known: int | None, stated: Stated) -> dict[str, dict[dt.date, DayUse]]:
+def history_of(book: Book, last: dt.date, known: int | None, stated: Stated) -> dict[str, dict[dt.date, DayUse]]:
     """Use per product and day. Points of one product add up by mass; the water is that of the point that treats most."""
     rows = dosing.comparison(book, last - dt.timedelta(days=PAST_DAYS), last, known=known, stated=stated)
     missing: dict[str, set[dt.date]] = {}
@@ -123,7 +123,7 @@ def _one(
     known: int | None,
     orders: Sequence[Order],
 ) -> ProductSupply:
-    made = forecast(history, yesterday, design=_design(stated, product, at))
+    made = forecast(history, yesterday, design=design_of(stated, product, at))
     usable = _sum(row.usable_active_kg for row in vessels)
     kg = _sum(row.dip_kg for row in vessels)
     remarks = []
@@ -160,7 +160,7 @@ def _sum(values: object) -> float | None:
     return sum(found) if found else None
 
 
-def _design(stated: Stated, product: Product, at: dt.datetime) -> Callable[[dt.date], float | None]:
+def design_of(stated: Stated, product: Product, at: dt.datetime) -> Callable[[dt.date], float | None]:
     """The design doses of a product's points added up, on any day, past or stated ahead."""
     points = [point.code for point in stated.dosing_points(at) if point.product == product.code]
     calendar = stated.calendar(at)

@@ -1,7 +1,7 @@
 """Does a month cost the same whatever the years behind it?
 
 Builds a works of 12 products and 40 lines a shift in a scratch database, first with one year of history, then with ten,
-and prints what the month's comparison, the stock and the newest readings cost beside the bare SQL that fetches the same
+and prints what the month's comparison, the stock and the pages of board, stock and dosing cost beside the bare SQL that fetches the same
 rows. Ratios of one run only; absolute times are shown but compare nothing.
 
     python tests/benchmarks/history.py [years ...]      (default: 1 10)
@@ -181,7 +181,38 @@ def report(book: Book, years: int, rows: int) -> dict[str, float]:
     ):
         took = {"kept": kept, "reckoned": reckoned, "stock": stock}[name]
         print(f"  {words:28} {took * 1000:7.0f} ms   {ratios[name]:5.1f} × bare SQL")
+    for path, took in pages(book, end).items():
+        print(f"  {path:28} {took * 1000:7.0f} ms   {took / floor:5.1f} × bare SQL")
     return ratios
+
+
+def pages(book: Book, now: dt.datetime) -> dict[str, float]:
+    """Seconds for the pages a person opens, as the test client gets them: view, template and all."""
+    from django.test import Client
+    from django.test.utils import override_settings
+
+    from plant.accounts.models import Person
+
+    person, _ = Person.objects.get_or_create(username="bench")
+    membership = Statement(
+        kind="membership", subject="bench", value={"role": "supervisor"}, effective_from=clock.BEGINNING, reason="benchmark"
+    )
+    ledger.append(book=book, client_id="member", kind="works", received={}, rows=[membership], by=None, now=now)
+    client = Client()
+    client.force_login(person, backend="django.contrib.auth.backends.ModelBackend")
+    real, clock.now = clock.now, lambda: now
+    out = {}
+    try:
+        with override_settings(ALLOWED_HOSTS=["testserver"]):
+            for path in ("", "stock/", "dosing/D0/", "dosing/D11/"):
+                address = f"/w/{book.code}/{path}"
+                answer = client.get(address)
+                if answer.status_code != 200:
+                    raise SystemExit(f"{address}: {answer.status_code}")
+                out[path or "board"] = timed(lambda address=address: client.get(address))
+    finally:
+        clock.now = real
+    return out
 
 
 def main() -> None:
