@@ -5,6 +5,7 @@ from __future__ import annotations
 import datetime as dt
 from collections.abc import Mapping
 from dataclasses import dataclass
+from typing import Any
 
 from plant import clock
 from plant.board import shown
@@ -53,7 +54,8 @@ def _words(
 ) -> str:
     label = labels.get(row.parameter, row.parameter.replace("_", " "))
     value = row.typed + (f" {row.typed_unit}" if row.typed_unit else "") if row.typed else "not taken"
-    before = row.supersedes.typed or "not taken" if row.supersedes is not None else ""
+    old: Any = row.supersedes
+    before = (old.typed or "not taken") if old is not None else ""
     what = {"late": f"{value}, entered late", "corrected": f"{before} → {value}", "voided": f"{before} voided"}[kind]
     who = str(row.entry.recorded_by or "a file at the shell")
     why = f": {row.reason}" if row.reason else f": {row.note.removeprefix('late: ')}" if row.note else ""

@@ -54,7 +54,7 @@ def test_a_photo_taken_without_a_network_goes_with_its_value_and_is_shown_beside
     walked.field(page, KEY).fill("8.1")
     page.click("#send")
     line.get_by_text("waiting to be sent").last.wait_for()
-    assert "1 photo" in page.inner_text("#queue-count")
+    page.wait_for_function("() => document.getElementById('queue-count').textContent.includes('1 photo')")
     assert Document.objects.count() == 0
     page.context.set_offline(False)
     line.get_by_text("1 photo in the book").wait_for(timeout=15_000)

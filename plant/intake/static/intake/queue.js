@@ -9,14 +9,14 @@ const list = document.getElementById("queue-list");
 
 export async function showQueue(works, act = {}) {
   const entries = (await drafts.waiting().catch(() => [])).filter((entry) => works === null || entry.works === works);
+  const pictures = (await drafts.photos().catch(() => [])).filter((photo) => works === null || photo.works === works).length;
   if (!place) return entries;
   place.hidden = false;
   const refused = entries.filter((entry) => entry.refused).length;
+  const beside = pictures ? `${pictures} photo${pictures === 1 ? "" : "s"}` : "";
   document.getElementById("queue-count").textContent = entries.length === 0
-    ? "nothing waiting"
-    : `${entries.length - refused} waiting to be sent${refused ? `, ${refused} refused` : ""}${oldest(entries)}`;
-  const pictures = (await drafts.photos().catch(() => [])).filter((photo) => works === null || photo.works === works).length;
-  if (pictures) document.getElementById("queue-count").append(`, ${pictures} photo${pictures === 1 ? "" : "s"}`);
+    ? beside ? `${beside} waiting to be sent` : "nothing waiting"
+    : `${entries.length - refused} waiting to be sent${refused ? `, ${refused} refused` : ""}${beside ? `, ${beside}` : ""}${oldest(entries)}`;
   list.replaceChildren(...entries.map((entry) => row(entry, act)));
   return entries;
 }
