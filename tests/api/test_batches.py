@@ -169,6 +169,12 @@ def test_too_large_is_refused_before_it_is_read(book, machine):
     assert answer["Content-Type"] == "application/problem+json"
 
 
+def test_a_body_of_no_stated_length_is_refused_in_words(book, machine):
+    answer = machine.put(f"/api/w/TST/batches/{uuid.uuid4()}", b"{}", headers={"Transfer-Encoding": "chunked"})
+    assert (answer.status_code, answer["Content-Type"]) == (413, "application/problem+json")
+    assert "Content-Length" in answer.json()["detail"]
+
+
 def test_only_json_is_read_and_only_a_uuid_is_an_id(book, machine):
     assert machine.put(f"/api/w/TST/batches/{uuid.uuid4()}", b"a=1", content_type="text/plain").status_code == 415
     for ident in ("1", "{" + str(uuid.uuid4())[1:-1] + "}", "urn:uuid:1", uuid.uuid4().hex):
