@@ -93,6 +93,15 @@ def sign_in(page: Page, site: str, username: str) -> None:
     page.context.add_cookies([{"name": "sessionid", "value": session.session_key, "url": site}])
 
 
+def faults(page: Page, viewport: dict[str, int], accessibility: Callable[[Page], list[str]]) -> list[str]:
+    """What is wrong with a page whatever it is about: no single heading, wider than the screen, or a finding of axe."""
+    found = [] if page.locator("h1").count() == 1 else ["not one h1"]
+    width = page.evaluate("document.documentElement.scrollWidth")
+    if width > viewport["width"]:
+        found.append(f"{width} wide")
+    return found + accessibility(page)
+
+
 @pytest.fixture
 def accessibility() -> Callable[[Page], list[str]]:
     """The serious and critical findings of axe-core on a page, one line each; none is what is wanted."""

@@ -24,12 +24,8 @@ def test_no_page_is_wider_than_the_screen_and_axe_finds_nothing(book, live_serve
     wrong = {}
     for path in PAGES:
         page.goto(f"{live_server.url}/w/TST/sheets/{path}")
-        assert page.locator("h1").count() == 1, path
-        width = page.evaluate("document.documentElement.scrollWidth")
-        if width > viewport["width"]:
-            wrong[path, "width"] = width
-        if found := accessibility(page):
-            wrong[path, "axe"] = found
+        if found := browser.faults(page, viewport, accessibility):
+            wrong[path] = found
     assert wrong == {}
 
 
