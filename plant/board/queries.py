@@ -8,6 +8,7 @@ from dataclasses import dataclass
 
 from plant.board import changed, line, missing, shown, things
 from plant.deviations import queries as deviations
+from plant.deviations import together
 from plant.deviations.queries import DeviationView
 from plant.dosing import queries as dosing
 from plant.ledger.models import Book
@@ -73,6 +74,7 @@ def board(at: access.At) -> Board:
         calendar=calendar,
         names=called,
         labels=labels,
+        hangs_on=together.chains(stated, now),
     )
     raised = {view.subject for view in open_now if view.kind == "missing"}
     absent = [one for one in missing.missing(stated, points, now) if one.site not in raised]

@@ -9,6 +9,7 @@ from dataclasses import dataclass
 from plant import clock
 from plant.board import shown
 from plant.deviations.queries import WORST_FIRST, DeviationView
+from plant.deviations.together import together
 
 AS_ONE = ("missing", "suspicious_reading")
 """Kinds of which many at once have one cause (a round not walked, a file of bad values)."""
@@ -83,21 +84,25 @@ def listed(
     calendar: clock.Calendar,
     names: Mapping[str, str],
     labels: Mapping[str, str],
+    hangs_on: Mapping[str, tuple[str, str]] | None = None,
 ) -> list[Thing]:
-    """Open deviations, worst and oldest first. The likeliest cause stands there in words; how likely it is does not."""
+    """Open deviations, worst and oldest first. The likeliest cause stands there in words; how likely it is does not.
+
+    ``hangs_on`` (deviations.together.chains) lets what one cause explains stand as one.
+    """
     ordered = sorted(views, key=lambda view: (WORST_FIRST.get(view.level, 9), view.since, view.ref))
     things: list[Thing] = []
     grouped: dict[tuple[str, str], list[DeviationView]] = {}
     for view in ordered:
         if view.kind in AS_ONE:
             grouped.setdefault((view.kind, view.level), []).append(view)
-    for view in ordered:
-        many = grouped.get((view.kind, view.level), [view])
-        if len(many) > 1:
-            if view is many[0]:
-                things.append(_as_one(many, code, now, calendar, names, labels))
-            continue
-        things.append(_one(view, code, now, calendar, names, labels))
+    for group in together(ordered, hangs_on or {}):
+        view = group[0]
+        many = grouped.get((view.kind, view.level), group)
+        if len(many) == 1:
+            things.append(_one(view, code, now, calendar, names, labels))
+        elif view is many[0]:
+            things.append(_as_one(many, code, now, calendar, names, labels))
     return things
 
 
@@ -148,14 +153,15 @@ def _as_one(
     labels: Mapping[str, str],
 ) -> Thing:
     first = min(many, key=lambda view: view.since)
-    words = "values are missing" if first.kind == "missing" else "doubtful readings"
+    cause = CAUSES.get(many[0].likely_causes[0], "") if first.kind not in AS_ONE and many[0].likely_causes else ""
+    words = {"missing": "values are missing", "suspicious_reading": "doubtful readings"}.get(first.kind, "signs of one cause")
     return Thing(
-        level=first.level,
+        level=many[0].level,
         title=f"{len(many)} {words}",
         found="",
         since=shown.moment(first.since, now, calendar),
         who="nobody yet" if any(view.state == "raised" for view in many) else _who(first),
-        cause="",
+        cause=cause,
         path=f"/w/{code}/deviations/",
         parts=tuple(": ".join(part for part in (subject_words(view, names, labels), view.sentence) if part) for view in many),
         telling=_telling(many, now, calendar),

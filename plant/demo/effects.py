@@ -11,6 +11,8 @@ from plant.demo.plan import Incident, Plan
 
 KINDS = {
     "feeder_drift": "the feeder gives more (or less) by ``size`` a day, until somebody recalibrates it",
+    "feeder_ramp": "the feeder gives ``size`` more (or less) after two thirds of the time, and goes on so until mended",
+    "feeder_step": "the feeder gives ``size`` more (or less) from one hour to the next, until mended",
     "feeder_stop": "the feeder gives only the share ``size``",
     "weak_lot": "the next load holds only the share ``size`` of what its certificate says",
     "leak": "``size`` kg an hour leave the tank besides the feed",
@@ -21,6 +23,7 @@ KINDS = {
     "unbooked_delivery": "the next load is not booked, or booked only ``size`` days later",
     "wrong_booking": "the next load is booked as ``size`` times its quantity and corrected the day after",
     "raw_water_change": "calcium rises by ``size`` mg/L and alkalinity with it",
+    "demand_change": "the water takes ``size`` mg/L more chlorine within a day",
     "late_entry": "the rounds are written down ``size`` days later, from paper",
     "meter_error": "the treated water meter counts the share ``size``",
     "meter_change": "the meter is exchanged; the new one starts at ``size``",
@@ -53,6 +56,13 @@ def effects(plan: Plan, grid: Grid, incidents: list[Incident]) -> Effects:
             slope = incident.size * (hours - start) / 24
             gain = out.gain.setdefault(incident.subject, ones)
             gain *= np.where(during, 1 + slope, 1.0)
+        elif incident.what in ("feeder_ramp", "feeder_step"):
+            whole = (end - start) * 2 / 3 if incident.what == "feeder_ramp" else 1.0
+            reached = incident.size * np.clip((hours - start) / whole, 0, 1)
+            out.gain[incident.subject] = out.gain.get(incident.subject, ones) * np.where(during, 1 + reached, 1.0)
+        elif incident.what == "demand_change":
+            ramp = incident.size * np.clip((hours - start) / 12, 0, 1) * np.clip((end - hours) / 12, 0, 1)
+            out.water["chlorine_demand"] = out.water.get("chlorine_demand", 0.0) + ramp
         elif incident.what in ("feeder_stop", "out_of_service"):
             share = incident.size if incident.what == "feeder_stop" else 0.0
             out.gain.setdefault(incident.subject, ones)[during] *= share

@@ -49,6 +49,9 @@ class Feed:
     ``wants`` names what the dose follows (a key of water.wanted). ``product``, ``tank`` and ``point`` are the
     blocks of the works file. ``day_tank`` is filled from the tank each morning. ``refill``: "delivery" by load, or
     "change" of the container on the scale. ``feed_meter_sd`` (share) where a feed meter counts the product.
+    ``wander`` and ``scatter`` are the feeder's slow and its day-by-day unsteadiness (shares); ``follows`` is how far
+    the operators go from the design dose towards what the water asks for; ``restated``: whether the design dose is
+    stated anew when the water has moved away from it.
     """
 
     wants: str
@@ -61,6 +64,9 @@ class Feed:
     day_tank: Block | None = None
     feed_meter_sd: float = 0.0
     wander: float = 0.008
+    scatter: float = 0.0
+    follows: float = 0.2
+    restated: bool = True
     opening_share: float = 0.6
     feeder_unit: str = "%"
 

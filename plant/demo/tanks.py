@@ -12,7 +12,6 @@ from plant.demo.effects import Effects
 from plant.demo.plan import Block, Feed, Incident
 
 _FILL_AT = 8
-_SHARE_OF_DESIGN = 0.8
 _RESTATE_BEYOND = 0.03
 _LATEST_DELIVERY, _EARLIEST_DELIVERY = 13, 9
 
@@ -140,7 +139,10 @@ def run(
     nominal = float(products.fraction_of_product(feed.product))
     wanted = grid.daily(wanted_mg_l) / np.diff(grid.day_edges)
     designs, desired = _doses(feed, grid, wanted)
+    day_of_hour = np.clip(np.searchsorted(grid.day_edges, np.arange(grid.hours), side="right") - 1, 0, grid.days - 1)
     gain = _wander(grid.hours, feed.wander, rng) * effect.gain.get(feed.code, 1.0)
+    if feed.scatter:
+        gain = gain * np.exp(rng.normal(0.0, feed.scatter, grid.days))[day_of_hour]
     tank = _Tank(feed.tank, feed.product, grid.hours, 0.0, nominal)
     tank.kg = tank.heel + feed.opening_share * (tank.capacity - tank.heel)
     day = _Tank(feed.day_tank, feed.product, grid.hours, 0.0, nominal) if feed.day_tank else None
@@ -158,7 +160,6 @@ def run(
         designs=designs,
     )
     leaks = {item: effect.leak_kg_h.get(item.block["code"]) for item in (tank, day) if item is not None}
-    day_of_hour = np.clip(np.searchsorted(grid.day_edges, np.arange(grid.hours), side="right") - 1, 0, grid.days - 1)
     for hour in range(grid.hours):
         if grid.local_hour[hour] == 0:
             for item in leaks:
@@ -186,13 +187,13 @@ def _doses(feed: Feed, grid: Grid, wanted: np.ndarray) -> tuple[list[tuple[int, 
     designs = [(0, design)]
     desired = np.zeros(grid.days)
     for day in range(grid.days):
-        if day > 13 and grid.date(day).day in (1, 15):
+        if feed.restated and day > 13 and grid.date(day).day in (1, 15):
             recent = float(wanted[day - 14 : day].mean())
             if abs(recent / design - 1) > _RESTATE_BEYOND:
                 design = _tidy(recent)
                 designs.append((day, design))
         before = float(wanted[max(day - 1, 0)])
-        desired[day] = _SHARE_OF_DESIGN * design + (1 - _SHARE_OF_DESIGN) * before
+        desired[day] = design + feed.follows * (before - design)
     return designs, desired
 
 

@@ -15,7 +15,7 @@ from plant.ledger import verify
 from plant.ledger.models import Entry
 from plant.works import described
 from tests.deviations import world
-from tests.deviations.test_judging import FIRST, LOW, on_entry
+from tests.deviations.world import FIRST, LOW, on_entry
 
 pytestmark = pytest.mark.django_db
 

@@ -15,7 +15,7 @@ from plant.ledger.models import Book, Entry
 from plant.readings.models import Reading, Settlement
 from tests import people
 from tests.deviations import world
-from tests.deviations.test_judging import FIRST, LOW, on_entry
+from tests.deviations.world import FIRST, LOW, on_entry
 
 pytestmark = pytest.mark.django_db
 TELL = """
@@ -230,7 +230,8 @@ class TestLateAndCorrected:
 
 class TestMoments:
     def test_what_was_so_at_noon_stays_said_when_the_evening_brings_a_delivery(self) -> None:
-        from tests.deviations.test_judging import TestStock, limit
+        from tests.deviations.test_judging_doses import TestStock
+        from tests.deviations.world import limit
 
         book = world.open_works(limit("days_of_supply", vessel="NAOH-TANK", low=14))
         world.history(book, FIRST, 8)

@@ -16,8 +16,8 @@ from plant.ledger.models import Book
 from plant.works import kinds
 from tests import people
 from tests.deviations import world
-from tests.deviations.test_judging import FIRST
 from tests.deviations.test_life import TELL
+from tests.deviations.world import FIRST
 
 pytestmark = pytest.mark.django_db
 LIST = "/w/DEV/deviations/"

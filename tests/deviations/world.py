@@ -9,6 +9,9 @@ import random
 from collections.abc import Callable
 from zoneinfo import ZoneInfo
 
+from plant import clock
+from plant.deviations import actions, queries
+from plant.deviations.queries import DeviationView
 from plant.ledger import actions as ledger
 from plant.ledger.models import Book
 from plant.readings.models import Reading
@@ -17,6 +20,7 @@ from tests import people
 
 ZONE = ZoneInfo("Europe/Berlin")
 OPENED = dt.datetime(2025, 12, 31, 5, 0, tzinfo=dt.UTC)
+FIRST = dt.date(2026, 2, 2)
 _ids = itertools.count(1)
 
 WORKS = """
@@ -79,6 +83,17 @@ dose_mg_per_L = 10.0
 effective_from = 2026-01-01T07:00:00
 """
 """10 mg/L NaOH in 12 ML a day is 120 kg, 480 kg of product, 384 L, 0.384 m of level: more than 5 % of the tank."""
+
+LOW = """
+[[limit]]
+code = "chlorine-low"
+sample_point = "ENTRY"
+parameter = "free_chlorine"
+kind = "bound"
+level = "action"
+low = 0.30
+unit = "mg/L"
+"""
 
 LITRES_A_DAY = 384.0
 M3_A_DAY = 12000.0
@@ -176,3 +191,25 @@ def history(
                             )
                         )
     enter(book, *rows, now=now or dt.datetime.combine(first + dt.timedelta(days=days), dt.time(12), dt.UTC))
+
+
+def limit(kind: str, level: str = "alert", **keys: object) -> str:
+    lines = [f'{key} = "{value}"' if isinstance(value, str) else f"{key} = {value}" for key, value in keys.items()]
+    return "\n".join(["[[limit]]", f'code = "own-{kind}"', f'kind = "{kind}"', f'level = "{level}"', *lines, ""])
+
+
+def on_entry(kind: str, parameter: str = "free_chlorine", **keys: object) -> str:
+    return limit(kind, sample_point="ENTRY", parameter=parameter, **keys)
+
+
+def judged(book: Book, first: dt.date, last: dt.date | None = None, now: dt.datetime | None = None) -> list[DeviationView]:
+    """Judges the days after their end and gives what there is, without what is only missing."""
+    last = last or first
+    now = now or dt.datetime.combine(last + dt.timedelta(days=1), dt.time(12), dt.UTC)
+    actions.judge(book=book, days=clock.days(first, last), now=now)
+    found = queries.between(book, first, last)
+    return [view for view in found if view.kind != "missing"]
+
+
+def kinds(views: list[DeviationView]) -> list[str]:
+    return [view.kind for view in views]

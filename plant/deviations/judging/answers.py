@@ -66,16 +66,16 @@ def drift_of_answer(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
 
 
 def _material(day: Day, point: DosingPoint, name: str) -> float:
-    """How far the reading must have moved to matter: a tenth of a pH unit, a twelfth of the design dose for a residual, 5 %
-    of itself otherwise. Smaller changes are real and nobody’s business (common practice, no source).
+    """How far the reading must have moved to matter: 0.15 of a pH unit, a twelfth of the design dose for a residual, 8 % of
+    itself otherwise. Smaller changes are real and nobody’s business (common practice, no source).
     """
     if name == "pH":
-        return 0.1
+        return 0.15
     design = day.stated.design_dose_mg_l(point.code, day.moment)
     if design and name in RESIDUAL_OF.values():
         return design / 12
     known = clues.daily_medians(day, point.sample_point or "", name, 20).values()
-    return 0.05 * abs(median(known)) if known else math.inf
+    return 0.08 * abs(median(known)) if known else math.inf
 
 
 def answer_sign(point: DosingPoint, product: Product) -> int:

@@ -15,8 +15,8 @@ from plant.dosing.figures import DayDose
 from plant.works.described import DosingPoint, Limit
 from plant.works.stated import NotStated
 
-LEAST_RATIO, MOST_RATIO = -0.05, 3.0
-"""Outside of these a day is no drift but a reading or a delivery to be settled; the limit against design speaks of it."""
+LEAST_RATIO, MOST_RATIO = doses.PLAUSIBLE
+"""Outside of these a day is no drift; the limit against design speaks of it."""
 STATED_SDS = 2.0
 DEFAULT_SDS = 3.5
 MATERIAL = 0.04

@@ -6,7 +6,7 @@ import datetime as dt
 from collections.abc import Iterator
 
 from chemistry import errors, units
-from plant.deviations import defaults, findings
+from plant.deviations import clues, defaults, findings
 from plant.deviations.evidence import Day
 from plant.deviations.findings import Finding
 from plant.deviations.rules import stocks
@@ -17,6 +17,8 @@ from plant.works.described import Limit, Product
 from plant.works.stated import NotStated
 
 LOT_DAYS = 800
+USUAL_DAYS = 35
+"""How far back a feeder's word is held against the dips to learn how far it is off."""
 NO_WITNESS = "no second witness"
 
 
@@ -50,7 +52,7 @@ def stock_loss(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
             # Then the book stands on the doses before, and can say nothing that the drift of the dose does not say better.
             continue
         loss = stocks.loss(item.book_kg, item.dip_kg, item.difference_sd_kg, sigmas=sigmas)
-        if loss is None:
+        if loss is None or (defaults.is_default(limit.code) and _as_always(day, item, loss, sigmas)):
             continue
         word = "less" if loss.kg > 0 else "more"
         stands = next((remark for remark in item.remarks if "book stands on" in remark), "")
@@ -66,6 +68,24 @@ def stock_loss(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
             sentence=f"{abs(loss.kg):.0f} kg {word} in the vessel than the book says" + (f"; {stands}" if stands else ""),
             size=-loss.kg,
         )
+
+
+def _as_always(day: Day, item: VesselStock, loss: stocks.Loss, sigmas: float) -> bool:
+    """Whether the feeder's word is off by no more than it usually is, or nobody can tell yet what is usual."""
+    points = [point for point in day.stated.dosing_points(day.moment) if item.vessel in point.vessels]
+    if len(points) != 1:
+        return False
+    code = points[0].code
+    said = clues.daily_medians(day, code, "drawdown", USUAL_DAYS) or clues.daily_medians(
+        day, code, "feeder_setting", USUAL_DAYS
+    )
+    rows = [row for row in day.rows(code)[-USUAL_DAYS:] if row.expected and row.day in said]
+    pairs = [(row.product_kg.value, said[row.day]) for row in rows if row.product_kg.value is not None]
+    found = stocks.against_usual(pairs, own_sd_kg=item.difference_sd_kg or 0.0)
+    if found is None:
+        return True
+    off, sd = found
+    return off * loss.kg <= 0 or abs(off) <= sigmas * sd
 
 
 def _silo_by_level(day: Day, code: str) -> bool:

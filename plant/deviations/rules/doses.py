@@ -6,6 +6,9 @@ import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+PLAUSIBLE = (-0.05, 3.0)
+"""Of the reference: outside of it a day is a reading or a delivery to be settled, and no part of a mean of days."""
+
 
 @dataclass(frozen=True)
 class Dosed:
@@ -48,7 +51,7 @@ def difference(rows: Sequence[Dosed], *, to: str, weak_days: int = 7) -> Differe
         return None
     chosen = [rows[-1]]
     if rows[-1].weak:
-        chosen = [row for row in rows[-weak_days:] if _complete(row, to)]
+        chosen = [row for row in rows[-weak_days:] if _complete(row, to) and (row is rows[-1] or _plausible(row, to))]
         if len(chosen) < min(weak_days, 5):
             return None
     volume = sum(row.volume_ml or 0.0 for row in chosen)
@@ -73,6 +76,12 @@ def difference(rows: Sequence[Dosed], *, to: str, weak_days: int = 7) -> Differe
 def _complete(row: Dosed, to: str) -> bool:
     reference = row.design if to == "design" else row.need
     return row.used is not None and row.active_kg is not None and bool(row.volume_ml) and reference is not None
+
+
+def _plausible(row: Dosed, to: str) -> bool:
+    """Whether a day can be a mean's part: half of a pair that gives back what the other took would spoil it."""
+    reference = row.design if to == "design" else row.need
+    return row.used is not None and bool(reference) and PLAUSIBLE[0] <= row.used / reference <= PLAUSIBLE[1]
 
 
 def off_by(found: Difference, *, pct: float, sds: float = 2.0) -> bool:

@@ -19,7 +19,7 @@ MOST_DAYS = 36
 NEWEST_DAYS = 8
 WINDOW = 6
 LASTING_SD = 2.0
-HEDGE = 1.15
+HEDGE = 1.3
 """A scatter learnt from four weeks may be too small; it is taken a little larger (common practice, no source)."""
 MOST_MEMORY = 0.8
 
@@ -67,6 +67,7 @@ def watch(values: Sequence[float], *, mean_days_between_false_alarms: float) -> 
         mean_days_between_false_alarms=mean_days_between_false_alarms,
         lasting_sd=LASTING_SD * drift.PRIOR_SD,
         window=WINDOW,
+        least_size=0.0,
     )
     if shift is None:
         return None

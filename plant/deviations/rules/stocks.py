@@ -3,7 +3,10 @@
 from __future__ import annotations
 
 import datetime as dt
+import math
+from collections.abc import Sequence
 from dataclasses import dataclass
+from statistics import median
 
 
 @dataclass(frozen=True)
@@ -22,6 +25,28 @@ def loss(book_kg: float | None, dip_kg: float | None, sd_kg: float | None, *, si
         return None
     kg = book_kg - dip_kg
     return Loss(kg, abs(kg) / sd_kg) if abs(kg) > sigmas * sd_kg else None
+
+
+USUAL_LEAST_DAYS = 10
+WEEK = 7
+
+
+def against_usual(days: Sequence[tuple[float, float]], *, own_sd_kg: float) -> tuple[float, float] | None:
+    """What was used in the last seven days beyond what the feeder's word usually means (kg, and its standard deviation).
+
+    ``days`` are pairs (used by the dips in kg, what the feeder said in any unit), oldest first. A setting read off a feeder
+    that follows the flow is off by the same share every day; only what departs from that is a loss. What is usual is the
+    median of the days before those seven. None with too few days for it (common practice, no source).
+    """
+    before = [used / said for used, said in days[:-WEEK] if said > 0]
+    if len(before) < USUAL_LEAST_DAYS:
+        return None
+    share = median(before)
+    spread = 1.4826 * median(abs(item - share) for item in before)
+    newest = days[-WEEK:]
+    said = sum(item for _, item in newest)
+    off = sum(used for used, _ in newest) - share * said
+    return off, math.hypot(own_sd_kg, spread * said * math.sqrt(1 / len(newest) + 1 / len(before)))
 
 
 def supply_low(days: float | None, low: float) -> bool:
