@@ -30,6 +30,8 @@ BLOCK_DAYS = 31
 """Days judged from one fetch; a longer span is cut, so that memory does not grow with it."""
 OWN_KINDS = ("review", "deviation")
 LATE = dt.timedelta(hours=48)
+LONGEST_TRIAL_DAYS = 396
+"""Thirteen months: a running annual mean and the month before it."""
 TRIES = 3
 HOW = ("telephone", "e-mail", "in person", "letter", "form")
 
@@ -163,16 +165,16 @@ def _correctors(evidence: Evidence, row: Deviation, day: dt.date) -> list[str]:
 def try_limit(*, book: Book, limit: described.Limit, first: dt.date, last: dt.date, now: dt.datetime) -> list[Finding]:
     """When a limit that is not stated yet would have been crossed on past days: the first day of each episode.
 
-    Writes nothing. At most 366 days; raises NotPossible for more.
+    Writes nothing. At most 13 months; raises NotPossible for more.
     """
     days = clock.days(first, last)
-    if len(days) > 366:
-        raise NotPossible("a draft limit is tried on at most a year at a time")
+    if len(days) > LONGEST_TRIAL_DAYS:
+        raise NotPossible("a draft limit is tried on at most 13 months at a time")
     stated = works.stated(book)
     known: list[episodes.Episode] = []
     firsts: list[Finding] = []
     for block in _blocks(days):
-        evidence = gather(book, stated, block[0], block[-1], now=now)
+        evidence = gather(book, stated, block[0], block[-1], now=now, with_doses=limit.kind not in judging.OF_READINGS)
         for on in block:
             day = evidence.day(on)
             found = judging.judge_day(day, limit)

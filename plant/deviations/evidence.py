@@ -121,15 +121,25 @@ class Evidence:
 
 
 def gather(
-    book: Book, stated: Stated, first: dt.date, last: dt.date, *, now: dt.datetime, known: int | None = None
+    book: Book,
+    stated: Stated,
+    first: dt.date,
+    last: dt.date,
+    *,
+    now: dt.datetime,
+    known: int | None = None,
+    with_doses: bool = True,
 ) -> Evidence:
-    """Fetches what judging the days first to last needs. Raises NotStated for an empty works."""
+    """Fetches what judging the days first to last needs. Raises NotStated for an empty works.
+
+    ``with_doses`` False leaves doses out, which cost most, where only limits on readings are asked about.
+    """
     calendar = stated.calendar(now)
     start = calendar.start_of(first - dt.timedelta(days=READING_DAYS))
     end = calendar.bounds(last)[1]
     began = readings.first_taken_at(book, known=known)
     doses: list[DayDose] = []
-    if began is not None and any(True for _ in stated.subjects("dosing_point")):
+    if with_doses and began is not None and any(True for _ in stated.subjects("dosing_point")):
         back = max(first - dt.timedelta(days=DOSE_DAYS), calendar.day_of(began))
         if back <= last:
             doses = dosing.comparison(book, back, last, known=known, stated=stated)

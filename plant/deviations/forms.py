@@ -12,7 +12,8 @@ from plant.deviations import actions, words
 from plant.works import blocks, kinds
 from plant.works.stated import Stated
 
-LONGEST_TRIAL_DAYS = 62
+TRIAL_SPANS = [(31, "month"), (62, "2 months"), (92, "3 months"), (183, "6 months"), (366, "year"), (396, "13 months")]
+"""How far back a draft limit may be tried: (days, the last ...)."""
 
 
 class StepForm(forms.Form):
@@ -89,7 +90,7 @@ class DraftForm(forms.Form):
     subject = forms.ChoiceField(label="At")
     parameter = forms.CharField(label="Parameter", required=False, max_length=40)
     unit = forms.CharField(label="Unit", required=False, max_length=24)
-    days = forms.IntegerField(label="Over the last days", min_value=1, max_value=LONGEST_TRIAL_DAYS, initial=31)
+    days = forms.TypedChoiceField(label="Over the last", coerce=int, choices=TRIAL_SPANS, initial=31)
     low = forms.FloatField(required=False)
     high = forms.FloatField(required=False)
     limit = forms.FloatField(required=False)

@@ -110,5 +110,19 @@ def test_a_draft_limit_is_tried_and_nothing_is_written() -> None:
     found = actions.try_limit(book=book, limit=draft, first=FIRST, last=FIRST + dt.timedelta(days=6), now=now)
     assert [(item.day.day, item.value) for item in found] == [(2, "0.42 mg/L"), (6, "0.4 mg/L")]
     assert Entry.objects.count() == entries
-    with pytest.raises(actions.NotPossible, match="a year at a time"):
+    with pytest.raises(actions.NotPossible, match="13 months"):
         actions.try_limit(book=book, limit=draft, first=FIRST, last=FIRST + dt.timedelta(days=400), now=now)
+
+
+def test_a_draft_limit_is_tried_over_thirteen_months_and_no_more() -> None:
+    book = world.open_works()
+    now = world.local("2026-02-03T12:00")
+    world.chlorine(book, [("2025-01-04T08:00", "0.12"), ("2026-02-02T08:00", "0.10")], now=now)
+    draft = described.limit(
+        "draft", {"sample_point": "ENTRY", "parameter": "free_chlorine", "kind": "bound", "level": "alert", "low": 0.3}
+    )
+    last = dt.date(2026, 2, 2)
+    found = actions.try_limit(book=book, limit=draft, first=last - dt.timedelta(days=395), last=last, now=now)
+    assert [item.day.isoformat() for item in found] == ["2025-01-04", "2026-02-02"]
+    with pytest.raises(actions.NotPossible, match="13 months"):
+        actions.try_limit(book=book, limit=draft, first=last - dt.timedelta(days=396), last=last, now=now)

@@ -152,3 +152,18 @@ def test_memory_of_independent_and_of_lasting_values() -> None:
     for _ in range(400):
         lasting.append(0.6 * lasting[-1] + rng.gauss(0, 1))
     assert response.memory(lasting) == pytest.approx(0.6, abs=0.15)
+
+
+def test_what_one_wrong_reading_took_is_shared_evenly() -> None:
+    days = [drift.Day(0.0, 0.01) for _ in range(6)]
+    days[2], days[3] = drift.Day(0.4, 0.01), drift.Day(-0.36, 0.01)
+    assert [round(day.off, 3) for day in drift.evened(days, 0.0, 0.035)] == [0, 0, 0.02, 0.02, 0, 0]
+    # A real change of that size gives nothing back.
+    days[3] = drift.Day(0.38, 0.01)
+    assert drift.evened(days, 0.0, 0.035) == days
+
+
+def test_a_fine_gauge_and_a_steady_feeder_still_show_a_large_change() -> None:
+    rng = random.Random(2)
+    days = [drift.Day(rng.gauss(0, 0.008) + (0.18 if n >= 50 else 0.0)) for n in range(53)]
+    assert {51, 52} <= set(on_days(days))

@@ -364,3 +364,28 @@ def test_next_business_day_passes_over_the_weekend_and_holidays() -> None:
     assert due_dates.next_business_day(friday) == dt.date(2026, 4, 6)
     assert due_dates.next_business_day(friday, frozenset({dt.date(2026, 4, 6)})) == dt.date(2026, 4, 7)
     assert due_dates.monthly_report(2026, 12) == dt.date(2027, 1, 10)
+
+
+def test_a_feeders_word_that_is_always_off_by_a_tenth_is_no_loss() -> None:
+    # The feeder says 10 a day and 11 kg are used; in the last week as before.
+    usual = [(11.0, 10.0)] * 25
+    found = stocks.against_usual(usual, own_sd_kg=1.0)
+    assert found is not None
+    assert found == pytest.approx((0.0, 1.0))
+    # 14 kg a day in the last four days: 12 kg beyond what its word usually means.
+    found = stocks.against_usual([*usual[:21], *[(14.0, 10.0)] * 4], own_sd_kg=1.0)
+    assert found is not None
+    assert found[0] == pytest.approx(12.0)
+    assert stocks.against_usual(usual[:16], own_sd_kg=1.0) is None
+
+
+def test_a_wrong_day_does_not_spoil_the_mean_of_the_week_after() -> None:
+    day = doses.Dosed(10.0, 0.1, 10.0, None, 1.0, 10.0, 40.0, True)
+    wrong = doses.Dosed(-60.0, 0.1, 10.0, None, 1.0, -60.0, -240.0, True)
+    found = doses.difference([wrong, *[day] * 6], to="design")
+    assert found is not None
+    assert (found.pct, found.days) == (0.0, 6)
+    # On its own day it is what is looked at.
+    found = doses.difference([*[day] * 6, wrong], to="design")
+    assert found is not None
+    assert found.pct == pytest.approx(-100.0)

@@ -45,6 +45,9 @@ RULES: dict[str, Rule] = {
 OF_WATER = frozenset({"bound", "held_below", "held_above", "rate_of_change", "stuck", "missing"})
 """Kinds that say nothing while the works is off: what stands in the pipes is no process value."""
 
+OF_READINGS = frozenset({"bound", "held_below", "held_above", "share_of_month", "running_mean", "rate_of_change", "missing"})
+"""Kinds that need no doses to be judged."""
+
 
 def limits_of(day: Day) -> list[tuple[Limit, str]]:
     """All limits that hold for the day, stated ones and defaults, each with the ref of its statement."""
