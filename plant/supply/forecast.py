@@ -138,16 +138,17 @@ def _past_errors(history: History, made_on: dt.date, design: Design) -> tuple[tu
     errors: list[list[float]] = [[] for _ in range(6)]
     for weeks in range(1, 53):
         then = made_on - dt.timedelta(days=7 * weeks)
-        known = {day: use for day, use in history.items() if day <= then}
-        expected = _expected(known, then, 42, design)
+        # Nothing after ``then`` is looked at: the recent days lie before it, and last year's of six weeks ahead do too.
+        expected = _expected(history, then, 42, design)
         if expected is None:
             break
+        came = said = 0.0
         for ahead in range(1, 7):
-            days = [then + dt.timedelta(days=n) for n in range(1, 7 * ahead + 1)]
+            days = [then + dt.timedelta(days=n) for n in range(7 * ahead - 6, 7 * ahead + 1)]
             if days[-1] > made_on or any(day not in history for day in days):
-                continue
-            came = math.fsum(history[day].active_kg for day in days)
-            said = math.fsum(expected[0][: 7 * ahead])
+                break
+            came += math.fsum(history[day].active_kg for day in days)
+            said += math.fsum(expected[0][7 * ahead - 7 : 7 * ahead])
             if came > 0 and said > 0:
                 errors[ahead - 1].append(came / said - 1)
     if len(errors[0]) < FEWEST_PAST:

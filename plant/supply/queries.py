@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import datetime as dt
 import functools
+from collections import OrderedDict
 from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, replace
 
@@ -14,7 +15,7 @@ from plant.dosing.figures import VesselStock
 from plant.dosing.reckoning import capacity
 from plant.ledger.models import Book
 from plant.stock import queries as movements
-from plant.stock.models import Order
+from plant.stock.models import Delivery, Order
 from plant.supply.forecast import DayUse, Forecast, forecast
 from plant.supply.window import Placed, Terms, Window, window
 from plant.works import queries as works
@@ -45,25 +46,45 @@ class ProductSupply:
     remarks: tuple[str, ...] = ()
 
 
+_kept: OrderedDict[tuple[object, ...], list[ProductSupply]] = OrderedDict()
+KEEP = 64
+KEEP_FOR = dt.timedelta(minutes=10)
+
+
 def supply(book: Book, at: dt.datetime, *, known: int | None = None, stated: Stated | None = None) -> list[ProductSupply]:
-    """Every product in force at a moment, in the order stated."""
+    """Every product in force at a moment, in the order stated.
+
+    Kept by this process until the book's head moves, for ten minutes at most: in that time only decay moves it, by less than
+    what is printed.
+    """
+    # Asked of the database: the book at hand may have been read before the entry that is to be seen.
+    head = Book.objects.values_list("head_seq", "head_hash").get(pk=book.pk)
+    key = (book.pk, book.code, *head, known, int(at.timestamp() // KEEP_FOR.total_seconds()))
+    if key not in _kept:
+        _kept[key] = _reckoned(book, at, known, stated)
+        while len(_kept) > KEEP:
+            _kept.popitem(last=False)
+    return _kept[key]
+
+
+def _reckoned(book: Book, at: dt.datetime, known: int | None, stated: Stated | None) -> list[ProductSupply]:
     stated = stated or works.stated(book, known=known)
     vessels = dosing.stock(book, at, known=known, stated=stated)
     calendar = stated.calendar(at)
     yesterday = calendar.day_of(at) - dt.timedelta(days=1)
     history = history_of(book, yesterday, known, stated)
     orders = movements.orders(book, known=known)
+    loads = movements.deliveries(book, start=at - dt.timedelta(days=365), end=at, known=known)
     return [
         _one(
-            book,
             stated,
             product,
             at,
             yesterday,
             history.get(product.code, {}),
             tuple(row for row in vessels if row.product == product.code),
-            known,
             [order for order in orders if order.product == product.code],
+            loads,
         )
         for product in stated.products(at)
     ]
@@ -113,15 +134,14 @@ def history_of(book: Book, last: dt.date, known: int | None, stated: Stated) -> 
 
 
 def _one(
-    book: Book,
     stated: Stated,
     product: Product,
     at: dt.datetime,
     yesterday: dt.date,
     history: dict[dt.date, DayUse],
     vessels: tuple[VesselStock, ...],
-    known: int | None,
     orders: Sequence[Order],
+    loads: Sequence[Delivery],
 ) -> ProductSupply:
     made = forecast(history, yesterday, design=design_of(stated, product, at))
     usable = _sum(row.usable_active_kg for row in vessels)
@@ -136,7 +156,7 @@ def _one(
     placed = [Placed(order.expected_on, order.quantity_kg) for order in orders if order.expected_on >= today]
     remarks += [f"on order: {order}" + ("; overdue, not counted on" if order.expected_on < today else "") for order in orders]
     lasts = None if made is None or usable is None else made.lasts_days(usable)
-    price, currency = _price(book, product, at, known)
+    price, currency = _price(loads, product)
     return ProductSupply(
         product=product.code,
         name=product.name,
@@ -214,11 +234,11 @@ def _window(
     return window(today=today, usable_kg=usable / share, room_kg=room, terms=terms, use_kg=use_kg, placed=placed)
 
 
-def _price(book: Book, product: Product, at: dt.datetime, known: int | None) -> tuple[float | None, str]:
+def _price(loads: Iterable[Delivery], product: Product) -> tuple[float | None, str]:
     """Price per delivered active kilogram over the last year, by what the certificates say was in the loads."""
     paid = mass = 0.0
     currency = ""
-    for delivery in movements.deliveries(book, start=at - dt.timedelta(days=365), end=at, known=known):
+    for delivery in loads:
         if delivery.product != product.code or delivery.cost is None:
             continue
         if currency and delivery.currency != currency:

@@ -192,6 +192,7 @@ def pages(book: Book, now: dt.datetime) -> dict[str, float]:
     from django.test.utils import override_settings
 
     from plant.accounts.models import Person
+    from plant.supply import queries as supply
 
     person, _ = Person.objects.get_or_create(username="bench")
     membership = Statement(
@@ -210,6 +211,7 @@ def pages(book: Book, now: dt.datetime) -> dict[str, float]:
                 if answer.status_code != 200:
                     raise SystemExit(f"{address}: {answer.status_code}")
                 out[path or "board"] = timed(lambda address=address: client.get(address))
+            out["stock/ after an entry"] = timed(lambda: (supply._kept.clear(), client.get(f"/w/{book.code}/stock/")))
     finally:
         clock.now = real
     return out
