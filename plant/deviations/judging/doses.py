@@ -21,6 +21,8 @@ STATED_SDS = 2.0
 DEFAULT_SDS = 3.5
 MATERIAL = 0.04
 """A lasting change of less than 4 % may be sure and is still nobody's business (common practice, no source)."""
+OF_ACCEPTED = 0.8
+"""The dose's share of the false alarms that the works accepts of a point; the rest is left to the reading that answers."""
 CALIBRATION_SD = 0.02
 """What a feeder's calibration leaves as a standing difference from design (common practice, no source)."""
 
@@ -131,7 +133,7 @@ def drift_of_dose(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
     if not kept or kept[-1].day != rows[-1].day:
         return
     mean_days = float(limit.keys.get("mean_days_between_false_alarms", defaults.FALSE_ALARM_DAYS))
-    shift = drift.watch(series, mean_days_between_false_alarms=mean_days, lasting_sd=lasting)
+    shift = drift.watch(series, mean_days_between_false_alarms=mean_days / OF_ACCEPTED, lasting_sd=lasting)
     if shift is None or not shift.on or abs(shift.size) < MATERIAL:
         return
     began = kept[shift.since].day
