@@ -36,7 +36,7 @@ BEGIN
         'ledger_book',
         'accounts_person', 'accounts_secondfactor', 'accounts_person_groups', 'accounts_person_user_permissions',
         'django_session', 'axes_accessattempt', 'axes_accessattemptexpiration', 'axes_accessfailurelog', 'axes_accesslog',
-        'jobs_job', 'jobs_turn', 'reports_draft',
+        'jobs_job', 'jobs_turn', 'reports_draft', 'notices_notice',
         'works_device', 'works_pin', 'works_tries', 'works_spell',
         'api_token',
         'dosing_daystate'

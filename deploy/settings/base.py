@@ -36,6 +36,7 @@ PLANT_APPS = [
     "plant.dosing",
     "plant.supply",
     "plant.deviations",
+    "plant.notices",
     "plant.intake",
     "plant.board",
     "plant.sheets",
@@ -199,6 +200,8 @@ TIME_ZONE = "UTC"
 
 # Telling people ---------------------------------------------------------------------------------------------
 
+# Without EMAIL_URL nobody is written to; the call list still stands on the board.
+WEIRBOOK_MAIL = bool(env.str("EMAIL_URL", default=""))
 vars().update(env.email_url("EMAIL_URL", default="consolemail://"))
 EMAIL_TIMEOUT = 10
 DEFAULT_FROM_EMAIL = env.str("WEIRBOOK_MAIL_FROM", default="weirbook@localhost")

@@ -12,6 +12,7 @@ from plant.deviations import together
 from plant.deviations.queries import DeviationView
 from plant.dosing import queries as dosing
 from plant.ledger.models import Book
+from plant.notices import queries as notices
 from plant.readings import queries as readings
 from plant.works import access, parameters
 from plant.works import queries as works
@@ -75,6 +76,7 @@ def board(at: access.At) -> Board:
         names=called,
         labels=labels,
         hangs_on=together.chains(stated, now),
+        call=lambda view: notices.words(stated, calendar, view, now),
     )
     raised = {view.subject for view in open_now if view.kind == "missing"}
     absent = [one for one in missing.missing(stated, points, now) if one.site not in raised]

@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 import datetime as dt
-from collections.abc import Iterable, Mapping
-from dataclasses import dataclass
+from collections.abc import Callable, Iterable, Mapping
+from dataclasses import dataclass, replace
 
 from plant import clock
 from plant.board import shown
@@ -69,6 +69,7 @@ class Thing:
     parts: tuple[str, ...] = ()
     telling: str = ""
     waits: bool = False
+    call: str = ""
 
 
 def worst(levels: Iterable[str]) -> str:
@@ -85,6 +86,7 @@ def listed(
     names: Mapping[str, str],
     labels: Mapping[str, str],
     hangs_on: Mapping[str, tuple[str, str]] | None = None,
+    call: Callable[[DeviationView], str] = lambda _: "",
 ) -> list[Thing]:
     """Open deviations, worst and oldest first. The likeliest cause stands there in words; how likely it is does not.
 
@@ -100,9 +102,10 @@ def listed(
         view = group[0]
         many = grouped.get((view.kind, view.level), group)
         if len(many) == 1:
-            things.append(_one(view, code, now, calendar, names, labels))
+            things.append(replace(_one(view, code, now, calendar, names, labels), call=call(view)))
         elif view is many[0]:
-            things.append(_as_one(many, code, now, calendar, names, labels))
+            first = next((said for one in many if (said := call(one))), "")
+            things.append(replace(_as_one(many, code, now, calendar, names, labels), call=first))
     return things
 
 

@@ -299,6 +299,11 @@ KESTREL = Plan(
             {"code": "CLEARWELL", "volume_m3": 2600, "baffling_factor": 0.5, "peak_flow_meter": "FT-TREATED",
              "sample_point": "ENTRY", "required_log_giardia": 0.5, "required_log_virus": 2.0},
         ],
+        "call": [
+            {"code": "shift", "name": "the other shift's operator", "telephone": "0555 0101", "level": "action"},
+            {"code": "supervisor", "name": "Paula Sievers", "telephone": "0555 0102", "level": "action", "minutes": 20},
+            {"code": "manager", "name": "Henrik Voss", "telephone": "0555 0103", "level": "regulatory", "minutes": 60},
+        ],
         "report": [
             {"regulator": "Drinking water desk of the county (invented)", "permit_number": "KFW-7781",
              "due_day": 10},

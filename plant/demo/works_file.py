@@ -94,6 +94,7 @@ def text(plan: Plan, history: Simulated | None = None) -> str:
     parts = ["# An invented works; nothing in it is a real one's.", written("[works]", head)]
     for kind in _KINDS:
         parts += [written(f"[[{kind}]]", block) for block in found.get(kind, [])]
+    parts += [written("[[call]]", block) for block in found.get("call", [])]
     parts += [written("[report]", block) for block in found.get("report", [])]
     return "\n\n".join(parts) + "\n"
 

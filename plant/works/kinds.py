@@ -338,6 +338,21 @@ ALL = (
         ),
     ),
     Kind(
+        "call",
+        "The call list",
+        ("code",),
+        (
+            Key("name", required=True),
+            Key("telephone"),
+            Key("email", help="mail is sent where a mail server is set up"),
+            Key("level", "choice", choices=("alert", "action", "regulatory"), help="the mildest worth it; left empty: action"),
+            Key("minutes", "whole", low=0, high=10_000, help="so long nobody has taken it on: then this one's turn"),
+            Key("from", "time", help="on call from, local; left empty: always"),
+            Key("to", "time", help="on call to"),
+            Key("digest", "flag", help="a mail each morning with all that is open"),
+        ),
+    ),
+    Kind(
         "report",
         "The monthly report",
         ("form",),

@@ -16,6 +16,7 @@ from plant.deviations import queries as deviations
 from plant.intake import feeding, forms, rounds, rules, shifts, walk
 from plant.intake.views import wall
 from plant.ledger import actions as ledger
+from plant.notices import queries as notices
 from plant.works import access
 from plant.works.tablets import gate
 from plant.works.tablets import queries as tablets
@@ -158,7 +159,7 @@ def _context(
             "person": request.user.get_username(),
             "name": getattr(request.user, "display_name", ""),
             "tablet": _of_tablet(at, tablet) if tablet is not None else None,
-            "telephone": str((at.stated.value("works", at.code, at.now) or {}).get("telephone") or ""),
+            "telephone": _telephone(at),
             "shifts": [_span(span, calendar) for span in shifts.ahead(at.stated, calendar, at.now)],
             "feeding": feeding.feeding(at.book, at.stated, at.now),
             "rules": {line.key: line.rules for line in walked.lines},
@@ -184,3 +185,9 @@ def _span(span: shifts.Span, calendar: Any) -> dict[str, Any]:
         "end_ms": int(span.end.timestamp() * 1000),
         "words": f"{span.name.capitalize()} shift, {start.day} {start:%b %H:%M} to {end:%H:%M}",
     }
+
+
+def _telephone(at: access.At) -> str:
+    """The control room's number, and the call list in its order: what a device without a network has to know."""
+    room = str((at.stated.value("works", at.code, at.now) or {}).get("telephone") or "")
+    return "; ".join(part for part in (room, notices.telephones(at.stated, at.now)) if part)

@@ -1,0 +1,1 @@
+"""Telling people: the call list, and mail about deviations nobody has taken on."""
