@@ -11,8 +11,8 @@ from plant.demo.plan import Incident
 from tests.deviations import scoring, trial
 from tests.deviations.scoring import Alarm, Score
 
-SEEDS = (11, 12, 13)
-DAYS = 210
+SEEDS = (11, 12)
+DAYS = 180
 
 
 @pytest.mark.slow
@@ -24,7 +24,7 @@ def test_incidents_are_found_with_few_false_alarms_and_better_than_by_simple_rul
             total[name] = total.get(name, Score()) + item
     table = "\n".join(scoring.rows(list(total.items())))
     mine = total["program"]
-    assert len(mine.outcomes) >= 8
+    assert len(mine.outcomes) >= 5
     assert mine.recall() >= 0.85, table
     # 0.30 is aimed at over years; in so few months chance alone may double it.
     assert mine.false_alarms <= 0.6, table

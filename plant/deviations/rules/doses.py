@@ -81,7 +81,9 @@ def _complete(row: Dosed, to: str) -> bool:
 def _plausible(row: Dosed, to: str) -> bool:
     """Whether a day can be a mean's part: half of a pair that gives back what the other took would spoil it."""
     reference = row.design if to == "design" else row.need
-    return row.used is not None and bool(reference) and PLAUSIBLE[0] <= row.used / reference <= PLAUSIBLE[1]
+    if row.used is None or not reference:
+        return False
+    return PLAUSIBLE[0] <= row.used / reference <= PLAUSIBLE[1]
 
 
 def off_by(found: Difference, *, pct: float, sds: float = 2.0) -> bool:
