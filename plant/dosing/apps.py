@@ -1,3 +1,5 @@
+import datetime as dt
+
 from django.apps import AppConfig
 
 
@@ -6,7 +8,10 @@ class DosingConfig(AppConfig):
     label = "dosing"
 
     def ready(self) -> None:
-        from plant.dosing import rebuild
+        from plant.dosing import rebuild, tasks
+        from plant.jobs import registry
         from plant.ledger import verify
 
         verify.register("dosing", rebuild.check)
+        registry.register(tasks.KEEP, tasks.keep, words="days reckoned ahead")
+        registry.regularly("days reckoned ahead", every=dt.timedelta(hours=1), ask=tasks.ask)
