@@ -18,7 +18,7 @@ class DeviationTable(tables.Table):
 
     level = tables.Column(order_by="rank")
     title = tables.Column(verbose_name="What", attrs=WORDS)
-    since = tables.Column(verbose_name="Since", order_by="since_at")
+    since = tables.Column(verbose_name="Since", order_by="since_at", attrs={"td": {"class": "nowrap"}})
     value = tables.Column(verbose_name="Found", orderable=False)
     limit = tables.Column(verbose_name="Limit", orderable=False)
     cause = tables.Column(verbose_name="Most likely", orderable=False, attrs=WORDS, default="")
