@@ -32,9 +32,19 @@ def _csv(header: Sequence[str], rows: Iterable[Sequence[Any]]) -> bytes:
 
 def _safe(cell: Any) -> Any:
     """Words that a spreadsheet would take for a formula get a quote in front; numbers stay numbers."""
-    if isinstance(cell, str) and cell[:1] in ("=", "+", "@", "\t", "\r"):
+    if isinstance(cell, str):
+        cell = cell.replace("\r\n", "\n").replace("\r", " ")  # the writer would leave a lone return bare
+    if isinstance(cell, str) and cell.lstrip()[:1] in ("=", "+", "-", "@") and not _number(cell):
         return f"'{cell}"
     return "" if cell is None else cell
+
+
+def _number(text: str) -> bool:
+    try:
+        float(text)
+    except ValueError:
+        return False
+    return True
 
 
 def _xlsx(header: Sequence[str], rows: Iterable[Sequence[Any]]) -> bytes:

@@ -241,6 +241,18 @@ class TestFiles:
             ["product", "kg", "note"], ["HYPO", "1.5", "'=1+1"], ["NAOH", "", "−3"],
         ]  # fmt: skip
 
+    @pytest.mark.parametrize(
+        "text", ["=1+1", "+1+cmd|' /C calc'!A0", "-1+1", "-2-SUM(A1:A9)", "@SUM(A1)", "  =1+1", "\t=1+1", "\r=1"]
+    )
+    def test_csv_disarms_whatever_a_spreadsheet_would_reckon(self, text):
+        (row,) = list(csv.reader(io.StringIO(exports._csv(["note"], [[text]]).decode()), strict=True))[1:]
+        assert row[0].startswith("'")
+
+    @pytest.mark.parametrize("text", ["-8.6", "-0", "+3", "-1e-3", "−3", "a-b"])
+    def test_csv_leaves_numbers_and_plain_words_alone(self, text):
+        (row,) = list(csv.reader(io.StringIO(exports._csv(["note"], [[text]]).decode())))[1:]
+        assert row == [text]
+
     def test_xlsx_holds_numbers_as_numbers_and_no_formula(self):
         answer = exports.answer("xlsx", "x", ("product", "kg", "note"), self.ROWS)
         sheet = zipfile.ZipFile(io.BytesIO(answer.content)).read("xl/worksheets/sheet1.xml").decode()
