@@ -130,7 +130,8 @@ def _vessel_mark(vessel: Vessel, point: Point) -> Mark | None:
             begins=point.parameter == "container_change",
         )
     if point.parameter == "level":
-        level = float(vessels.level_from_pct(form, value)) if point.unit == "%" else value
+        shown = float(vessels.level_from_pct(form, value)) if point.unit == "%" else value
+        level = shown * vessel.level_factor
         litres = float(vessels.volume_l(form, level))
     elif point.parameter == "volume":
         litres = value

@@ -255,7 +255,10 @@ def _shows(vessel: described.Vessel | None, parameter: str, usable: list[Point])
     levels = [top * step / steps for step in range(steps + 1)]
     return {
         "kind": "level",
-        "table": [[round(level, 6), round(float(vessels.volume_l(vessel.form, min(level, top))), 3)] for level in levels],
+        "table": [
+            [round(level / vessel.level_factor, 6), round(float(vessels.volume_l(vessel.form, min(level, top))), 3)]
+            for level in levels
+        ],
         "top_m": top,
         "last": last,
     }

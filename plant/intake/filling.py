@@ -62,7 +62,7 @@ def _volume(vessel: described.Vessel, point: readings.Point) -> float:
     assert point.value is not None
     top = vessels.full_level_m(vessel.form)
     level = point.value / 100 * top if point.unit == "%" else point.value
-    return float(vessels.volume_l(vessel.form, min(max(level, 0.0), top)))
+    return float(vessels.volume_l(vessel.form, min(max(level * vessel.level_factor, 0.0), top)))
 
 
 def problems(book: Book, stated: Stated, delivery: models.Delivery, at: dt.datetime) -> list[str]:

@@ -214,7 +214,11 @@ def fits(vessel: described.Vessel, reading: models.Reading) -> bool:
             return 0 <= reading.value <= 100
         if reading.parameter == "level":
             # The float of a gauge may stand at the rim by its own uncertainty.
-            return -vessel.level_sd_m <= reading.value <= vessels.full_level_m(vessel.form) + 3 * vessel.level_sd_m
+            return (
+                -vessel.level_sd_m
+                <= reading.value
+                <= vessels.full_level_m(vessel.form) / vessel.level_factor + 3 * vessel.level_sd_m
+            )
         if reading.parameter == "volume":
             return 0 <= reading.value <= 1.01 * vessels.full_volume_l(vessel.form)
     except errors.OutOfRange:

@@ -92,6 +92,7 @@ def _rise(vessel: described.Vessel, before: float, after: float) -> tuple[float,
     """Litres (kg on a scale) and standard uncertainty of the rise."""
     if vessel.on_scale:
         return after - before, math.sqrt(2) * float(vessel.form.get("weight_sd_kg", 1.0))
+    before, after = before * vessel.level_factor, after * vessel.level_factor
     volume = [float(vessels.volume_l(vessel.form, level)) for level in (before, after)]
     area = [
         (float(vessels.volume_l(vessel.form, level)) - float(vessels.volume_l(vessel.form, max(level - 0.01, 0.0)))) / 0.01

@@ -91,6 +91,7 @@ class Vessel:
     product: str
     role: str = "bulk"
     level_sd_m: float = 0.005
+    level_factor: float = 1.0
     heel_L: float = 0.0
     heel_kg: float = 0.0
     max_fill_pct: float = 95.0

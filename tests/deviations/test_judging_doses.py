@@ -139,6 +139,21 @@ class TestStock:
         # The 20th day after 15 January is 4 February; the day after it is late.
         assert views["lot_age"].raised_for == dt.date(2026, 2, 5)
 
+    def test_a_solution_counts_on_its_own_basis_and_below_the_cut_not_at_all(self) -> None:
+        """Trap: the peak is 12,125 kg of 25 % solution, 3,031 kg of the chemical itself; a cut at 30 % leaves nothing of it."""
+        for keys, found in (
+            ({"high": 3000, "counts": "active"}, "3031 kg"),
+            ({"high": 3100, "counts": "active"}, None),
+            ({"high": 12000, "from_strength": 25}, "12125 kg"),
+            ({"high": 12000, "from_strength": 30}, None),
+        ):
+            book = world.open_works(limit("holding", "regulatory", vessel="NAOH-TANK", unit="kg", **keys))
+            world.history(book, FIRST, 4)
+            world.enter(book, self.delivery("2026-02-02T10:00"), now=world.local("2026-02-14T08:30"))
+            views = [view for view in judged(book, FIRST, FIRST + dt.timedelta(days=3)) if view.kind == "holding"]
+            assert [view.value for view in views[:1]] == ([found] if found else []), keys
+            type(book).objects.filter(pk=book.pk).update(code=f"OLD{book.pk}")
+
     def test_a_weak_lot_by_its_test(self) -> None:
         book = world.open_works(limit("strength_low", vessel="NAOH-TANK", pct_below_certificate=10))
         world.history(book, FIRST, 4)

@@ -244,6 +244,51 @@ class TestDesignDoseChangedMidMonth:
         assert total.used_mg_l.value == pytest.approx(6.0)
 
 
+class TestPressureGauge:
+    """Trap: a pressure gauge set for water reads a third too high in liquid alum of 1.335 kg/L."""
+
+    def use(self, factor: str):
+        gauged = tank("A").replace("heel_L = 0\n", f"heel_L = 0\n{factor}")
+        book = build.book(gauged, point("A"))
+        enter(
+            book,
+            count("2026-03-10T07:00", 1000),
+            count("2026-03-11T07:00", 13000),
+            level("A", "2026-03-10T07:00", 1335),
+            level("A", "2026-03-11T07:00", 1335 - 400.5),
+        )
+        return dose(book)
+
+    def test_the_setting_belongs_to_the_instrument(self):
+        """1.335 m shown are 1.000 m: 300 L, not 400.5 L, go into 12 ML at 0.3 kg/L: 7.5 mg/L, not 10.0."""
+        assert self.use("level_factor = 0.74906367\n").used_mg_l.value == pytest.approx(7.5, rel=1e-6)
+
+    def test_without_it_the_dose_is_a_third_too_high(self):
+        assert self.use("").used_mg_l.value == pytest.approx(7.5 * 1.335, rel=1e-6)
+
+
+class TestHorizontalTank:
+    """Trap: a linear gauge on a horizontal cylinder: a quarter of the depth is a fifth of the contents."""
+
+    def test_a_quarter_of_the_depth_is_19_6_percent(self):
+        lying = (
+            '[[vessel]]\ncode = "A"\nname = "Lying"\nproduct = "NAOH"\nshape = "horizontal_cylinder"\n'
+            'diameter_m = 2.0\nlength_m = 5.0\nheads = "flat"\n'
+        )
+        book = build.book(lying, point("A"))
+        whole = 3.141592653589793 * 5 * 1000
+        enter(
+            book,
+            count("2026-03-10T07:00", 1000),
+            count("2026-03-11T07:00", 13000),
+            read("A", "2026-03-10T07:00", "level", 0.5),
+            read("A", "2026-03-11T07:00", "level", 0.2),
+        )
+        # 25 % of the depth holds 19.55 %, 10 % holds 5.20 %: 14.35 % of 15,708 L, not 15 %.
+        used_l = (0.1955 - 0.0520) * whole
+        assert dose(book).product_kg.value == pytest.approx(used_l * 1.2, rel=1e-3)
+
+
 class TestLateEntry:
     def test_monday_for_friday_counts_on_friday_and_is_known_from_monday(self):
         """The closing dip of Friday is entered on Monday: Friday's dose comes out then, and was unknown before."""

@@ -137,7 +137,7 @@ def holding(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
             for delivery in day.of.deliveries
             if delivery.vessel == item.vessel and day.start <= delivery.taken_at < day.until
         )
-        kg = max(item.dip_kg or 0.0, (before.get(item.vessel) or 0.0) + received)
+        kg = max(item.dip_kg or 0.0, (before.get(item.vessel) or 0.0) + received) * _counted(item, limit)
         peak_kg += kg
         volume_l += kg / density if density else 0.0
     try:
@@ -155,6 +155,18 @@ def holding(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
             sentence="most held on the day, deliveries counted before use",
             size=float(peak),
         )
+
+
+def _counted(item: VesselStock, limit: Limit) -> float:
+    """The share of a vessel's product that counts against a holding: solutions stand on their own basis, and below a stated
+    strength they count zero.
+    """
+    cut = limit.keys.get("from_strength")
+    if cut is not None and item.strength is not None and item.strength < float(cut):
+        return 0.0
+    if limit.keys.get("counts") == "active" and item.active_kg is not None and item.dip_kg:
+        return item.active_kg / item.dip_kg
+    return 1.0
 
 
 def lot_age(day: Day, limit: Limit, ref: str) -> Iterator[Finding]:
